@@ -98,28 +98,38 @@ def test_nothing_to_absorb() -> None:
     assert tuned(5.0, 1.0, Momenta(np.empty(0), np.empty(0)), 0.5).reflected == 0
 
 
-# The prediction is stationary, the run is not: they share only W(x). The factor of two covers the wave that
-# crosses both layers where they meet at the wrap, and step and points.
+# The prediction is stationary, the run is not: they share only W(x). On coarse grids, where 2 k0 reaches the
+# largest wave number, aliases of the kink at the entrance subtract from what is predicted.
 @pytest.mark.parametrize("transform", ["periodic", "sine"])
 @pytest.mark.parametrize(
-    ("k0", "sigma", "spacing", "step"),
-    [(2.0, 8.0, 0.4, 0.1), (2.0, 8.0, 0.8, 0.1), (1.2, 4.0, 0.4, 0.1), (1.2, 4.0, 0.8, 0.2)],
+    ("k0", "sigma", "spacing", "step", "least"),
+    [
+        (2.0, 8.0, 0.4, 0.1, 0.6),
+        (2.0, 8.0, 0.8, 0.2, 0.2),
+        (1.2, 4.0, 0.4, 0.1, 0.6),
+        (1.2, 4.0, 0.8, 0.2, 0.6),
+    ],
 )
 def test_a_run_reflects_what_is_predicted(
-    transform: Transform, k0: float, sigma: float, spacing: float, step: float
+    transform: Transform, k0: float, sigma: float, spacing: float, step: float, least: float
 ) -> None:
-    reach = 8 * sigma
     k = np.linspace(0, 2 * k0, 4001)
     weight = np.exp(-2 * sigma**2 * (k - k0) ** 2)
     momenta = Momenta.of_density(k, weight / weight.sum(), "high")
     depth = recommended_depth(1.0, momenta, spacing)
-    assert 3 < depth * k0 < 20  # about two wavelengths
-    points = 2 * math.ceil((reach + depth) / spacing)
+    assert 3 < depth * k0 < 20  # at most three wavelengths
+    points = 2 * math.ceil((8 * sigma + depth) / spacing)
     axis = Axis("x", -points * spacing / 2, points * spacing / 2, points, transform)
     shape = tuned(depth, 1.0, momenta, spacing)
     measured = left_over(axis, shape, k0, sigma, step)
     assert measured < LIMIT
-    assert shape.reflected / 2 < measured < 2 * shape.reflected
+    assert least * shape.reflected < measured < 1.3 * shape.reflected
+
+
+def test_layer_covers_whole_cells() -> None:
+    momenta = Momenta.of_energies(0.5, 2.0, mass=1.0)
+    assert tuned(10.3, 1.0, momenta, 0.5).depth == pytest.approx(10.0)
+    assert tuned(10.0, 1.0, momenta, 0.1).depth == pytest.approx(10.0)
 
 
 def left_over(axis: Axis, shape: LayerShape, k0: float, sigma: float, step: float) -> float:
