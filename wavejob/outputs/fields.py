@@ -6,13 +6,16 @@ complex number that all readers agree on: `psi = ds.psi[..., 0] + 1j * ds.psi[..
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+import contextlib
+import io
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any, Literal
 
 import h5netcdf
+import h5py
 import numpy as np
 
 from ..grid import Array, Axis, Grid
@@ -55,7 +58,12 @@ def write_fields(
     The dimension `channel` exists only where there are several `channels`. `about` adds global
     attributes, such as the job id. Raises RunError where the file can't be written.
     """
-    with atomic_path(path) as temporary, h5netcdf.File(temporary, "w") as file:
+    with (
+        atomic_path(path) as temporary,
+        temporary.open("w+b", buffering=0) as raw,
+        _careful(raw) as disk,
+        h5netcdf.File(disk, "w") as file,
+    ):
         file.attrs.update(
             Conventions=CONVENTIONS,
             title="Wave packet of a wavejob run",
@@ -69,6 +77,46 @@ def write_fields(
             places.density(table)
 
 
+@contextlib.contextmanager
+def _careful(raw: io.FileIO) -> Iterator[_Disk]:
+    """What HDF5 may write to; the first refusal of the system is raised at the end."""
+    disk = _Disk(raw)
+    try:
+        yield disk
+    except Exception as error:
+        if disk.refusal:
+            raise disk.refusal from error
+        raise
+    if disk.refusal:
+        raise disk.refusal
+
+
+class _Disk:
+    """A file that keeps a failed write to itself: told of a full disk, HDF5 crashes the process."""
+
+    def __init__(self, raw: io.FileIO) -> None:
+        self.raw = raw
+        self.refusal: OSError | None = None
+        self.read, self.readinto = raw.read, raw.readinto
+        self.seek, self.tell, self.flush = raw.seek, raw.tell, raw.flush
+
+    def write(self, data: Any) -> int:
+        rest = memoryview(data).cast("B")
+        while rest and not self.refusal:
+            try:
+                rest = rest[self.raw.write(rest) :]
+            except OSError as error:
+                self.refusal = error
+        return len(data)
+
+    def truncate(self, size: int) -> int:
+        try:
+            return self.raw.truncate(size)
+        except OSError as error:
+            self.refusal = self.refusal or error
+            return size
+
+
 class _Writer:
     """Puts variables with their dimensions and coordinates into one open file."""
 
@@ -77,7 +125,7 @@ class _Writer:
         self.channels = channels if len(channels) > 1 else ()
         if self.channels:
             file.dimensions["channel"] = len(channels)
-            names = file.create_variable("channel", ("channel",), dtype=np.dtypes.StringDType())
+            names = file.create_variable("channel", ("channel",), dtype=h5py.string_dtype())
             names[...] = np.array(channels, dtype=object)
         for axis in grid.axes:
             self._coordinate(axis.name, axis.x, "length", f"position along {axis.name}")

@@ -48,19 +48,21 @@ def atomic_path(path: Path) -> Iterator[Path]:
     try:
         # made here and not by the writer, so that the permissions are those the user's umask asks for
         os.close(os.open(temporary, os.O_CREAT | os.O_EXCL | os.O_WRONLY, 0o666))
+    except OSError as error:
+        raise unwritable(path, error) from error
+    try:
         yield temporary
         _to_disk(temporary)
         os.replace(temporary, path)
         if os.name == "posix":
             _to_disk(path.parent)
     except OSError as error:
-        temporary.unlink(missing_ok=True)
         if error.filename is None or Path(error.filename) in (temporary, path, path.parent):
             raise unwritable(path, error) from error
-        raise
-    except BaseException:
-        temporary.unlink(missing_ok=True)
-        raise
+        raise  # it speaks of another file
+    finally:
+        with contextlib.suppress(OSError):  # gone, where all went well
+            temporary.unlink()
 
 
 def unwritable(path: Path, error: OSError) -> RunError:

@@ -52,4 +52,5 @@ def run_log(path: Path) -> Iterator[logging.Logger]:
     finally:
         logger.setLevel(level)
         logger.removeHandler(handler)
-        handler.close()
+        with contextlib.suppress(OSError):  # a disk that refuses was reported with the line itself
+            handler.close()

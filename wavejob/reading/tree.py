@@ -39,13 +39,7 @@ class JobTree:
 
     def job_id(self, path: Path) -> str:
         """The path of a job file below the tree, without its ending, with `/` between names."""
-        file = located(path)
-        if not file.is_relative_to(self.root):
-            raise PathError(
-                f"is not inside the job tree `{shown(self.root)}`",
-                "name a file below it, or give --tree DIR",
-                path,
-            )
+        file = self._placed(path)
         name = file.relative_to(self.root).with_suffix("").as_posix()
         if not name.isprintable():
             raise PathError("has characters in its name that can't be printed", "rename it", path)
@@ -53,17 +47,13 @@ class JobTree:
 
     def job_files(self, given: Path) -> list[Path]:
         """The job file `given`, or all of a folder, sorted by name; two with one id are an error."""
-        start = located(given)
-        self.job_id(start)
+        start = self._placed(given)
+        problems: list[Problem] = []
+        files = [start]
         if start.is_dir():
             self._refuse_runs(start, given)
-            files, problems = [], []
-            for file in sorted(self._candidates(start)):
-                wrong = self._unfit(file)
-                problems += [wrong] if wrong else []
-                files.append(file)
-        else:
-            files, problems = [start], []
+            files = sorted(self._candidates(start))
+            problems = [wrong for file in files if (wrong := self._unfit(file))]
         problems += self._doubled(files)
         if problems:
             raise JobFileError(problems)
@@ -112,6 +102,14 @@ class JobTree:
             ) from error
         return runs
 
+    def _placed(self, path: Path) -> Path:
+        """`path` in full, below the root of the tree."""
+        full = located(path)
+        if not full.is_relative_to(self.root):
+            outside = f"is not inside the job tree `{shown(self.root)}`"
+            raise PathError(outside, "name a file below it, or give --tree DIR", path)
+        return full
+
     def _candidates(self, folder: Path) -> Iterator[Path]:
         """Files named like jobs, below `folder`, in any order; links to folders are not followed."""
         for name, folders, files in os.walk(folder, onerror=_unsearchable):
@@ -122,6 +120,8 @@ class JobTree:
     def _unfit(self, file: Path) -> Problem | None:
         """What keeps a file found in a folder from being a job file of this tree."""
         place = Place(shown(file))
+        if not file.name.isprintable():
+            return Problem("has characters in its name that can't be printed", "rename it", place=place)
         try:
             target = file.resolve(strict=True)
         except (OSError, RuntimeError):
