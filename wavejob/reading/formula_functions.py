@@ -16,8 +16,8 @@ Number = Any  # a float or an array of floats; arrays broadcast against each oth
 class Operation:
     """A function of `len(partials)` arguments.
 
-    Each partial derivative is called with the arguments and then the value itself. An operation that `selects`
-    takes no notice of the arguments that it does not choose, whatever they are.
+    Each partial derivative is called with the arguments and then the value itself. An operation that
+    `selects` takes no notice of the arguments that it does not choose, whatever they are.
     """
 
     value: Callable[..., Number]

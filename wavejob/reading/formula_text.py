@@ -1,4 +1,4 @@
-"""The text of a formula to a list of steps for a stack: a small grammar of our own, so nothing else can be said.
+"""The text of a formula to a list of steps for a stack, by a small grammar of our own.
 
 sum        := product (("+" | "-") product)...
 comparison := sum [("<" | "<=" | ">" | ">=" | "==" | "!=") sum]
@@ -39,6 +39,7 @@ _ADVICE = {
     "[": "use round brackets",
     "{": "use round brackets",
 }
+_CONTENT = "a formula is made of numbers, names, + - * / **, a comparison and round brackets"
 _OTHER_NAMES = {
     "ln": "write `log`, the natural logarithm",
     "log10": "write `log(x) / log(10)`",
@@ -109,16 +110,12 @@ def _tokens(text: str) -> list[_Token]:
             shown = (
                 f"`{sign}`" if sign.isascii() and sign.isprintable() else f"the character U+{ord(sign):04X}"
             )
-            raise FormulaError(f"{shown} has no meaning in a formula", _ADVICE.get(sign, _known()), column)
+            raise FormulaError(f"{shown} has no meaning in a formula", _ADVICE.get(sign, _CONTENT), column)
         if found.lastgroup != "space":
             tokens.append(_Token(str(found.lastgroup), found.group(), column))
         column = found.end()
     tokens.append(_Token("end", "", len(text)))
     return tokens
-
-
-def _known() -> str:
-    return f"formulas know + - * / ** < <= > >= == !=, pi, {', '.join(FUNCTIONS)}"
 
 
 @dataclass
@@ -158,17 +155,24 @@ class _Parser:
         if token.text in _COMPARISONS:
             fix = "compare two values only, and multiply comparisons: `(0 < x) * (x < 1)`"
             return FormulaError("a second comparison may not stand here", fix, token.column)
-        if before and token.kind in ("number", "name") and token.text not in _OTHER_NAMES:
+        if before and before.kind == "number" and before.column + len(before.text) == token.column:
+            said = f"`{_short(before.text + token.text)}` is neither a number nor a name"
+            fix = f"write `{_short(before.text)}*{_short(token.text)}` for a product; numbers are decimal"
+            return FormulaError(said, fix, before.column)
+        if token.kind in ("number", "name") and token.text not in _OTHER_NAMES:
             said = f"an operator is missing before `{_short(token.text)}`"
-            return FormulaError(said, f"write `*` for a product, as in `{_short(before.text)}*{_short(token.text)}`",
-                                token.column)  # fmt: skip
+            return FormulaError(said, "write `*` for a product", token.column)
         fix = _OTHER_NAMES.get(token.text, "check operators and brackets")
         return FormulaError(f"`{_short(token.text)}` may not stand here", fix, token.column)
 
+    def deeper(self, depth: int) -> int:
+        """The next depth of nesting, if that is allowed."""
+        if depth >= MAX_DEPTH:
+            said = f"brackets or powers are nested more than {MAX_DEPTH} deep"
+            raise FormulaError(said, "simplify the formula", self.next.column)
+        return depth + 1
+
     def comparison(self, depth: int) -> None:
-        if depth > MAX_DEPTH:
-            raise FormulaError(f"brackets, signs or powers are nested more than {MAX_DEPTH} deep",
-                               "simplify the formula", self.next.column)  # fmt: skip
         self.sum(depth)
         column = self.next.column
         if sign := self.take(*_COMPARISONS):
@@ -204,9 +208,7 @@ class _Parser:
         self.atom(depth)
         column = self.next.column
         if self.take("**"):
-            if depth > MAX_DEPTH:
-                raise FormulaError(f"powers are nested more than {MAX_DEPTH} deep", "use brackets", column)
-            self.signed(depth + 1)
+            self.signed(self.deeper(depth))
             self.push("apply", "**", column)
 
     def atom(self, depth: int) -> None:
@@ -221,7 +223,7 @@ class _Parser:
             self.at += 1
             self.named(token, depth)
         elif self.take("("):
-            self.comparison(depth + 1)
+            self.comparison(self.deeper(depth))
             self.close()
         else:
             raise self.unexpected()
@@ -254,7 +256,7 @@ class _Parser:
         while self.next.text != ")":
             if given and not self.take(","):
                 raise self.unexpected()
-            self.comparison(depth + 1)
+            self.comparison(self.deeper(depth))
             given += 1
         self.close()
         wanted = len(FUNCTIONS[name].partials)
@@ -272,8 +274,7 @@ class _Parser:
         near = difflib.get_close_matches(name, [*self.names, *FUNCTIONS, *CONSTANTS], 1)
         if near:
             return f"did you mean `{near[0]}`?"
-        values = ", ".join(sorted([*self.names, *CONSTANTS]))
-        return f"its values are {values}, its functions {', '.join(FUNCTIONS)}"
+        return f"the values it may use are {', '.join(sorted([*self.names, *CONSTANTS]))}"
 
 
 def _short(text: str) -> str:

@@ -1,7 +1,7 @@
 """Formulas of a job file: read by a closed grammar, evaluated over numpy arrays, with exact derivatives.
 
-Nothing of Python is reachable from a formula: its text becomes a flat list of steps over the operations listed
-in `formula_functions.py`, and numbers become floats at once, so that no formula takes long.
+Nothing of Python is reachable from a formula: its text becomes a list of steps over the operations of
+`formula_functions.py`, and numbers become floats at once, so that no formula takes long.
 """
 
 from __future__ import annotations
@@ -68,7 +68,7 @@ class Formula:
                     slope: Number | None = None
                     for partial, inner in zip(operation.partials, slopes[-count:], strict=True):
                         if inner is not None:
-                            part = _chain(partial(*arguments, value), inner)
+                            part = _chain(partial(*arguments, value), inner, operation.selects)
                             slope = part if slope is None else slope + part
                     stack[-count:], slopes[-count:] = [value], [slope]
         value, slope = stack[0], slopes[0]
@@ -89,9 +89,13 @@ def first_bad(values: Number) -> tuple[int, ...] | None:
     return tuple(int(i) for i in np.argwhere(~finite)[0])
 
 
-def _chain(outer: Number, inner: Number) -> Number:
-    """Their product, and 0 where the inner slope is 0: sqrt(x**2) is then flat at 0, as abs(x) is."""
-    return np.where(inner == 0.0, 0.0, np.multiply(outer, inner))
+def _chain(outer: Number, inner: Number, selects: bool) -> Number:
+    """The product of two slopes, and 0 where the inner one is 0: sqrt(x**2) is then flat at 0, as abs(x) is.
+
+    Where an operation selects, its slope 0 stands for "not chosen", even if the inner one is no number.
+    """
+    nothing = (inner == 0.0) | (outer == 0.0) if selects else inner == 0.0
+    return np.where(nothing, 0.0, np.multiply(outer, inner))
 
 
 def _floats(value: Number) -> Number:

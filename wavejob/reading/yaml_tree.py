@@ -224,7 +224,7 @@ class _Reader:
         if path is not None:
             self.places[path] = self._place(event.start_mark)
         if isinstance(event, yaml.AliasEvent):
-            said = f"aliases (`*{_short(event.anchor)}`) are not read"
+            said = f"aliases (`*{_short(str(event.anchor))}`) are not read"
             self.add(said, "write the value out, or use `based_on`", event.start_mark, path)
             return None
         self._plain(event, path)
@@ -237,7 +237,7 @@ class _Reader:
     def _plain(self, event: Any, path: KeyPath | None) -> None:
         """Note an anchor or a tag, which a plain value has not."""
         if event.anchor is not None:
-            said = f"anchors (`&{_short(event.anchor)}`) are not read"
+            said = f"anchors (`&{_short(str(event.anchor))}`) are not read"
             self.add(said, "leave the anchor out", event.start_mark, path)
         if event.tag is not None:
             said = f"tags (`{_short(event.tag.replace('tag:yaml.org,2002:', '!!'))}`) are not read"
