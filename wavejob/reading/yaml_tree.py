@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import math
 import re
-import stat
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -17,12 +16,12 @@ from typing import Any, NoReturn
 import yaml
 
 from wavejob.problems import JobFileError, Place, Problem
+from wavejob.reading.text_file import LINE_END, check_characters, read_text_file
 from wavejob.reading.yaml_syntax import GENERAL, sentence
 
 KeyPath = tuple[str | int, ...]
 Value = dict[str, Any] | list[Any] | str | int | float | bool | None
 
-MAX_BYTES = 1 << 20
 MAX_NODES = 20_000
 MAX_DEPTH = 50
 MAX_DIGITS = 100  # of a whole number: far more than any seed needs, far less than would be slow
@@ -31,9 +30,6 @@ MAX_DIGITS = 100  # of a whole number: far more than any seed needs, far less th
 # so that places and sentences do not depend on the machine.
 FAST_LOADER = getattr(yaml, "CSafeLoader", None)
 
-_LINE_END = re.compile(r"\r\n|\r|\n")
-# Beside control characters: U+0085, U+2028 and U+2029 end a line for the parser but for few editors.
-_UNWANTED = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\u2028\u2029\ud800-\udfff\ufeff\ufffe\uffff]")
 _ESCAPED = re.compile("[\x00-\x08\x0b-\x1f\x7f\ud800-\udfff]")  # may be written in double quotes only
 _NULL = re.compile(r"~|null|Null|NULL|")
 _TRUE, _FALSE = ("true", "True", "TRUE"), ("false", "False", "FALSE")
@@ -76,17 +72,13 @@ def read_document(path: Path, shown: str | None = None) -> Document:
     Raises JobFileError with all mistakes found.
     """
     name = str(path) if shown is None else shown
-    return read_text(_decode(_read_bytes(path, name), name), name)
+    return read_text(read_text_file(path, name), name)
 
 
 def read_text(text: str, shown: str) -> Document:
     """The content of `text`, called `shown` in messages. Raises JobFileError with all mistakes found."""
-    lines = _LINE_END.split(text)
-    unwanted = _UNWANTED.search(text)
-    if unwanted:
-        place = _place_of(text, unwanted.start(), shown)
-        message = f"the unseen character U+{ord(unwanted.group()):04X} stands here"
-        raise JobFileError([Problem(message, "delete it", place=place, source=lines[place.line - 1])])
+    check_characters(text, shown)
+    lines = LINE_END.split(text)
     if FAST_LOADER is not None and "\t" not in text:  # the two parsers differ on tabs
         try:
             return _Reader(FAST_LOADER(text), lines, shown).document()
@@ -103,55 +95,6 @@ def read_text(text: str, shown: str) -> Document:
         mark, known = loader.get_mark(), GENERAL
     reader.add(known.message, known.fix, mark)
     raise JobFileError(reader.problems)
-
-
-def _read_bytes(path: Path, shown: str) -> bytes:
-    def refuse(message: str, fix: str) -> NoReturn:
-        raise JobFileError([Problem(message, fix, place=Place(shown))]) from None
-
-    try:
-        mode = path.stat().st_mode
-        if stat.S_ISDIR(mode):
-            refuse("this is a folder, not a file", "name a file in it")
-        if not stat.S_ISREG(mode):
-            refuse("this is not an ordinary file", "name a file on disk")
-        with path.open("rb") as file:
-            data = file.read(MAX_BYTES + 1)
-    except PermissionError:
-        refuse("the file may not be read", "change its permissions")
-    except (FileNotFoundError, NotADirectoryError, ValueError):  # ValueError: a NUL in the name
-        refuse("there is no such file", "check the path")
-    except OSError as error:
-        refuse(f"the file can't be read ({error.strerror})", "check the path and the disk")
-    if len(data) > MAX_BYTES:
-        refuse(
-            f"the file is larger than {MAX_BYTES >> 20} MiB",
-            "keep data in files of their own, named in the job",
-        )
-    return data
-
-
-def _decode(data: bytes, shown: str) -> str:
-    if data.startswith((b"\xff\xfe", b"\xfe\xff")):
-        raise JobFileError([Problem("the file is UTF-16 text", "save it as UTF-8", place=Place(shown))])
-    try:
-        text = data.decode("utf-8-sig")
-    except UnicodeDecodeError as error:
-        before = error.object[: error.start].decode("utf-8")  # a byte order mark is off already
-        message = f"the byte 0x{error.object[error.start]:02x} is not UTF-8 text"
-        place = _place_of(before, len(before), shown)
-        raise JobFileError([Problem(message, "save the file as UTF-8", place=place)]) from None
-    if "\0" in text:
-        message = "the file holds a NUL byte, so it is no text file"
-        raise JobFileError(
-            [Problem(message, "name a text file", place=_place_of(text, text.index("\0"), shown))]
-        )
-    return text
-
-
-def _place_of(text: str, index: int, shown: str) -> Place:
-    lines = _LINE_END.split(text[:index])
-    return Place(shown, len(lines), len(lines[-1]) + 1)
 
 
 class _Full(Exception):
