@@ -120,7 +120,7 @@ class JobTree:
     def _unfit(self, file: Path) -> Problem | None:
         """What keeps a file found in a folder from being a job file of this tree."""
         place = Place(shown(file))
-        if not file.name.isprintable():
+        if not file.relative_to(self.root).as_posix().isprintable():
             return Problem("has characters in its name that can't be printed", "rename it", place=place)
         try:
             target = file.resolve(strict=True)
