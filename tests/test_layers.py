@@ -16,7 +16,6 @@ LAYERS = (
     "problems",
     "results",
     "reading",
-    "particles",
     "models",
     "particles",
     "grid",

@@ -8,12 +8,12 @@ Other masses: CODATA 2022.
 
 from __future__ import annotations
 
-import difflib
 import re
 from dataclasses import dataclass
 
-from wavejob.reading import constants
-from wavejob.reading.quantity_text import QuantityError
+from .problems import nearest
+from .reading import constants
+from .reading.quantity_text import QuantityError
 
 _ISOTOPES = {
     "H-1": 1.0078250319, "H-2": 2.01410177784, "H-3": 3.01604928132, "He-3": 3.01602932197,
@@ -80,4 +80,4 @@ def _near(name: str) -> str:
         symbol, mass_number = isotope[1] or isotope[4], isotope[2] or isotope[3]
         name = f"{symbol.capitalize()}-{mass_number}"
         return name if name in PARTICLES else ""
-    return next(iter(difflib.get_close_matches(name, PARTICLES, 1)), "")
+    return nearest(name, PARTICLES) or ""

@@ -10,13 +10,13 @@ atom       := number | name | function "(" comparison ("," comparison)... ")" | 
 
 from __future__ import annotations
 
-import difflib
 import math
 import re
 from dataclasses import dataclass, field
 from typing import NamedTuple
 
-from wavejob.reading.formula_functions import CONSTANTS, FUNCTIONS
+from ..problems import nearest
+from .formula_functions import CONSTANTS, FUNCTIONS
 
 MAX_LENGTH = 2000
 MAX_STEPS = 400
@@ -271,9 +271,9 @@ class _Parser:
         """Advice on an unknown name."""
         if name in _OTHER_NAMES:
             return _OTHER_NAMES[name]
-        near = difflib.get_close_matches(name, [*self.names, *FUNCTIONS, *CONSTANTS], 1)
+        near = nearest(name, [*sorted(self.names), *FUNCTIONS, *CONSTANTS])
         if near:
-            return f"did you mean `{near[0]}`?"
+            return f"did you mean `{near}`?"
         return f"the values it may use are {', '.join(sorted([*self.names, *CONSTANTS]))}"
 
 

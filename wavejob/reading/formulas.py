@@ -11,8 +11,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from wavejob.reading.formula_functions import FUNCTIONS, OPERATORS, Number
-from wavejob.reading.formula_text import FormulaError, Step, read
+from .formula_functions import FUNCTIONS, OPERATORS, Number
+from .formula_text import FormulaError, Step, read
 
 __all__ = ["Formula", "FormulaError", "first_bad", "parse"]
 

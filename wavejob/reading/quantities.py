@@ -6,16 +6,16 @@ the time unit, the mass unit hbar times time over squared length, and charges co
 
 from __future__ import annotations
 
-import difflib
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any, NamedTuple, TypeVar
 
-from wavejob.reading import constants
-from wavejob.reading.dimensions import DIMENSIONS, Powers, accepted, kind_of
-from wavejob.reading.quantity_text import QuantityError, Term, is_unit, pint_notation, terms, unit_words
-from wavejob.reading.unit_table import measure, similar_units, unit_names
+from ..problems import nearest
+from . import constants
+from .dimensions import DIMENSIONS, Powers, accepted, kind_of
+from .quantity_text import QuantityError, Term, is_unit, pint_notation, terms, unit_words
+from .unit_table import measure, similar_units, unit_names
 
 if TYPE_CHECKING:
     import numpy as np
@@ -251,8 +251,8 @@ def _named(term: Term, names: Mapping[str, Named]) -> Named:
         raise QuantityError(
             f"`{term.name}` is a unit and stands alone", f"write a number before it: `5 {term.name}`"
         )
-    near = difflib.get_close_matches(term.name, list(names), 1)
-    fix = f"did you mean `{near[0]}`?" if near else "define it under `let`, or write a number and a unit"
+    near = nearest(term.name, names)
+    fix = f"did you mean `{near}`?" if near else "define it under `let`, or write a number and a unit"
     raise QuantityError(f"no quantity is called `{term.name}`", fix)
 
 

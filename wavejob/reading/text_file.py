@@ -6,7 +6,7 @@ import re
 import stat
 from pathlib import Path
 
-from wavejob.problems import JobFileError, Place, Problem
+from ..problems import JobFileError, Place, Problem
 
 MAX_BYTES = 1 << 20
 

@@ -8,8 +8,8 @@ import math
 import threading
 from typing import Any
 
-from wavejob.reading import constants
-from wavejob.reading.dimensions import Vector
+from . import constants
+from .dimensions import Vector
 
 _MICRO = ("u", "\u00b5", "\u03bc")  # the letter u, the micro sign and the Greek letter mu
 _PREFIXES = {

@@ -15,9 +15,9 @@ from typing import Any, NoReturn
 
 import yaml
 
-from wavejob.problems import JobFileError, Place, Problem
-from wavejob.reading.text_file import LINE_END, check_characters, read_text_file
-from wavejob.reading.yaml_syntax import GENERAL, sentence
+from ..problems import JobFileError, Place, Problem
+from .text_file import LINE_END, check_characters, read_text_file
+from .yaml_syntax import GENERAL, sentence
 
 KeyPath = tuple[str | int, ...]
 Value = dict[str, Any] | list[Any] | str | int | float | bool | None
