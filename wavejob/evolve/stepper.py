@@ -156,6 +156,7 @@ def plan(
     energy = hamiltonian.kinetic() + sum(
         part.values(start) for part in hamiltonian.parts if part.representation == "wave number"
     )
+    energy = energy.reshape((1,) * (psi.ndim - energy.ndim) + energy.shape)  # numpy is slow to broadcast
     drifts = {
         share: (np.exp(-1j * step * share * energy) / settings.round_trip).astype(psi.dtype)
         for share in splitting.drifts

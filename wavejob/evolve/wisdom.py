@@ -47,7 +47,7 @@ def load(where: Path, key: str) -> Wisdom | None:
         if stored["key"] != key:
             return None
         return tuple(str(text).encode() for text in stored["wisdom"])
-    except FileNotFoundError:
+    except (FileNotFoundError, NotADirectoryError):
         return None
     except (OSError, ValueError, KeyError, TypeError) as error:
         _say_once(f"cannot read {path} ({error}); planning anew")

@@ -1,0 +1,123 @@
+"""The time step and the splitting that an accuracy asks for, estimated before the run."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..hamiltonian import Hamiltonian
+from .splittings import SPLITTINGS, Splitting
+
+Array = np.ndarray
+
+SITES = 24  # places along the axis where a packet is tried
+COARSEST = math.pi  # largest kinetic phase per step, hbar k_max^2 step / 2m: beyond it errors do not shrink smoothly
+SMALLEST = 2.0**-14  # of the coarsest step: where accuracy is beyond reach, rounding is
+
+
+@dataclass(frozen=True)
+class StepChoice:
+    """A splitting, the longest step it may take, and why."""
+
+    splitting: Splitting
+    step: float
+    reason: str
+
+
+def largest_step(hamiltonian: Hamiltonian) -> float:
+    """The step at which the kinetic phase of the largest wave number is pi."""
+    fastest = max(
+        axis.k_max**2 / (2 * mass) for axis, mass in zip(hamiltonian.grid.axes, hamiltonian.masses, strict=True)
+    )
+    return COARSEST / fastest
+
+
+def choose_step(
+    hamiltonian: Hamiltonian, psi: Array, start: float, duration: float, accuracy: float, orders: tuple[int, ...]
+) -> StepChoice:
+    """The cheapest of the splittings of `orders` whose estimated error in probabilities stays below `accuracy`.
+
+    psi: the initial state on one axis, shape (points,). Copies of it with the momentum that energy
+    conservation gives them are set down at places all along the axis, and the error of one step there is
+    measured against two half steps. The largest of these errors per time, times the duration, bounds the
+    norm of the final error; a probability errs by at most twice that.
+    """
+    longest = min(largest_step(hamiltonian), duration)
+    trials = _trial_packets(hamiltonian, psi)
+    choices = []
+    for splitting in SPLITTINGS.values():
+        if splitting.order not in orders or (splitting.uses_gradient and hamiltonian.couples):
+            continue
+        step = longest
+        while True:
+            error = 2 * duration * _error_rate(hamiltonian, splitting, trials, start, duration, step)
+            if error <= accuracy or step <= longest * SMALLEST:
+                break
+            # The order is read off what halving does, not assumed; never less than halve, never more than 8 times.
+            step /= min(max((error / accuracy) ** (1 / splitting.order), 2.0), 8.0) if error > accuracy else 2
+        limited = "the kinetic phase of pi" if step == longest else f"an estimated error of {error:.1e}"
+        choices.append(StepChoice(splitting, step, f"order {splitting.order}, step limited by {limited}"))
+    return min(choices, key=lambda choice: choice.splitting.stages / choice.step)
+
+
+def _trial_packets(hamiltonian: Hamiltonian, psi: Array) -> Array:
+    """Copies of `psi` at SITES places, each with the mean momentum of its energy there, shape (sites, points)."""
+    axis, mass = hamiltonian.grid.axes[0], hamiltonian.masses[0]
+    potential = hamiltonian.potential(0.0)[0, 0]
+    density = np.abs(psi) ** 2
+    density /= density.sum()
+    mean = float(density @ axis.x)
+    spread = math.sqrt(float(density @ (axis.x - mean) ** 2))
+    slope = np.gradient(psi, axis.spacing)
+    k0 = float(np.vdot(psi, slope).imag / np.vdot(psi, psi).real)
+    energy = k0**2 / (2 * mass) + float(density @ potential)
+    width = min(spread, axis.length / 12)
+    places = axis.low + axis.length * (np.arange(SITES) + 0.5) / SITES
+    steepest = axis.x[np.argsort(np.abs(np.gradient(potential)))[::-1][:4]]
+    packets = []
+    for place in (*places, *steepest):
+        local = np.exp(-(((axis.x - place) / (2 * width)) ** 2))
+        here = float(np.interp(place, axis.x, potential))
+        k = math.sqrt(max(2 * mass * (energy - here), 0.0))
+        packets.append(local * np.exp(1j * k * (axis.x - place)))
+    packets.append(psi)
+    table = np.array(packets)
+    return table / np.linalg.norm(table, axis=1, keepdims=True)
+
+
+def _error_rate(
+    hamiltonian: Hamiltonian, splitting: Splitting, packets: Array, start: float, duration: float, step: float
+) -> float:
+    """The largest error per time of one step over all packets and, for changing potentials, several times."""
+    times = start + duration * (np.arange(8) + 0.37) / 8 if hamiltonian.depends_on_time else [start]
+    worst = 0.0
+    for t in times:
+        whole = _stepped(hamiltonian, splitting, packets, t, step)
+        halves = _stepped(hamiltonian, splitting, packets, t, step / 2)
+        halves = _stepped(hamiltonian, splitting, halves, t + step / 2, step / 2)
+        share = 1 / (1 - 2.0**-splitting.order)  # the halves err too
+        worst = max(worst, share * float(np.linalg.norm(whole - halves, axis=1).max()) / step)
+    return worst
+
+
+def _stepped(hamiltonian: Hamiltonian, splitting: Splitting, packets: Array, t: float, step: float) -> Array:
+    """One step by plain numpy transforms; on an axis with walls the odd continuation is advanced."""
+    axis, mass = hamiltonian.grid.axes[0], hamiltonian.masses[0]
+    walls = axis.transform == "sine"
+    psi = np.concatenate([packets, -packets[:, ::-1]], axis=1) if walls else packets
+    k = 2 * np.pi * np.fft.fftfreq(psi.shape[1], axis.spacing)
+    for index, kick in enumerate(splitting.kicks):
+        at = t + kick.at * step
+        energy = hamiltonian.potential(at)[0, 0]
+        if kick.gradient:
+            slope = sum(part.factor(at) * part.gradient(at)[0][0, 0] for part in hamiltonian.parts if part.gradient)
+            energy = energy - kick.gradient * step**2 * slope**2 / mass
+        if walls:
+            energy = np.concatenate([energy, energy[::-1]])
+        psi = psi * np.exp(-1j * step * kick.weight * energy)
+        if index < len(splitting.drifts):
+            drift = np.exp(-1j * step * splitting.drifts[index] * k**2 / (2 * mass))
+            psi = np.fft.ifft(drift * np.fft.fft(psi))
+    return psi[:, : packets.shape[1]]
