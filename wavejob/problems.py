@@ -57,6 +57,15 @@ def _clip(line: str, column: int, width: int = 110) -> tuple[str, int]:
     return line[start : start + width], column - start
 
 
+def nearest(word: str, words: Iterable[str]) -> str | None:
+    """The one of `words` that a mistyped `word` most likely meant, however it is capitalised."""
+    from difflib import get_close_matches
+
+    spelt = {known.lower(): known for known in words}
+    found = get_close_matches(word.lower(), spelt, 1, 0.6)
+    return spelt[found[0]] if found else None
+
+
 def in_order(problems: Iterable[Problem]) -> list[Problem]:
     """Problems sorted by place; those without a place last."""
     return sorted(problems, key=lambda p: (p.place is None, p.place or Place("")))

@@ -1,20 +1,29 @@
-"""Propagation: splittings, transforms, the hot loop, and the loop over recorded steps."""
+"""Propagation: splittings, transforms, the hot loop, and the loop over recorded steps.
 
-from .loop import Control, Outcome, Output, Schedule, evolve, go_on
-from .splittings import SPLITTINGS, Kick, PlanError, Splitting
-from .stepper import Stepper, plan
+Names are found when first asked for: planning a job needs the tables here, but not the transforms.
+"""
 
-__all__ = [
-    "SPLITTINGS",
-    "Control",
-    "Kick",
-    "Outcome",
-    "Output",
-    "PlanError",
-    "Schedule",
-    "Splitting",
-    "Stepper",
-    "evolve",
-    "go_on",
-    "plan",
-]
+from importlib import import_module
+from typing import Any
+
+_HOMES = {
+    "SPLITTINGS": "splittings",
+    "Kick": "splittings",
+    "PlanError": "splittings",
+    "Splitting": "splittings",
+    "Schedule": "schedule",
+    "Control": "loop",
+    "Outcome": "loop",
+    "Output": "loop",
+    "evolve": "loop",
+    "go_on": "loop",
+    "Stepper": "stepper",
+    "plan": "stepper",
+}
+__all__ = list(_HOMES)
+
+
+def __getattr__(name: str) -> Any:
+    if name not in _HOMES:
+        raise AttributeError(f"module {__name__!r} has no attribute {name!r}")
+    return getattr(import_module(f".{_HOMES[name]}", __name__), name)

@@ -10,21 +10,8 @@ import numpy as np
 
 from ..problems import RunError
 from ..state import Look
+from .schedule import Schedule
 from .stepper import Stepper
-
-
-@dataclass(frozen=True)
-class Schedule:
-    """Due at step 0, at every multiple of `every`, and at step `last`."""
-
-    every: int
-    last: int
-
-    def next_after(self, n: int) -> int | None:
-        """The first step later than `n` that is due, None after the last; -1 asks for the very first."""
-        if n >= self.last:
-            return None
-        return min((n // self.every + 1) * self.every, self.last)
 
 
 class Output(Protocol):

@@ -1,0 +1,138 @@
+"""A job: the whole checked job file in scaled units, ready to be planned. `loading.py` makes it."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from functools import cached_property
+from pathlib import Path
+from typing import Any
+
+from .models import Item
+from .observables.base import Observable, Outline
+from .packets.base import Packet
+from .potentials.base import Setting
+from .problems import Problem
+from .reading.merging import Key, Merged
+from .reading.quantities import Named, Units
+from .reading.tree import JobTree
+from .reading.validation import problem_at
+from .results import Column
+from .settings import EvolveKeys, JobKeys
+from .shapes import Landscape
+from .version import NUMERICS
+
+
+@dataclass(frozen=True)
+class Particle:
+    """Mass in scaled units, charge in units of e."""
+
+    mass: float
+    charge: float
+
+
+@dataclass(frozen=True)
+class Job:
+    """A checked job. Lengths, times and energies are in scaled units (hbar = 1); `units` turns them back."""
+
+    id: str
+    path: Path
+    text: str  # the job file as it was
+    document: Merged = field(repr=False)
+    keys: JobKeys = field(repr=False)
+    units: Units
+    particle: Particle
+    tree: JobTree
+
+    @property
+    def title(self) -> str:
+        return self.keys.job or self.id
+
+    @property
+    def evolve(self) -> EvolveKeys:
+        return self.keys.evolve
+
+    @property
+    def packet(self) -> Packet:
+        packet: Packet = self.keys.packet.body
+        return packet
+
+    @property
+    def setting(self) -> Setting:
+        return Setting(self.particle.mass, self.particle.charge, self.units)
+
+    @cached_property
+    def landscape(self) -> Landscape:
+        """The potential as it is meant."""
+        return Landscape(tuple(item.term(self.setting) for item in self.keys.potential))  # type: ignore[attr-defined]
+
+    @property
+    def observables(self) -> list[Observable]:
+        items = self.keys.observables
+        return [] if items is None else [item.body for item in items]
+
+    @cached_property
+    def layers(self) -> tuple[str, ...]:
+        """Names of the absorbing ends, "x.low" and "x.high"."""
+        ends = self.keys.edges.x
+        return tuple(f"x.{side}" for side in ("low", "high") if not isinstance(getattr(ends, side), str))
+
+    @property
+    def outline(self) -> Outline:
+        return Outline(("x",), self.layers)
+
+    @cached_property
+    def columns(self) -> dict[str, Column]:
+        """The columns of the time series, by name."""
+        return {column.name: column for o in self.observables for column in o.columns(self.outline)}
+
+    @cached_property
+    def figures(self) -> dict[str, Column]:
+        """The results the run will yield, by name."""
+        return {figure.name: figure for o in self.observables for figure in o.figures(self.outline)}
+
+    def problem(self, path: Key, message: str, fix: str = "", severity: str = "error") -> Problem:
+        """A problem at a key of the job file."""
+        return problem_at(self.document, path, message, fix, severity=severity)
+
+    def write(self, value: float, dimension: str) -> str:
+        """A quantity as a user would write it, to four digits."""
+        label = self.units.label(dimension)
+        return f"{self.units.to_file(value, dimension):.4g}" + (f" {label}" if label else "")
+
+    @cached_property
+    def fingerprint(self) -> str:
+        """A short hash of what decides the numbers: not titles, pictures, expectations or choices made here."""
+        keys = self.keys
+        decisive = {
+            "numerics": NUMERICS,
+            "units": [self.units.label(d) for d in ("length", "time", "energy")],
+            "particle": [self.particle.mass, self.particle.charge],
+            **{
+                name: plain(getattr(keys, name))
+                for name in ("grid", "potential", "edges", "packet", "evolve", "observables", "snapshots")
+            },
+        }
+        text = json.dumps(decisive, sort_keys=True, allow_nan=False)
+        return hashlib.sha256(text.encode()).hexdigest()[:10]
+
+
+def plain(value: Any) -> Any:
+    """A model as plain data: kinds by name, scaled numbers, digests for files."""
+    if isinstance(value, Item):
+        beside = {n: plain(getattr(value, n)) for n in type(value).model_fields if n != f"{value.kind}_"}
+        return {value.kind: plain(value.body), **{k: v for k, v in beside.items() if v is not None}}
+    if hasattr(value, "digest"):
+        return value.digest
+    if isinstance(value, Named):
+        return [value.value, value.dimension]
+    if hasattr(value, "model_fields"):
+        data = {name: plain(getattr(value, name)) for name in type(value).model_fields}
+        return {**data, **{k: plain(v) for k, v in (value.__pydantic_extra__ or {}).items()}}
+    if isinstance(value, (list, tuple)):
+        return [plain(item) for item in value]
+    if isinstance(value, Mapping):
+        return {str(k): plain(v) for k, v in value.items()}
+    return value

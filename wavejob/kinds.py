@@ -1,0 +1,71 @@
+"""Every kind there is, by the name it has in a job file.
+
+To add a kind: write the class (the recipe stands in the base class of its family), add one line to the table of
+its family, and one job in jobs/ that uses it. Reading, messages, schema, `explain` and the reference text follow.
+"""
+
+from __future__ import annotations
+
+from .models import Model
+from .observables.base import Observable
+from .observables.densities import Density, MomentumDensity
+from .observables.moments import Ehrenfest, Energy, Force, Momentum, Norm, Position, Width
+from .observables.overlaps import Autocorrelation, Overlap
+from .observables.places import Crossing, Inside
+from .packets.item import PACKETS
+from .potentials.item import POTENTIALS
+from .time_shapes import FACTORS, PATHS
+
+OBSERVABLES: dict[str, type[Observable]] = {
+    "norm": Norm,
+    "position": Position,
+    "momentum": Momentum,
+    "width": Width,
+    "energy": Energy,
+    "force": Force,
+    "ehrenfest": Ehrenfest,
+    "inside": Inside,
+    "crossing": Crossing,
+    "overlap": Overlap,
+    "autocorrelation": Autocorrelation,
+    "density": Density,
+    "momentum_density": MomentumDensity,
+}
+
+FAMILIES: dict[str, dict[str, type[Model]]] = {
+    "potential": dict(POTENTIALS),
+    "packet": dict(PACKETS),
+    "observable": dict(OBSERVABLES),
+    "in_time": dict(FACTORS),
+    "path": dict(PATHS),
+}
+
+# Kinds and keys of the job-file format that this version reads but cannot carry out; `*` stands for any list place.
+NOT_YET: tuple[tuple[str, ...], ...] = (
+    ("channels",),
+    ("vary",),
+    ("vary_together",),
+    ("derive",),
+    ("average",),
+    ("magnetic",),
+    ("mean_field",),
+    ("grid", "y"),
+    ("grid", "z"),
+    ("edges", "y"),
+    ("edges", "z"),
+    ("particle", "mass_profile"),
+    ("potential", "*", "slits"),
+    ("potential", "*", "image"),
+    ("potential", "*", "channel"),
+    ("packet", "channel"),
+    ("packet", "eigenstate"),
+    ("observables", "*", "transmission"),
+    ("observables", "*", "arrival"),
+    ("observables", "*", "dwell"),
+    ("observables", "*", "spectrum"),
+    ("observables", "*", "populations"),
+    ("expect", "*", "equals_result"),
+    ("expect", "*", "when"),
+    ("evolve", "accuracy", "relative"),
+    ("evolve", "accuracy", "down_to"),
+)

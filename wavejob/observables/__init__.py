@@ -1,0 +1,1 @@
+"""Observables: what is measured while a packet travels, one class per kind."""

@@ -1,0 +1,138 @@
+"""What every observable is: options that can be read, and a meter that measures one run.
+
+To add a kind: write the class with its options as fields and `meter`, write the meter, add one line to kinds.py and
+one job in jobs/. A meter names its columns, is offered every recorded time (`row`) and, where it integrates over
+time, every sampling time (`sample`); at the end it yields results and curves. All in scaled units.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import Literal
+
+import numpy as np
+
+from ..grid import Axis
+from ..hamiltonian import Hamiltonian
+from ..models import Model
+from ..reading.quantities import Units
+from ..results import Column, Curve
+from ..shapes import Landscape
+from ..state import Look
+
+Array = np.ndarray
+Toward = Literal["+x", "-x"]
+
+
+@dataclass(frozen=True)
+class Outline:
+    """What the names of columns and results depend on."""
+
+    axes: tuple[str, ...]
+    layers: tuple[str, ...]  # "x.low", ...
+
+
+@dataclass(frozen=True)
+class Bench:
+    """Where a meter stands: the job's physics, and the scales that errors are measured by."""
+
+    hamiltonian: Hamiltonian
+    landscape: Landscape
+    units: Units
+    start: float
+    stop: float
+    scales: Mapping[str, float]  # by dimension: initial width, initial momentum width, ...
+    fastest: float  # shortest time over which a time-dependent term changes; infinity without one
+
+    @property
+    def axis(self) -> Axis:
+        return self.hamiltonian.grid.axes[0]
+
+    @property
+    def mass(self) -> float:
+        return self.hamiltonian.masses[0]
+
+    def scale(self, dimension: str) -> float:
+        return self.scales.get(dimension, 1.0)
+
+
+@dataclass(frozen=True)
+class Series:
+    """The rows of one meter: times (rows,) and values (rows, columns)."""
+
+    times: Array
+    values: Array
+
+
+class Meter:
+    """Measures one run of a state; subclasses keep what they need between calls."""
+
+    samples: bool = False  # True: wants `sample` at every sampling time
+
+    def start(self, look: Look) -> None:
+        """The initial state, before anything else."""
+
+    def sample(self, look: Look) -> None:
+        """One of the evenly spaced sampling times, the first and the last included."""
+
+    def row(self, look: Look) -> Sequence[float]:
+        """The values of the observable's columns at a recorded time."""
+        return ()
+
+    def results(self, series: Series) -> Mapping[str, float | None]:
+        """A value for each of the observable's figures; None where it cannot be had."""
+        return {}
+
+    def notes(self) -> Mapping[str, str]:
+        """Why a figure cannot be had, by its name."""
+        return {}
+
+    def curves(self) -> list[Curve]:
+        return []
+
+
+class Observable(Model):
+    """One kind of observable."""
+
+    def columns(self, outline: Outline) -> tuple[Column, ...]:
+        """The columns it adds to series.csv."""
+        return ()
+
+    def figures(self, outline: Outline) -> tuple[Column, ...]:
+        """The results it yields: names, dimensions, meanings."""
+        return ()
+
+    def meter(self, bench: Bench) -> Meter:
+        raise NotImplementedError
+
+    def misplaced(self, axis: Axis) -> tuple[str, str, str] | None:
+        """(key, what is wrong, cure) where it cannot stand on this axis."""
+        return None
+
+
+def over_time(name: str, dimension: str, what: str) -> tuple[Column, ...]:
+    """The figures .final, .min, .max and .mean of one column."""
+    return (
+        Column(f"{name}.final", dimension, f"{what} at the end"),
+        Column(f"{name}.min", dimension, f"smallest {what} recorded"),
+        Column(f"{name}.max", dimension, f"largest {what} recorded"),
+        Column(f"{name}.mean", dimension, f"{what} averaged over time"),
+    )
+
+
+def time_average(series: Series, column: int = 0) -> float:
+    """The mean over time of one column (trapezoidal rule over the recorded times)."""
+    values, duration = series.values[:, column], series.times[-1] - series.times[0]
+    return float(np.trapezoid(values, series.times) / duration) if duration > 0 else float(values[-1])
+
+
+def summary(name: str, series: Series) -> dict[str, float | None]:
+    """Values for `over_time`, of the first column."""
+    values = series.values[:, 0]
+    return {
+        f"{name}.final": float(values[-1]),
+        f"{name}.min": float(values.min()),
+        f"{name}.max": float(values.max()),
+        f"{name}.mean": time_average(series),
+    }

@@ -1,0 +1,144 @@
+"""Probability inside a region, and flux through a detector."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+from pydantic import Field, model_validator
+
+from ..grid import Axis
+from ..models import Length, Name, refuse
+from ..results import Column
+from ..state import Look
+from .base import Bench, Meter, Observable, Outline, Series, Toward, time_average
+from .integrals import Samples, positive_part, running
+from .interpolant import at_point, fine_density, region_weights
+
+Array = np.ndarray
+NOTHING = 1e-12  # a crossed probability below this has no meaningful mean time
+
+
+def probability(look: Look, axis: Axis, weights: Array) -> float:
+    """The probability of the region with `weights` (interpolant.region_weights)."""
+    density = look.cached("fine density", lambda: fine_density(axis, look.psi[0]).sum(0))
+    return float(density @ weights)
+
+
+class Inside(Observable):
+    """The probability between two places."""
+
+    name: Name = Field(description="name in the outputs")
+    start: Length = Field(alias="from", description="left end")
+    stop: Length = Field(alias="to", description="right end")
+
+    @model_validator(mode="after")
+    def _ordered(self) -> Inside:
+        if not self.start < self.stop:
+            raise refuse("`from` must lie before `to`", "swap them")
+        return self
+
+    def columns(self, outline: Outline) -> tuple[Column, ...]:
+        return (Column(self.name, "number", "probability in the region"),)
+
+    def figures(self, outline: Outline) -> tuple[Column, ...]:
+        return (
+            Column(f"{self.name}.final", "number", "probability in the region at the end"),
+            Column(f"{self.name}.peak", "number", "largest probability in the region recorded"),
+            Column(f"{self.name}.peak_time", "time", "when it was largest"),
+            Column(f"{self.name}.mean", "number", "probability in the region averaged over time"),
+        )
+
+    def meter(self, bench: Bench) -> Meter:
+        return InsideMeter(bench, self)
+
+    def misplaced(self, axis: Axis) -> tuple[str, str, str] | None:
+        if self.stop <= axis.low or self.start >= axis.high:
+            return "from", "the region lies outside the grid", "move it or extend the grid"
+        return None
+
+
+class InsideMeter(Meter):
+    def __init__(self, bench: Bench, inside: Inside) -> None:
+        self.bench, self.name = bench, inside.name
+        self.weights = region_weights(bench.axis, inside.start, inside.stop)
+
+    def row(self, look: Look) -> Sequence[float]:
+        return [probability(look, self.bench.axis, self.weights)]
+
+    def results(self, series: Series) -> dict[str, float | None]:
+        values = series.values[:, 0]
+        top = int(np.argmax(values))
+        return {
+            f"{self.name}.final": float(values[-1]),
+            f"{self.name}.peak": float(values[top]),
+            f"{self.name}.peak_time": float(series.times[top]),
+            f"{self.name}.mean": time_average(series),
+        }
+
+
+class Crossing(Observable):
+    """The probability flux through a place, and its integral over time."""
+
+    name: Name = Field(description="name in the outputs")
+    x: Length = Field(description="place of the detector")
+    toward: Toward = Field(description="direction that counts as forward")
+
+    def columns(self, outline: Outline) -> tuple[Column, ...]:
+        return (Column(self.name, "flux", "probability flux through the detector"),)
+
+    def figures(self, outline: Outline) -> tuple[Column, ...]:
+        before = "probability at the end still before the detector and inside the grid"
+        return (
+            Column(f"{self.name}.total", "number", "probability that crossed the detector"),
+            Column(f"{self.name}.backward", "number", "probability that crossed it backwards"),
+            Column(f"{self.name}.mean_time", "time", "mean time of crossing"),
+            Column(f"{self.name}.undecided", "number", before),
+        )
+
+    def meter(self, bench: Bench) -> Meter:
+        return CrossingMeter(bench, self)
+
+    def misplaced(self, axis: Axis) -> tuple[str, str, str] | None:
+        if not axis.low < self.x < axis.high:
+            return "x", "the detector lies outside the grid", "move it or extend the grid"
+        return None
+
+
+class CrossingMeter(Meter):
+    samples = True
+
+    def __init__(self, bench: Bench, crossing: Crossing) -> None:
+        axis = bench.axis
+        self.bench, self.name, self.x = bench, crossing.name, crossing.x
+        self.forward = 1.0 if crossing.toward == "+x" else -1.0
+        self.point = at_point(axis, crossing.x)
+        ahead = (axis.low, crossing.x) if self.forward > 0 else (crossing.x, axis.high)
+        self.before = region_weights(axis, *ahead)
+        self.flux = Samples()
+        self.undecided = 0.0
+
+    def _flux(self, look: Look) -> float:
+        value, slope = self.point @ look.psi[0].T
+        return self.forward * float(np.sum((value.conj() * slope).imag)) / self.bench.mass
+
+    def sample(self, look: Look) -> None:
+        self.flux.add(look.t, self._flux(look))
+
+    def row(self, look: Look) -> Sequence[float]:
+        self.undecided = probability(look, self.bench.axis, self.before)
+        return [self._flux(look)]
+
+    def results(self, series: Series) -> dict[str, float | None]:
+        times, flux = self.flux.times, self.flux.values
+        total = float(running(times, flux)[-1])
+        late = float(running(times, times * flux)[-1])
+        return {
+            f"{self.name}.total": total,
+            f"{self.name}.backward": positive_part(times, -flux),
+            f"{self.name}.mean_time": late / total if abs(total) > NOTHING else None,
+            f"{self.name}.undecided": self.undecided,
+        }
+
+    def notes(self) -> dict[str, str]:
+        return {f"{self.name}.mean_time": "nothing crossed"}

@@ -1,0 +1,1 @@
+"""Packets: the initial state, one class per kind."""

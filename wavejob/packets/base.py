@@ -1,0 +1,42 @@
+"""What every packet is: parameters that can be read, and a field on the grid.
+
+To add a kind: write the class with `field`, `outside` and `beyond`, add one line to kinds.py and one job in jobs/.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from ..grid import Axis
+from ..models import Model
+from ..reading.quantities import Units
+
+Array = np.ndarray
+
+
+class Packet(Model):
+    """One kind of initial state, on one axis."""
+
+    def field(self, axis: Axis, mass: float, units: Units) -> Array:
+        """psi at the points of `axis`, complex, shape (points,), normalised to 1."""
+        raise NotImplementedError
+
+    def extent(self) -> tuple[float, float] | None:
+        """Between which places it must have room; None where only the field tells."""
+        return None
+
+    def widest_wavenumber(self, mass: float) -> float | None:
+        """The largest wave number it holds; None where only the field tells."""
+        return None
+
+
+def normalised(psi: Array, axis: Axis) -> Array:
+    """psi scaled to the norm 1."""
+    return np.asarray(psi / np.sqrt(np.sum(np.abs(psi) ** 2) * axis.spacing))
+
+
+def waves(x: Array, at: float, sigma: float, k: float) -> Array:
+    """A Gaussian packet with standard deviation `sigma` of |psi|^2 and mean wave number `k`."""
+    return np.asarray(
+        (2 * np.pi * sigma**2) ** -0.25 * np.exp(-(((x - at) / (2 * sigma)) ** 2) + 1j * k * (x - at))
+    )

@@ -1,0 +1,92 @@
+"""A packet read from a file: a text table, or the final state of an earlier run."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Annotated, Any
+
+import numpy as np
+from pydantic import Field, ValidationInfo, WithJsonSchema
+from pydantic.functional_validators import BeforeValidator
+
+from ..grid import Axis
+from ..models import refuse
+from ..reading.quantities import QuantityError, Units
+from ..tabulated import TableError, digest, named_file, read_columns
+from .base import Array, Packet, normalised
+
+
+@dataclass(frozen=True)
+class StoredField:
+    """A field as stored: places in `unit` (None: the job file's), complex values, a digest of the file."""
+
+    written: str
+    x: Array
+    psi: Array
+    unit: str | None
+    digest: str
+
+    @classmethod
+    def read(cls, written: Any, info: ValidationInfo) -> StoredField:
+        if isinstance(written, StoredField):
+            return written
+        path = named_file(written, info)
+        if path.suffix == ".nc":
+            x, psi, unit = _final_state(path)
+        else:
+            try:
+                rows = read_columns(path, 3)
+            except TableError as error:
+                raise refuse(error.message, error.fix) from None
+            x, psi, unit = rows[:, 0], rows[:, 1] + 1j * rows[:, 2], None
+        if np.any(np.diff(x) <= 0):
+            raise refuse(f"the places in `{written}` do not rise", "sort the rows and drop doubled ones")
+        if not np.any(psi):
+            raise refuse(f"the field in `{written}` is 0 everywhere", "store a field with some probability")
+        return cls(str(written), x, psi, unit, digest(path))
+
+
+def _final_state(path: Path) -> tuple[Array, Array, str]:
+    """x, psi and the unit of x of the last stored time of a fields.nc with one axis."""
+    import h5py
+
+    try:
+        with h5py.File(path, "r") as file:
+            psi = np.asarray(file["psi"])
+            x = np.asarray(file["x"], dtype=float)
+            unit = file["x"].attrs.get("units", "")
+    except (OSError, KeyError):
+        raise refuse(
+            f"`{path.name}` is no fields file with `psi` on an axis `x`", "name the fields.nc of a finished run"
+        ) from None
+    last = psi[-1] if psi.ndim == 3 else psi
+    if last.ndim != 2 or last.shape[-1] != 2 or last.shape[0] != x.size:
+        raise refuse(f"the field in `{path.name}` has more than one axis", "name the fields.nc of a run with one axis")
+    return x, last[:, 0] + 1j * last[:, 1], unit.decode() if isinstance(unit, bytes) else str(unit)
+
+
+StoredPath = Annotated[StoredField, BeforeValidator(StoredField.read), WithJsonSchema({"type": "string"})]
+
+
+class FilePacket(Packet):
+    """A stored field: columns x, real, imaginary of a text table, or the final state in a `fields.nc`."""
+
+    path: StoredPath = Field(description="path of the file, relative to this one")
+
+    def places(self, units: Units) -> Array:
+        """The stored places in scaled units."""
+        if not self.path.unit:
+            return self.path.x * units.scale("length")
+        try:
+            return self.path.x * units.read(f"1 {self.path.unit}", "length")
+        except QuantityError as error:
+            raise refuse(error.message, error.fix) from None
+
+    def field(self, axis: Axis, mass: float, units: Units) -> Array:
+        from scipy.interpolate import CubicSpline
+
+        x = self.places(units)
+        psi = CubicSpline(x, self.path.psi)(axis.x)
+        psi[(axis.x < x[0] - axis.spacing) | (axis.x > x[-1] + axis.spacing)] = 0
+        return normalised(psi, axis)

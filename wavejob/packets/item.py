@@ -1,0 +1,13 @@
+"""A packet as it stands in a job file: one kind with its parameters."""
+
+from __future__ import annotations
+
+from typing import Annotated
+
+from ..models import Choice, Item
+from .base import Packet
+from .file import FilePacket
+from .gaussian import GaussianPacket, SumPacket
+
+PACKETS: dict[str, type[Packet]] = {"gaussian": GaussianPacket, "sum": SumPacket, "file": FilePacket}
+PacketItem = Annotated[Item, Choice(PACKETS, "packet")]

@@ -1,0 +1,342 @@
+"""From a checked job to everything the loop needs: grid, potential on it, step, and when what is recorded."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, replace
+from fractions import Fraction
+
+import numpy as np
+
+from .edges import LayerShape, Momenta, layer, recommended_depth, tuned
+from .evolve.schedule import Schedule
+from .evolve.splittings import SPLITTINGS, Splitting
+from .evolve.step_choice import choose_step, largest_step
+from .grid import Axis, Grid, fast_size
+from .hamiltonian import Hamiltonian, Layer, Part
+from .job import Job
+from .misfits import axis_as_written
+from .observables.base import Bench
+from .problems import JobFileError
+from .settings import Absorb
+from .shapes import Term
+
+Array = np.ndarray
+
+ACCURACY = 1e-4
+ROWS = 400
+FRAMES = 300
+OVERSAMPLING = 8  # samples per shortest period of what is integrated over time
+TAIL = 1e-10  # probability left out of the range of wave numbers
+
+
+@dataclass(frozen=True)
+class Ending:
+    """One absorbing end: the layer, what it reflects as predicted, and the depth that would do."""
+
+    side: str
+    shape: LayerShape
+    recommended: float
+
+
+@dataclass(frozen=True)
+class Plan:
+    """A job made ready. Steps count from 0; `notes` say why each choice was made."""
+
+    job: Job
+    axis: Axis
+    psi: Array  # the initial state, shape (points,)
+    hamiltonian: Hamiltonian
+    endings: tuple[Ending, ...]
+    splitting: Splitting
+    step: float
+    steps: int
+    record: int  # steps between rows of the series
+    sample: int  # steps between samples of integrals over time; divides `record` and `steps`
+    notes: dict[str, str]
+
+    @property
+    def recorded(self) -> Schedule:
+        return Schedule(self.record, self.steps)
+
+    @property
+    def sampled(self) -> Schedule:
+        return Schedule(self.sample, self.steps)
+
+    def every(self, time: float) -> Schedule:
+        """Due about every `time`, to the nearest step."""
+        return Schedule(max(round(time / self.step), 1), self.steps)
+
+    @property
+    def frames(self) -> Schedule | None:
+        """When the film takes a frame; None where there is no film."""
+        film = self.job.keys.film
+        if isinstance(film, str):
+            return None
+        if film.every is not None:
+            return self.every(film.every)
+        return Schedule(max(round(self.steps / FRAMES), 1), self.steps)
+
+    @property
+    def bench(self) -> Bench:
+        """What observables measure on."""
+        job = self.job
+        return Bench(
+            hamiltonian=self.hamiltonian,
+            landscape=job.landscape,
+            units=job.units,
+            start=job.evolve.start,
+            stop=job.evolve.until,
+            scales=scales(self),
+            fastest=fastest(job),
+        )
+
+    @property
+    def kinetic_phase(self) -> float:
+        """hbar k_max^2 step / 2m."""
+        return math.pi * self.step / largest_step(self.hamiltonian)
+
+
+def make_plan(job: Job) -> Plan:
+    """The plan of a job. Raises JobFileError where the job cannot be carried out as it is written."""
+    axis, notes = _axis(job)
+    psi = job.packet.field(axis, job.particle.mass, job.units)
+    _refuse_lost(job, axis, psi)
+    endings = _endings(job, axis, psi)
+    hamiltonian = on_grid(job, axis, endings)
+    splitting, longest, notes["step"] = _step(job, hamiltonian, psi)
+    shortest = _sampling(job, hamiltonian, psi)
+    step, steps, record, sample = _timetable(job, longest, shortest)
+    return Plan(job, axis, psi, hamiltonian, endings, splitting, step, steps, record, sample, notes)
+
+
+def on_grid(job: Job, axis: Axis, endings: tuple[Ending, ...] = ()) -> Hamiltonian:
+    """The Hamiltonian on the grid; terms that do not change in time are one part."""
+    still = [term for term in job.landscape.terms if not term.moves and term.in_time is None]
+    timed = [term for term in job.landscape.terms if term.moves or term.in_time is not None]
+    parts = [_still(still, axis)] if still else []
+    parts += [_timed(term, axis) for term in timed]
+    layers: tuple[Layer, ...] = tuple(
+        layer(0, axis, ending.shape, "low" if ending.side == "low" else "high") for ending in endings
+    )
+    return Hamiltonian(Grid((axis,)), (job.particle.mass,), tuple(parts), layers)
+
+
+def _still(terms: list[Term], axis: Axis) -> Part:
+    sampled = [term.sampled(axis, 0.0) for term in terms]
+    values = np.sum([v for v, _ in sampled], axis=0)[None, None]
+    slopes = np.sum([s for _, s in sampled], axis=0)[None, None]
+    return Part("position", lambda t: values, lambda t: (slopes,))
+
+
+def _timed(term: Term, axis: Axis) -> Part:
+    if term.moves:
+        return Part(
+            "position",
+            lambda t: term.sampled(axis, t)[0][None, None],
+            lambda t: (term.sampled(axis, t)[1][None, None],),
+            term.in_time,
+            moves=True,
+        )
+    values, slopes = (table[None, None] for table in term.sampled(axis, 0.0))
+    return Part("position", lambda t: values, lambda t: (slopes,), term.in_time)
+
+
+def _axis(job: Job) -> tuple[Axis, dict[str, str]]:
+    """The x axis, with its points chosen where the job leaves them out."""
+    axis, keys = axis_as_written(job), job.keys.grid.x
+    if keys.points:
+        return axis, {"points": "as written"}
+    if keys.spacing:
+        points = fast_size(math.ceil((keys.stop - keys.start) / keys.spacing - 1e-9))
+        return replace(axis, points=points), {"points": "the next size up from the spacing that transforms fast"}
+    points, why = choose_points(job, axis)
+    return replace(axis, points=points), {"points": why}
+
+
+def choose_points(job: Job, axis: Axis) -> tuple[int, str]:
+    """How many points hold the wave numbers of the packet wherever the potential lets it go."""
+    mass, accuracy = job.particle.mass, job.evolve.accuracy or ACCURACY
+    k = job.packet.widest_wavenumber(mass)
+    fine = replace(axis, points=2**14)
+    psi = job.packet.field(fine, mass, job.units)
+    if k is None:
+        k = float(np.max(np.abs(wave_numbers(fine, psi)[0])))
+    potential = job.landscape.value(fine.x, job.evolve.start)
+    present = np.abs(psi) ** 2 > TAIL * np.max(np.abs(psi) ** 2)
+    highest = k**2 / (2 * mass) + float(potential[present].max()) - float(potential.min())
+    needed = math.sqrt(2 * mass * max(highest, k**2 / (2 * mass)))
+    sharp = any(term.shape.breaks is not None for term in job.landscape.terms)
+    room = max(2.0, 2.5 * (1e-4 / accuracy) ** 0.25) if sharp else 1.5
+    if job.landscape.depends_on_time:
+        room *= 1.25
+    points = max(fast_size(math.ceil(room * needed * axis.length / math.pi)), 64)
+    why = (
+        f"{room:.3g} times the largest wave number that the packet can reach, "
+        f"{job.write(needed, 'wavenumber')}{', for sharp edges' if sharp else ''}"
+    )
+    return points, why
+
+
+def wave_numbers(axis: Axis, psi: Array) -> tuple[Array, Array]:
+    """Signed wave numbers that psi holds and their probabilities, without tails below 1e-10.
+
+    On an axis with walls too, where the packet is far from them.
+    """
+    k = 2 * np.pi * np.fft.fftfreq(axis.points, axis.spacing)
+    weight = np.abs(np.fft.fft(psi)) ** 2
+    weight /= weight.sum()
+    order = np.argsort(weight)
+    kept = np.ones(axis.points, bool)
+    kept[order[np.cumsum(weight[order]) < TAIL]] = False
+    return k[kept], weight[kept]
+
+
+def _refuse_lost(job: Job, axis: Axis, psi: Array) -> None:
+    """Raises JobFileError where the grid cannot hold what the packet is made of."""
+    k, _ = wave_numbers(axis, psi)
+    if np.max(np.abs(k)) > 0.98 * axis.k_max:
+        raise JobFileError(
+            [
+                job.problem(
+                    ("grid", "x"),
+                    "the grid is too coarse for the packet: its wave numbers reach the largest the points can hold",
+                    "give more points, or leave `points` out",
+                )
+            ]
+        )
+
+
+def _endings(job: Job, axis: Axis, psi: Array) -> tuple[Ending, ...]:
+    mass, found = job.particle.mass, []
+    k, weight = wave_numbers(axis, psi)
+    for side in ("low", "high"):
+        end = getattr(job.keys.edges.x, side)
+        if not isinstance(end, Absorb):
+            continue
+        if end.energies is not None:
+            momenta = Momenta.of_energies(end.energies.start, end.energies.stop, mass)
+        else:
+            momenta = _arriving(job, axis, k, weight, side)
+        shape = tuned(end.absorb, mass, momenta, axis.spacing)
+        found.append(Ending(side, shape, recommended_depth(mass, momenta, axis.spacing)))
+    return tuple(found)
+
+
+def _arriving(job: Job, axis: Axis, k: Array, weight: Array, side: str) -> Momenta:
+    """The wave numbers that may come to one end: the packet's, turned back or let through, at the end's potential."""
+    mass, landscape, start = job.particle.mass, job.landscape, job.evolve.start
+    if not landscape.terms:
+        return Momenta.of_density(k, weight, "low" if side == "low" else "high")
+    extent = job.packet.extent()
+    middle = 0.5 * (extent[0] + extent[1]) if extent else 0.5 * (axis.low + axis.high)
+    here = float(landscape.value(np.array([middle]), start)[0])
+    inset = axis.low + 2 * axis.spacing if side == "low" else axis.high - 2 * axis.spacing
+    there = float(landscape.value(np.array([inset]), start)[0])
+    squared = k**2 + 2 * mass * (here - there)
+    kept = squared > 0
+    return Momenta.of_density(np.sqrt(squared[kept]), weight[kept])
+
+
+def _step(job: Job, hamiltonian: Hamiltonian, psi: Array) -> tuple[Splitting, float, str]:
+    """The splitting, the longest step allowed, and why."""
+    evolve = job.evolve
+    by_order = {splitting.order: splitting for splitting in SPLITTINGS.values()}
+    if evolve.step is not None:
+        return by_order[evolve.order or 4], evolve.step, "as written"
+    orders = (evolve.order,) if evolve.order else (2, 4)
+    accuracy = evolve.accuracy or ACCURACY
+    duration = evolve.until - evolve.start
+    choice = choose_step(hamiltonian, psi, evolve.start, duration, accuracy, orders)
+    return choice.splitting, choice.step, choice.reason
+
+
+def _sampling(job: Job, hamiltonian: Hamiltonian, psi: Array) -> float:
+    """Time between samples that resolves every beat between energies the packet holds."""
+    axis = hamiltonian.grid.axes[0]
+    potential = hamiltonian.potential(job.evolve.start)[0, 0]
+    k = 2 * np.pi * np.fft.fftfreq(axis.points, axis.spacing)
+    applied = np.fft.ifft(k**2 / (2 * job.particle.mass) * np.fft.fft(psi)) + potential * psi
+    mean = float(np.vdot(psi, applied).real * axis.spacing)
+    spread = math.sqrt(max(float(np.vdot(applied, applied).real * axis.spacing) - mean**2, 0.0))
+    beat = max(min(mean + 8 * spread - float(potential.min()), 16 * spread), 1e-300)
+    return min(2 * math.pi / (OVERSAMPLING * beat), fastest(job) / 16)
+
+
+def _timetable(job: Job, longest: float, shortest: float) -> tuple[float, int, int, int]:
+    """Step, number of steps, steps between rows, steps between samples.
+
+    `longest` is the longest step allowed, `shortest` the longest time allowed between samples.
+    """
+    evolve = job.evolve
+    duration = evolve.until - evolve.start
+    if evolve.step is not None:
+        steps = round(duration / evolve.step)
+        record = round(evolve.record / evolve.step) if evolve.record else _divisor(steps, max(steps // ROWS, 1))
+        return evolve.step, steps, record, _divisor(math.gcd(record, steps), max(int(shortest / evolve.step), 1))
+    if evolve.record is not None:
+        ratio = Fraction(duration / evolve.record).limit_denominator(1000)
+        if abs(float(ratio) * evolve.record - duration) > 1e-9 * duration:
+            raise JobFileError(
+                [
+                    job.problem(
+                        ("evolve", "record"),
+                        "`until` and `record` have no common step",
+                        f"write {job.units.write(duration / max(round(duration / evolve.record), 1), 'time')}",
+                    )
+                ]
+            )
+        per = math.ceil(evolve.record / ratio.denominator / longest - 1e-9) * ratio.denominator
+        step = evolve.record / per
+        steps = round(duration / step)
+        return duration / steps, steps, per, _divisor(math.gcd(per, steps), max(int(shortest / step), 1))
+    least = math.ceil(duration / longest - 1e-9)
+    if least < ROWS:
+        return duration / least, least, 1, 1
+    wanted = max(int(shortest / longest), 1)
+    best = min(
+        (rows * sample * math.ceil(least / (rows * sample)), -sample, rows)
+        for rows in range(ROWS - 50, ROWS + 51)
+        for sample in range(max(wanted * 3 // 5, 1), wanted + 1)
+        if rows * sample <= max(least, ROWS)
+    ) if wanted * (ROWS - 50) <= least else (ROWS * math.ceil(least / ROWS), 0, ROWS)
+    steps, rows = best[0], best[2]
+    record = steps // rows
+    return duration / steps, steps, record, _divisor(record, wanted)
+
+
+def _divisor(number: int, at_most: int) -> int:
+    """The largest divisor of `number` that is not above `at_most`."""
+    return next(d for d in range(min(at_most, number), 0, -1) if number % d == 0)
+
+
+def scales(plan: Plan) -> dict[str, float]:
+    """What errors are measured by: initial width, initial momentum width, mean kinetic energy, duration."""
+    axis, psi, mass = plan.axis, plan.psi, plan.job.particle.mass
+    density = np.abs(psi) ** 2 * axis.spacing
+    mean = float(density @ axis.x)
+    width = math.sqrt(float(density @ (axis.x - mean) ** 2))
+    k, weight = wave_numbers(axis, psi)
+    drift = float(weight @ k)
+    duration = plan.job.evolve.until - plan.job.evolve.start
+    return {
+        "length": width,
+        "momentum": math.sqrt(max(float(weight @ (k - drift) ** 2), 0.0)),
+        "energy": float(weight @ k**2) / (2 * mass),
+        "time": duration,
+        "flux": 1 / duration,
+        "force": math.sqrt(max(float(weight @ (k - drift) ** 2), 0.0)) / duration,
+    }
+
+
+def fastest(job: Job) -> float:
+    """The shortest time over which a time-dependent term changes; infinity without one."""
+    times = [math.inf]
+    for item in job.keys.potential:
+        if item.in_time:
+            times.append(item.in_time.body.fastest(job.units))
+        if item.path:
+            times.append(item.path.x.body.fastest(job.units))
+    if math.isinf(min(times)) and job.landscape.depends_on_time:
+        times.append((job.evolve.until - job.evolve.start) / 200)
+    return min(times)

@@ -1,0 +1,1 @@
+"""Potentials: one class per kind."""

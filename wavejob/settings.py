@@ -1,0 +1,343 @@
+"""The keys of a job file, one model per section."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, Annotated, Any, Literal
+
+from pydantic import Discriminator, Field, Tag, WithJsonSchema, model_validator
+from pydantic.functional_validators import BeforeValidator
+
+from .kinds import OBSERVABLES
+from .models import (
+    Charge,
+    Choice,
+    Duration,
+    Extent,
+    Flag,
+    Item,
+    Length,
+    Mass,
+    Model,
+    Name,
+    PositiveEnergy,
+    Time,
+    refuse,
+    shown,
+)
+from .packets.item import PACKETS
+from .potentials.item import POTENTIALS, TermItem
+from .problems import nearest
+
+MAX_POINTS = 2**26
+
+
+def whole(least: int, most: int) -> Any:
+    """A whole number between two bounds."""
+
+    def read(value: Any) -> int:
+        if isinstance(value, bool) or not isinstance(value, int):
+            raise refuse(f"{shown(value)} is no whole number", f"write one from {least} to {most}")
+        if not least <= value <= most:
+            raise refuse(f"must be from {least} to {most}, got {shown(value)}", "")
+        return value
+
+    return [BeforeValidator(read), WithJsonSchema({"type": "integer", "minimum": least, "maximum": most})]
+
+
+def _scalar(value: Any) -> Any:
+    if isinstance(value, bool) or not isinstance(value, (int, float, str)):
+        raise refuse(f"{shown(value)} is no quantity", "write a number, with its unit where it has one")
+    return value
+
+
+# A quantity whose dimension is known only once all observables are read.
+Scalar = Annotated[Any, BeforeValidator(_scalar), WithJsonSchema({"type": ["number", "string"]})]
+Points = Annotated[int, *whole(8, MAX_POINTS)]
+Rate = Annotated[int, *whole(1, 120)]
+Priority = Annotated[int, *whole(-1000, 1000)]
+
+
+class AxisKeys(Model):
+    """One axis of the grid: points stand at from + (j + 1/2) (to - from) / points."""
+
+    start: Length = Field(alias="from", description="low end")
+    stop: Length = Field(alias="to", description="high end")
+    points: Points | None = Field(None, description="number of grid points; left out: chosen")
+    spacing: Extent | None = Field(None, description="distance between points, instead of `points`")
+
+    @model_validator(mode="after")
+    def _ordered(self) -> AxisKeys:
+        if not self.start < self.stop:
+            raise refuse("`from` must lie before `to`", "swap them")
+        if self.points is not None and self.spacing is not None:
+            raise refuse("`points` and `spacing` say the same thing", "keep one of them, or neither")
+        if self.spacing is not None and not 8 <= (self.stop - self.start) / self.spacing <= MAX_POINTS:
+            raise refuse("`spacing` does not give from 8 to 67108864 points", "change it")
+        return self
+
+
+class GridKeys(Model):
+    """The axes."""
+
+    x: AxisKeys = Field(description="the x axis")
+
+
+class Energies(Model):
+    """A range of energies."""
+
+    start: PositiveEnergy = Field(alias="from", description="lowest")
+    stop: PositiveEnergy = Field(alias="to", description="highest")
+
+    @model_validator(mode="after")
+    def _ordered(self) -> Energies:
+        if not self.start < self.stop:
+            raise refuse("`from` must lie before `to`", "swap them")
+        return self
+
+
+class Absorb(Model):
+    """An absorbing layer (Manolopoulos 2002)."""
+
+    absorb: Extent = Field(description="depth of the layer, measured inwards from the end")
+    energies: Energies | None = Field(None, description="kinetic energies it must absorb; left out: the packet's")
+
+
+def word_or(words: tuple[str, ...], model: type[Model], what: str) -> Any:
+    """One of a few words, or a mapping read as `model`."""
+
+    def known(value: Any) -> Any:
+        if isinstance(value, dict) or (isinstance(value, str) and value in words):
+            return value
+        listed = ", ".join(f"`{word}`" for word in words)
+        near = nearest(value, words) if isinstance(value, str) else None
+        raise refuse(f"{shown(value)} is no {what}", f"did you mean `{near}`?" if near else f"there are: {listed}, {{...}}")
+
+    word = Annotated[Literal[words], Tag("word")]
+    mapping = Annotated[model, Tag("mapping")]
+    return Annotated[
+        word | mapping,  # type: ignore[valid-type]
+        Discriminator(lambda value: "word" if isinstance(value, str) else "mapping"),
+        BeforeValidator(known),
+    ]
+
+
+if TYPE_CHECKING:
+    End = Literal["wrap", "wall"] | Absorb
+else:
+    End = word_or(("wrap", "wall"), Absorb, "edge")
+
+
+class EndsKeys(Model):
+    """The two ends of an axis."""
+
+    low: End = Field("wrap", description="wrap, wall or {absorb: depth}")
+    high: End = Field("wrap", description="wrap, wall or {absorb: depth}")
+
+    @model_validator(mode="before")
+    @classmethod
+    def _both(cls, value: Any) -> Any:
+        """`wall` or `{absorb: ...}` for both ends at once."""
+        if isinstance(value, str):
+            if value not in ("wrap", "wall"):
+                raise refuse(f"no edge called {shown(value)}", "there are: `wrap`, `wall`, `{absorb: depth}`")
+            return {"low": value, "high": value}
+        if isinstance(value, dict) and "absorb" in value:
+            return {"low": value, "high": value}
+        return value
+
+    @model_validator(mode="after")
+    def _agree(self) -> EndsKeys:
+        if (self.low == "wrap" and self.high == "wall") or (self.low == "wall" and self.high == "wrap"):
+            raise refuse("one end cannot wrap while the other is a wall", "make both `wall`, or absorb at one")
+        return self
+
+
+class EdgesKeys(Model):
+    """What happens at the ends of each axis."""
+
+    x: EndsKeys = Field(default_factory=EndsKeys, description="wrap, wall, {absorb: depth}, or per end {low:, high:}")
+
+
+class ParticleKeys(Model):
+    """The particle."""
+
+    mass: Mass = Field(description="effective mass")
+    charge: Charge = Field(0.0, description="0 if left out")
+
+
+def _particle_form(value: Any) -> Any:
+    if isinstance(value, (str, dict)):
+        return value
+    raise refuse(f"{shown(value)} is no particle", "write a name such as `electron`, or {mass:, charge:}")
+
+
+if TYPE_CHECKING:
+    ParticleChoice = str | ParticleKeys
+else:
+    ParticleChoice = Annotated[
+        Annotated[str, Tag("word")] | Annotated[ParticleKeys, Tag("mapping")],
+        Discriminator(lambda value: "word" if isinstance(value, str) else "mapping"),
+        BeforeValidator(_particle_form),
+    ]
+
+
+class Bound(Model):
+    """A bound on a series column."""
+
+    below: Scalar | None = Field(None, description="stop when it falls below this")
+    above: Scalar | None = Field(None, description="stop when it rises above this")
+
+    @model_validator(mode="after")
+    def _one(self) -> Bound:
+        if (self.below is None) == (self.above is None):
+            raise refuse("exactly one of `below` and `above` is needed", "keep one of them")
+        return self
+
+
+def _accuracy(value: Any) -> float:
+    if isinstance(value, bool) or not isinstance(value, (int, float)) or not 1e-12 <= value <= 0.1:
+        raise refuse(f"{shown(value)} is no accuracy", "write a number from 1e-12 to 0.1, such as `1e-4`")
+    return float(value)
+
+
+class EvolveKeys(Model):
+    """How long, how accurately, how often recorded."""
+
+    start: Time = Field(0.0, description="time of the initial state")
+    until: Time = Field(description="time at which the run ends")
+    accuracy: Annotated[
+        float | None,
+        BeforeValidator(_accuracy),
+        WithJsonSchema({"type": "number", "minimum": 1e-12, "maximum": 0.1}),
+    ] = Field(None, description="the numerical error wanted in the results; 1e-4 if left out")
+    step: Duration | None = Field(None, description="fixes the time step")
+    order: Literal[2, 4] | None = Field(None, description="order of the splitting: 2 or 4; left out: chosen")
+    record: Duration | None = Field(None, description="spacing of the time series; left out: about 400 rows")
+    precision: Literal["double", "single"] = Field("double", description="double or single")
+    reproducible: Flag = Field(False, description="yes: the same bits on the same machine")
+    stop_when: dict[str, Bound] = Field(
+        default_factory=dict, description="ends the run early: {norm: {below: 1e-4}}, for any series column"
+    )
+
+    @model_validator(mode="after")
+    def _ordered(self) -> EvolveKeys:
+        if not self.until > self.start:
+            raise refuse("`until` must come after `start`", "give a later time")
+        if self.step is not None and self.accuracy is not None:
+            raise refuse("`step` and `accuracy` both set the time step", "keep one of them")
+        return self
+
+
+class ViewKeys(Model):
+    """The part of the x axis that pictures show."""
+
+    start: Length = Field(alias="from", description="left side of the picture")
+    stop: Length = Field(alias="to", description="right side of the picture")
+
+    @model_validator(mode="after")
+    def _ordered(self) -> ViewKeys:
+        if not self.start < self.stop:
+            raise refuse("`from` must lie before `to`", "swap them")
+        return self
+
+
+class ViewAxes(Model):
+    """What pictures show, by axis."""
+
+    x: ViewKeys = Field(description="range of x")
+
+
+class FilmKeys(Model):
+    """The animation."""
+
+    every: Duration | None = Field(None, description="time between frames; left out: about 300 frames")
+    fps: Rate = Field(25, description="frames per second")
+    view: ViewAxes | None = Field(None, description="look closer: {x: {from:, to:}}")
+    format: Literal["mp4", "gif"] = Field("mp4", description="mp4 (H.264) or gif")
+
+
+if TYPE_CHECKING:
+    FilmChoice = FilmKeys | Literal["none"]
+else:
+    FilmChoice = word_or(("none",), FilmKeys, "film")
+
+
+class SnapshotKeys(Model):
+    """The field itself, stored."""
+
+    every: Duration = Field(description="time between stored fields")
+
+
+class ExpectKeys(Model):
+    """A check on one result."""
+
+    result: str = Field(description="name of a result, such as transmitted.total")
+    equals: Scalar | None = Field(None, description="the value wanted; needs `tolerance`")
+    tolerance: Scalar | None = Field(None, description="how far from it is still right")
+    below: Scalar | None = Field(None, description="upper bound")
+    above: Scalar | None = Field(None, description="lower bound")
+    within: list[Scalar] | None = Field(None, description="[lowest, highest]", min_length=2, max_length=2)
+    source: str | None = Field(None, description="where the value comes from")
+
+    @model_validator(mode="after")
+    def _one(self) -> ExpectKeys:
+        given = [n for n in ("equals", "below", "above", "within") if getattr(self, n) is not None]
+        if len(given) != 1:
+            raise refuse("exactly one of `equals`, `below`, `above` and `within` is needed", "keep one of them")
+        if (self.equals is None) != (self.tolerance is None):
+            missing = "tolerance" if self.tolerance is None else "equals"
+            raise refuse(f"`{missing}` is missing", "`equals` and `tolerance` go together")
+        return self
+
+
+def _tags(value: Any) -> Any:
+    if isinstance(value, list) and all(isinstance(tag, str) and tag for tag in value) and len(value) <= 50:
+        return value
+    raise refuse(f"{shown(value)} is no list of tags", "write words, such as `[tunnelling, stack-A]`")
+
+
+UNITS_SCHEMA = {
+    "oneOf": [
+        {"enum": ["natural", "atomic"]},
+        {
+            "type": "object",
+            "properties": {name: {"type": "string"} for name in ("length", "time", "energy")},
+            "additionalProperties": False,
+        },
+    ]
+}
+
+
+class JobKeys(Model):
+    """A job file."""
+
+    format: Annotated[int, *whole(1, 1)] = Field(1, description="version of the job-file format")
+    job: str | None = Field(None, description="title, shown with the results")
+    about: str | None = Field(None, description="free text, shown in the report")
+    tags: Annotated[list[str], BeforeValidator(_tags)] = Field(default_factory=list, description="words to filter by")
+    priority: Priority = Field(0, description="higher runs first in a batch")
+    units: Annotated[Any, WithJsonSchema(UNITS_SCHEMA)] = Field(
+        None, description="meaning of bare numbers: {length: nm, time: fs, energy: meV}, `natural` or `atomic`"
+    )
+    let: dict[str, Scalar] | None = Field(None, description="named quantities for use below")
+    based_on: str | None = Field(None, description="another file to start from")
+    particle: ParticleChoice | None = Field(
+        None, description="electron, proton, neutron, muon, an isotope such as Rb-87, or {mass:, charge:}"
+    )
+    grid: GridKeys = Field(description="the axes")
+    potential: list[Annotated[Item, Choice(POTENTIALS, "potential", TermItem)]] = Field(
+        default_factory=list, description="terms, summed", max_length=200
+    )
+    edges: EdgesKeys = Field(default_factory=EdgesKeys, description="what happens at the ends of an axis")
+    packet: Annotated[Item, Choice(PACKETS, "packet")] = Field(description="the initial state")
+    evolve: EvolveKeys = Field(description="how long and how accurately")
+    observables: list[Annotated[Item, Choice(OBSERVABLES, "observable", bare=True)]] | None = Field(
+        None, description="what is measured; left out: norm, position, energy", max_length=200
+    )
+    classical: Literal["none"] | None = Field(None, description="the F = m a companion; `none` to skip")
+    error_bars: Literal["none"] | None = Field(None, description="numerical error bars; `none` to skip")
+    film: FilmChoice = Field(default_factory=FilmKeys, description="the animation; `none` to skip")
+    snapshots: SnapshotKeys | None = Field(None, description="store the field; left out: the final state only")
+    expect: list[ExpectKeys] = Field(default_factory=list, description="checks on the results", max_length=500)
+
+
