@@ -13,10 +13,12 @@ TICK = 4  # pixels
 SMALLEST_LABEL = 6.0  # pixels, for labels longer than their axis
 
 
-def bottom_axis(sheet: Sheet, panel: Panel, font: float, name: str, unit: str | None, *, named: bool = True) -> None:
+def bottom_axis(
+    sheet: Sheet, panel: Panel, font: float, name: str, unit: str | None, *, named: bool = True, most: int = 0
+) -> None:
     """The x axis below a panel; `unit` None for a plain number. Unnamed: ticks and their numbers alone."""
     rect = panel.rect
-    shown = ticks(panel.x_low, panel.x_high, max(int(rect.width / (6.5 * font)), 1))
+    shown = ticks(panel.x_low, panel.x_high, most or max(int(rect.width / (4 * font)), 1))
     sheet.line([rect.left, rect.right], [rect.bottom, rect.bottom], QUIET, 1)
     free_from = -np.inf
     for value, label in zip(shown.values, shown.labels, strict=True):
@@ -37,8 +39,15 @@ def side_ticks(panel: Panel, font: float) -> Ticks:
     return ticks(panel.y_low, panel.y_high, max(int(panel.rect.height / (3 * font)), 2))
 
 
-def side_axis(sheet: Sheet, panel: Panel, font: float, name: str, unit: str, *, room: int, right: bool = False) -> None:
-    """The y axis on the left or right of a panel, its name `room` pixels away at the most."""
+def numbers_room(sheet: Sheet, shown: Ticks, font: float) -> float:
+    """Pixels that ticks and their numbers take beside a panel."""
+    return TICK + 3 + max((sheet.measure(label, font) for label in shown.labels), default=0.0)
+
+
+def side_axis(
+    sheet: Sheet, panel: Panel, font: float, name: str, unit: str, *, room: float, right: bool = False
+) -> None:
+    """The y axis on the left or right of a panel, its name beyond `room` pixels."""
     shown = side_ticks(panel, font)
     spine(sheet, panel, right=right)
     for value, label in zip(shown.values, shown.labels, strict=True):
@@ -52,7 +61,14 @@ def spine(sheet: Sheet, panel: Panel, *, right: bool = False) -> None:
 
 
 def side_tick(
-    sheet: Sheet, panel: Panel, y: float, label: str, font: float, *, right: bool = False, moving: bool = False
+    sheet: Sheet,
+    panel: Panel,
+    y: float,
+    label: str,
+    font: float,
+    *,
+    right: bool = False,
+    moving: bool = False,
 ) -> list[Artist]:
     """One tick with its number at pixel row `y`."""
     x, outward = (panel.rect.right, TICK) if right else (panel.rect.left, -TICK)
@@ -65,15 +81,18 @@ def side_tick(
     return [mark, words]
 
 
-def side_name(sheet: Sheet, panel: Panel, said: str, font: float, *, room: int, right: bool = False) -> None:
+def side_name(
+    sheet: Sheet, panel: Panel, said: str, font: float, *, room: float, right: bool = False
+) -> None:
     rect = panel.rect
     pixels = sheet.shrink(said, font, rect.height, SMALLEST_LABEL)
-    x = rect.right + room if right else rect.left - room + 0.95 * font
+    x = rect.right + room + 1.4 * font if right else rect.left - room - 0.7 * font
     sheet.text(x, (rect.top + rect.bottom) / 2, said, pixels, align="center", rotation=90, colour=INK)
 
 
-def upright_grid(sheet: Sheet, panel: Panel, values: tuple[float, ...]) -> None:
-    for value in values:
+def upright_grid(sheet: Sheet, panel: Panel, most: int) -> None:
+    """Faint lines over the ticks of the bottom axis."""
+    for value in ticks(panel.x_low, panel.x_high, most).values:
         x = panel.across(value)
         sheet.line([x, x], [panel.rect.top, panel.rect.bottom], GRID, 1, order=0.5)
 

@@ -1,4 +1,4 @@
-"""What a picture shows is decided here from the data: ranges, magnifications, the carpet's scale, the close-up."""
+"""What a picture shows, decided from the data: ranges, magnifications, the carpet's scale, the close-up."""
 
 from __future__ import annotations
 
@@ -72,7 +72,7 @@ def highest_density(scene: Scene, view: tuple[float, float]) -> float:
 
 
 def baseline_energies(scene: Scene) -> Array:
-    """Where the packet's baseline stands, shape (F,): the mean energy, resting where it is unknown or empty."""
+    """Where the packet's baseline stands, shape (F,): the mean energy, at rest where there is none."""
     norm = scene.density.sum(axis=1)
     known = np.isfinite(scene.mean_energy) & (norm > EMPTY * norm[0])
     if not known.any():
@@ -83,7 +83,7 @@ def baseline_energies(scene: Scene) -> Array:
 
 
 def energy_range(scene: Scene, view: tuple[float, float], baseline: Array) -> tuple[float, float]:
-    """The energy axis: the potential where the packet comes, its mean energy, and room above for the packet."""
+    """The energy axis: the potential where the packet comes, the mean energy, room for the packet."""
     v_low, v_high = _visited_potential(scene, view)
     low, high = float(baseline.min()), float(baseline.max())
     floor = min(v_low, low)
@@ -168,23 +168,39 @@ def close_up(
 ) -> tuple[float, float] | None:
     """The neighbourhood of a structure that is a hairline in the view; None where there is no such structure.
 
-    The structure is the narrowest stretch that holds nearly all changes of the potential beyond an even slope.
+    It is the narrowest stretch that holds nearly all changes of the potential beyond an even slope.
+    A single step, or the wall of a well, is none: there the potential does not come back.
     """
     edges = np.linspace(*view, 1601)
-    change = np.max([_changes(*scene.potential_at(f), edges, energies) for f in _some_frames(scene, 12)], axis=0)
+    change = np.max(
+        [_changes(*scene.potential_at(f), edges, energies) for f in _some_frames(scene, 12)], axis=0
+    )
     excess = np.maximum(change - 3 * np.median(change), 0)
     if excess.sum() < 0.1 * (energies[1] - energies[0]):
         return None
     first, last = _narrowest(excess, 0.96)
     width = float(edges[last + 1] - edges[first])
     whole = view[1] - view[0]
-    if last == first or width > HAIRLINE * whole:
+    if (
+        last == first
+        or width > HAIRLINE * whole
+        or not _comes_back(scene, energies, edges[first], edges[last + 1])
+    ):
         return None
     middle = float(edges[first] + edges[last + 1]) / 2
     reach = max((0.5 + CLOSE_UP_MARGIN) * width, 8 * float(scene.x[1] - scene.x[0]))
     reach = min(reach, 0.15 * whole)
     middle = float(np.clip(middle, view[0] + reach, view[1] - reach))
     return middle - reach, middle + reach
+
+
+def _comes_back(scene: Scene, energies: tuple[float, float], low: float, high: float) -> bool:
+    """Whether the potential on both sides of a stretch differs less than within it."""
+    x, v = scene.potential_at(0)
+    cut = np.clip(np.nan_to_num(v, posinf=energies[1], neginf=energies[0]), *energies)
+    start, end = np.interp([low, high], x, cut)
+    within = np.concatenate([[start], cut[(x >= low) & (x <= high)], [end]])
+    return abs(end - start) < 0.6 * float(np.ptp(within))
 
 
 def _changes(x: Array, v: Array, edges: Array, energies: tuple[float, float]) -> Array:

@@ -14,13 +14,16 @@ from .files import atomic_path
 
 Array = np.ndarray
 Frame = Callable[[int], Array]  # number of a frame -> its pixels, shape (height, width, 4), uint8
+Progress = Callable[[int, int], None] | None  # is told (frames written, frames in all)
 
 QUALITY = 20  # x264's constant rate factor: no blur around letters
 GIF_COLOURS = 255
-CURE = "install a program `ffmpeg` with libx264 or `pip install imageio-ffmpeg`, or skip the film with `--no-film`"
+CURE = "`pip install imageio-ffmpeg`, or install `ffmpeg` with libx264, or skip the film with `--no-film`"
 
 
-def write_mp4(path: Path, frame: Frame, frames: int, size: tuple[int, int], fps: float) -> None:
+def write_mp4(
+    path: Path, frame: Frame, frames: int, *, size: tuple[int, int], fps: float, progress: Progress
+) -> None:
     """H.264 in yuv420p with its index at the start. Raises RunError where it can't be encoded or written."""
     try:
         import imageio_ffmpeg  # here, because pictures can be drawn without an encoder
@@ -32,13 +35,23 @@ def write_mp4(path: Path, frame: Frame, frames: int, size: tuple[int, int], fps:
         options = ["-preset", "veryfast", "-crf", str(QUALITY), "-movflags", "+faststart", "-threads", "1"]
         try:
             writer = imageio_ffmpeg.write_frames(
-                str(temporary), size, pix_fmt_in="rgba", pix_fmt_out="yuv420p", fps=fps, codec="libx264",
-                quality=None, macro_block_size=2, ffmpeg_log_level="quiet", output_params=options,
-            )  # fmt: skip
+                str(temporary),
+                size,
+                pix_fmt_in="rgba",
+                pix_fmt_out="yuv420p",
+                fps=fps,
+                codec="libx264",
+                quality=None,
+                macro_block_size=2,
+                ffmpeg_log_level="quiet",
+                output_params=options,
+            )
             writer.send(None)
             try:
                 for number in range(frames):
                     writer.send(frame(number))
+                    if progress is not None:
+                        progress(number + 1, frames)
             finally:
                 writer.close()
             written = imageio_ffmpeg.count_frames_and_secs(str(temporary))[0]
@@ -51,15 +64,15 @@ def write_mp4(path: Path, frame: Frame, frames: int, size: tuple[int, int], fps:
 
 
 def _find_cause(temporary: Path) -> None:
-    """Raises the system's own error where nothing more can be written: the encoder does not say why it stops."""
+    """Raises the system's error where nothing more can be written: the encoder doesn't say why it stops."""
     with open(temporary, "ab") as file:
         file.write(bytes(1 << 16))
         file.flush()
         os.fsync(file.fileno())
 
 
-def write_gif(path: Path, frame: Frame, frames: int, fps: float) -> None:
-    """A GIF that repeats, with one palette taken from five frames. Raises RunError where it can't be written."""
+def write_gif(path: Path, frame: Frame, frames: int, *, fps: float, progress: Progress) -> None:
+    """A GIF that repeats, with one palette for all frames. Raises RunError where it can't be written."""
     with atomic_path(path) as temporary:
         sample = [frame(int(n))[::2, ::2, :3].copy() for n in np.linspace(0, frames - 1, min(5, frames))]
         palette = Image.fromarray(np.concatenate(sample)).quantize(GIF_COLOURS, dither=Image.Dither.NONE)
@@ -68,11 +81,18 @@ def write_gif(path: Path, frame: Frame, frames: int, fps: float) -> None:
             for number in range(frames):
                 pixels = Image.fromarray(frame(number)[..., :3].copy())
                 yield pixels.quantize(palette=palette, dither=Image.Dither.NONE)
+                if progress is not None:
+                    progress(number + 1, frames)
 
         all_of_them = pictures()
         hundredths = max(2, round(100 / fps))  # viewers slow down anything faster
         next(all_of_them).save(
-            temporary, save_all=True, append_images=all_of_them, duration=10 * hundredths, loop=0, optimize=False
+            temporary,
+            save_all=True,
+            append_images=all_of_them,
+            duration=10 * hundredths,
+            loop=0,
+            optimize=False,
         )
 
 

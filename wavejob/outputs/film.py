@@ -1,42 +1,24 @@
-"""The film of a run: the packet over its potential, the space-time carpet below, probabilities beside it.
-
-Everything that stands still is drawn once. Carpet and probabilities are drawn once in full, and each frame
-uncovers their rows down to its time; the packet is filled straight into the frame's pixels.
-"""
+"""The film of a run: the packet over its potential, the space-time carpet below, probabilities beside it."""
 
 from __future__ import annotations
 
 from collections.abc import Callable
 from pathlib import Path
 
-import numpy as np
-from matplotlib.text import Text
-
-from . import choices, film_words
-from .axes import bottom_axis, side_axis, side_name, spine, upright_grid
-from .columns import Columns, rows_in_time
 from .encode import write_gif, write_mp4
-from .key import Item, draw_key, rows_needed
-from .layout import LINE, Layout, arrange, widths
-from .names import pack
-from .packet_panel import DensityAxis, PacketPanel, draw_detectors
-from .palette import CLOSE_UP, CURVES, INK, PATH, QUIET, density_table, phase_table
+from .film_picture import Film
 from .scene import Scene
-from .sheet import Panel, Rect, Sheet, broken_into_lines, plain_matplotlib
-from .wording import axis_label, numbers_for, per, ticks, with_unit
-
-Array = np.ndarray
-
-SMALLEST = (640, 360)
-PEAK_AT = 0.94  # of the room above the baseline
-NAME_ROWS = 2
-KEY_ROWS = 3
+from .sheet import plain_matplotlib
 
 
 def draw_film(
-    scene: Scene, path: Path, *, size: tuple[int, int] = (1280, 720), fps: float = 25,
+    scene: Scene,
+    path: Path,
+    *,
+    size: tuple[int, int] = (1280, 720),
+    fps: float = 25,
     progress: Callable[[int, int], None] | None = None,
-) -> None:  # fmt: skip
+) -> None:
     """Writes the film of `scene` as H.264 (`.mp4`) or GIF (`.gif`), one frame for each time.
 
     `progress` is told (frames drawn, frames in all). Raises ValueError for a size that is odd or below
@@ -44,262 +26,9 @@ def draw_film(
     """
     if path.suffix not in {".mp4", ".gif"}:
         raise ValueError(f"a film ends with .mp4 or .gif, got `{path.name}`")
-    film = Film(scene, size)
-
-    def frame(number: int) -> Array:
-        pixels = film.frame(number)
-        if progress is not None:
-            progress(number + 1, scene.frames)
-        return pixels
-
-    if path.suffix == ".mp4":
-        write_mp4(path, frame, scene.frames, size, fps)
-    else:
-        write_gif(path, frame, scene.frames, fps)
-
-
-class Film:
-    """The picture of a scene at a size, and its frames. Texts are where they stay; few of them change."""
-
-    def __init__(self, scene: Scene, size: tuple[int, int]) -> None:
-        if size[0] % 2 or size[1] % 2 or size[0] < SMALLEST[0] or size[1] < SMALLEST[1]:
-            raise ValueError(f"a film has an even width and height from {SMALLEST[0]}x{SMALLEST[1]}, got {size}")
-        self.scene, self.fine = scene, max(size[1] / 720, 0.75)
-        with plain_matplotlib():
-            self.sheet = Sheet(size)
-            self._choose()
-            self._lay_out(size)
-            self._draw_caption()
-            self._draw_packet()
-            self._draw_carpet_and_chances()
-            self.pixels = self.sheet.draw()
-            self.empty = self.pixels.copy()
-            self._paint_in_full()
-            self.full = self.pixels.copy()
-
-    def _choose(self) -> None:
-        scene = self.scene
-        self.view = choices.view_of(scene)
-        self.baseline = choices.baseline_energies(scene)
-        self.energies = choices.energy_range(scene, self.view, self.baseline)
-        self.highest = choices.highest_density(scene, self.view)
-        self.magnified = choices.magnifications(scene, self.view, self.highest)
-        self.carpet_scale = choices.carpet_scale(scene, self.view, self.highest)
-        self.close = choices.close_up(scene, self.view, self.energies)
-        self.curves = scene.probabilities[: film_words.MOST_CURVES]
-        self.curve_powers = film_words.curve_powers(scene)
-        self.curve_numbers = [numbers_for(float(np.nanmax(np.abs(v), initial=0.0)), 1e-4) for _, v in self.curves]
-        self.time_numbers = film_words.time_numbers(scene.times)
-        largest = float(np.abs(self.baseline).max())
-        self.energy_numbers = numbers_for(largest, largest / 1000)
-
-    def _lay_out(self, size: tuple[int, int]) -> None:
-        scene, sheet = self.scene, self.sheet
-        right_column = self.close is not None or bool(self.curves)
-        self.across = across = widths(size, right_column)
-        self.font, self.line = across.font, LINE * across.font
-        stage = self._panel(Rect(across.stage_left, 0, across.stage_width, 1), *self.view)
-        names = film_words.detector_names(scene, stage, self.magnified)
-        names += film_words.place_names(scene, stage, self.close)
-        span = (across.stage_left, across.stage_right + across.axis / 2)
-        self.names, homeless = pack(sheet, names, self.font, span, NAME_ROWS)
-        self.stage_phases = self._phases(self.view, across.stage_width)
-        close_phases = self._phases(self.close, across.right_width) if self.close else None
-        self.close_phases = close_phases
-        in_key = self.stage_phases if self.stage_phases is not None else close_phases
-        only_close = self.stage_phases is None and close_phases is not None
-        self.key = film_words.key_items(
-            scene, self.carpet_scale, self.energy_numbers, self.baseline, phases=in_key,
-            where=" in the close-up" if only_close else "", homeless=homeless,
-        )  # fmt: skip
-        self.readouts = film_words.readout_items(scene, self.curve_numbers, self.curve_powers)
-        self.key_at_foot = self.close is not None or not right_column
-        key_width = across.stage_right + across.axis - 20
-        rows = max(min(rows_needed(sheet, self.key, self.font, key_width), KEY_ROWS), len(self.readouts))
-        unit = size[1] / 720
-        self.clock_left = across.right_left if right_column else round(0.76 * size[0])
-        largest = 20 * unit if unit > 0.7 else 13
-        caption_width = self.clock_left - across.stage_left - 2 * self.font
-        sizes = (largest, 0.9 * self.font)
-        self.title, self.title_pixels = broken_into_lines(sheet, scene.title, sizes, caption_width)
-        placed = [n.row for n in self.names] + ([0] if self.close else [])
-        self.layout: Layout = arrange(
-            size, across, title_lines=len(self.title), title_pixels=self.title_pixels,
-            name_rows=max(placed, default=-1) + 1, close_up=self.close is not None,
-            key_rows=rows if self.key_at_foot else 0,
-        )  # fmt: skip
-        self.caption_width = caption_width
-
-    def _panel(self, rect: Rect, low: float, high: float) -> Panel:
-        return Panel(rect, low, high, *self.energies)
-
-    def _phases(self, stretch: tuple[float, float], width: int) -> Array | None:
-        """Phase colours where a wavelength spans enough pixels of a panel, else None."""
-        if self.scene.phase is None or self.scene.wavelength is None:
-            return None
-        pixels = self.scene.wavelength / (stretch[1] - stretch[0]) * width
-        return phase_table(pixels, choices.SHORTEST_WAVE) if pixels >= choices.SHORTEST_WAVE else None
-
-    def _draw_caption(self) -> None:
-        sheet, scene, place = self.sheet, self.scene, self.layout
-        left = self.across.stage_left
-        for number, words in enumerate(self.title):
-            y = place.title_y + number * 1.2 * self.title_pixels
-            sheet.text(left, y, words, self.title_pixels, bold=True)
-        said = sheet.fit(scene.subtitle, self.font, self.caption_width)
-        sheet.text(left, place.subtitle_y, said, self.font, colour=QUIET)
-        self.clock = sheet.text(
-            self.clock_left, place.title_y, self._time_text(0), max(self.title_pixels, 1.3 * self.font), bold=True,
-            moving=True,
-        )  # fmt: skip
-        room = sheet.width - self.clock_left - 0.5 * self.font
-        said = sheet.fit(film_words.run_line(scene), self.font, room)
-        sheet.text(self.clock_left, place.subtitle_y, said, self.font, colour=QUIET)
-
-    def _time_text(self, frame: int) -> str:
-        return f"t = {with_unit(self.time_numbers(float(self.scene.times[frame])), self.scene.time_label)}"
-
-    def _draw_packet(self) -> None:
-        sheet, scene, font, place = self.sheet, self.scene, self.font, self.layout
-        stage = self._panel(place.stage, *self.view)
-        room = float(np.min(stage.down(self.baseline))) - place.stage.top
-        per_pixel = self.highest / (PEAK_AT * room)
-        common = {"baseline": self.baseline, "per_pixel": per_pixel, "magnified": self.magnified, "fine": self.fine}
-        self.packets = [PacketPanel(sheet, scene, stage, phases=self.stage_phases, **common)]
-        density = ticks(0.0, room * per_pixel, max(int(room / (3 * font)), 1))
-        self.density_axis = DensityAxis(sheet, self.packets[0], density, per_pixel, font)
-        spine(sheet, stage)
-        side_name(
-            sheet, stage, axis_label("density", per(scene.length_label), density.power), font, room=self.across.axis
-        )
-        side_axis(sheet, stage, font, "potential", scene.energy_label, room=self.across.axis, right=True)
-        film_words.write_names(sheet, self.names, place.stage.top, font, self.line)
-        sheet.line([place.stage.left, place.stage.right], [place.stage.bottom] * 2, QUIET, 1)
-        if self.close is None:
-            return
-        close = self._panel(place.beside, *self.close)
-        sheet.rectangle(place.beside, CLOSE_UP, order=0.1)
-        spot = [stage.across(x) for x in self.close]
-        sheet.rectangle(
-            Rect(int(spot[0]), place.stage.top, max(int(spot[1]) - int(spot[0]), 2), place.stage.height),
-            CLOSE_UP, order=0.1,
-        )  # fmt: skip
-        self.packets.append(PacketPanel(sheet, scene, close, phases=self.close_phases, **common))
-        bottom_axis(sheet, close, font, "x", scene.length_label, named=False)
-        self._name_close_up(close)
-
-    def _name_close_up(self, close: Panel) -> None:
-        sheet, font, rect = self.sheet, self.font, close.rect
-        times = (self.view[1] - self.view[0]) / rect.width * rect.width / (close.x_high - close.x_low)
-        scale = times * rect.width / self.layout.stage.width
-        y = rect.top - 4 - 0.28 * self.line
-        unit = f" [{self.scene.length_label}]" if self.scene.length_label else ""
-        said = f"close-up \u00d7{scale:.0f}, x{unit}"
-        sheet.text(rect.left, y, said, font, colour=QUIET)
-
-    def _draw_carpet_and_chances(self) -> None:
-        sheet, scene, font, place = self.sheet, self.scene, self.font, self.layout
-        first, last = float(scene.times[0]), float(scene.times[-1])
-        last = last if last > first else first + 1.0
-        self.carpet = Panel(place.carpet, *self.view, first, last, downward=True)
-        bottom_axis(sheet, self.carpet, font, "x", scene.length_label)
-        side_axis(sheet, self.carpet, font, "time", scene.time_label, room=self.across.axis)
-        self.now = [self._now_line(place.carpet)]
-        self.chances: Panel | None = None
-        self.dots = []
-        if self.curves:
-            self.chances = chances = Panel(place.chances, 0.0, 1.0, first, last, downward=True)
-            upright_grid(sheet, chances, (0.25, 0.5, 0.75, 1.0))
-            bottom_axis(sheet, chances, font, "probability", None)
-            spine(sheet, chances)
-            self.now.append(self._now_line(place.chances))
-            self.dots = [
-                sheet.line([], [], colour, 7 * self.fine, marker=marker, moving=True)
-                for _, (colour, _, marker) in zip(self.curves, CURVES, strict=False)
-            ]
-        self._draw_key()
-
-    def _now_line(self, rect: Rect):  # type: ignore[no-untyped-def]
-        return self.sheet.line([rect.left, rect.right], [rect.top] * 2, INK, 1, moving=True)
-
-    def _draw_key(self) -> None:
-        place, key, readouts = self.layout, self.key, self.readouts
-        if self.key_at_foot:
-            drawn = draw_key(self.sheet, key, self.font, self.line, place.key)
-            values = draw_key(self.sheet, readouts, self.font, self.line, place.readouts)
+    with plain_matplotlib():
+        film = Film(scene, size)
+        if path.suffix == ".mp4":
+            write_mp4(path, film.frame, scene.frames, size=size, fps=fps, progress=progress)
         else:
-            needed = round(len(readouts) * self.line)
-            above = Rect(place.beside.left, place.beside.top, place.beside.width, place.beside.height - needed)
-            below = Rect(above.left, above.bottom, above.width, needed)
-            drawn = draw_key(self.sheet, key, self.font, self.line, above)
-            values = draw_key(self.sheet, readouts, self.font, self.line, below)
-        self.energy_text = next(iter(drawn.moving.values()), None)
-        self.value_texts = values.moving
-
-    def _paint_in_full(self) -> None:
-        """Carpet, path and probabilities as they are at the end, onto the pixels."""
-        sheet, scene, rect = self.sheet, self.scene, self.layout.carpet
-        columns = Columns(scene.x, *self.view, rect.width).mean(scene.density)
-        shades = self.carpet_scale.shade(rows_in_time(columns, scene.times, rect.height))
-        self.pixels[rect.top : rect.bottom, rect.left : rect.right, :3] = density_table()[shades]
-        sheet.paint(*draw_detectors(sheet, scene, self.carpet, self.fine, moving=True))
-        down = self.carpet.down(scene.times)
-        if scene.classical_path is not None:
-            path = self.carpet.across(_without_jumps(scene.classical_path, self.view))
-            for colour, width in (("#ffffff", 3.4), (PATH, 1.8)):
-                sheet.paint(sheet.line(path, down, colour, width * self.fine, within=rect, moving=True))
-        if self.chances is not None:
-            lines = zip(self.curves, self.curve_powers, CURVES, strict=False)
-            for (_, values), power, (colour, dash, _) in lines:
-                x = self.chances.across(np.asarray(values) * 10.0**power)
-                line = sheet.line(x, down, colour, 1.8 * self.fine, dash=dash, moving=True)
-                sheet.paint(line)
-
-    def frame(self, number: int) -> Array:
-        """The pixels of one frame, shape (height, width, 4), uint8: valid until the next call."""
-        with plain_matplotlib():
-            self._paint(number)
-        return self.pixels
-
-    def _paint(self, number: int) -> None:
-        sheet, scene = self.sheet, self.scene
-        now = int(np.clip(round(self.carpet.down(scene.times[number])), self.layout.carpet.top, None))
-        np.copyto(self.pixels, self.empty)
-        past = slice(self.layout.carpet.top, now)
-        self.pixels[past] = self.full[past]
-        for packet in self.packets:
-            packet.paint(number, self.pixels)
-        self.density_axis.paint(number)
-        for line in self.now:
-            sheet.move(line, line.get_xdata(), [now, now])
-        self.clock.set_text(self._time_text(number))
-        sheet.paint(*self.now, self.clock)
-        if self.energy_text is not None:
-            said = film_words.mean_energy_text(scene, self.energy_numbers, float(self.baseline[number]))
-            self.energy_text.set_text(said)
-            sheet.paint(self.energy_text)
-        self._paint_values(number, now)
-
-    def _paint_values(self, number: int, now: int) -> None:
-        for index, ((label, values), power, numbers, dot) in enumerate(
-            zip(self.curves, self.curve_powers, self.curve_numbers, self.dots, strict=True)
-        ):
-            value = float(values[number])
-            self.sheet.move(dot, [self.chances.across(value * 10.0**power)], [now])
-            self.sheet.paint(dot)
-            if index in self.value_texts:
-                text = self.value_texts[index]
-                text.set_text(film_words.readout(label, numbers, power, value))
-                self.sheet.paint(text)
-
-    def texts(self) -> list[Text]:
-        """Every visible text as the last frame drew it."""
-        return self.sheet.texts()
-
-
-def _without_jumps(path: Array, view: tuple[float, float]) -> Array:
-    """The path with a gap where it leaves on one side of the box and comes back on the other."""
-    broken = np.array(path, dtype=float)
-    jumps = np.flatnonzero(np.abs(np.diff(broken)) > 0.5 * (view[1] - view[0])) + 1
-    broken[jumps] = np.nan
-    return broken
+            write_gif(path, film.frame, scene.frames, fps=fps, progress=progress)

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 import numpy as np
 
 from .choices import CarpetScale, Magnified
-from .key import Hatch, Item, Ramp, Stroke, Words
+from .key import Hatch, Item, Ramp, Stroke, Wordings, Words
 from .names import Name, PlacedName
 from .palette import CURVES, DETECTOR, ENERGY, LAYER, PATH, POTENTIAL, REGION, VERDICT_MARKS, density_table
 from .scene import Scene
@@ -27,9 +27,17 @@ def time_numbers(times: Array) -> Numbers:
         return numbers_for(float(np.abs(times).max()), 0.0)
     step = float(np.diff(times).min())
     numbers = numbers_for(float(np.abs(times).max()), step)
-    if numbers.decimals is None or np.allclose(times, np.round(times, numbers.decimals), rtol=0, atol=1e-6 * step):
+    if numbers.decimals is None or np.allclose(
+        times, np.round(times, numbers.decimals), rtol=0, atol=1e-6 * step
+    ):
         return numbers
     return numbers_for(float(np.abs(times).max()), step / 10)
+
+
+def value_numbers(values: Array) -> Numbers:
+    """Decimals of a running probability: four, or powers of ten where it stays small."""
+    largest = float(np.nanmax(np.abs(values), initial=0.0))
+    return numbers_for(largest, 1e-4) if largest >= 0.01 else Numbers(None)
 
 
 def run_line(scene: Scene) -> str:
@@ -50,15 +58,24 @@ def detector_names(scene: Scene, panel: Panel, magnified: Sequence[Magnified]) -
     return [name for _, name in sorted(names, key=lambda pair: pair[0])]
 
 
-def place_names(scene: Scene, panel: Panel, not_within: tuple[float, float] | None) -> list[Name]:
-    """Names of walls and regions in view, save those that are named above the close-up."""
-    names = [Name("wall", panel.across(x), POTENTIAL) for x in scene.walls if panel.shows(x)]
+Stretch = tuple[float, float] | None
+
+
+def place_names(scene: Scene, panel: Panel, *, within: Stretch = None, beyond: Stretch = None) -> list[Name]:
+    """Names of walls and regions in view: those `within` a stretch, or not wholly in one left out."""
+    names = [
+        Name("wall", panel.across(x), POTENTIAL) for x in scene.walls if panel.shows(x) and within is None
+    ]
     for name, low, high in scene.regions:
-        elsewhere = not_within is not None and not_within[0] <= low and high <= not_within[1]
+        wanted = _inside(low, high, within) if within else not (beyond and _inside(low, high, beyond))
         low, high = max(low, panel.x_low), min(high, panel.x_high)
-        if low < high and not elsewhere:
+        if low < high and wanted:
             names.append(Name(name, panel.across((low + high) / 2), REGION, beside=False))
     return names
+
+
+def _inside(low: float, high: float, stretch: tuple[float, float]) -> bool:
+    return stretch[0] <= low and high <= stretch[1]
 
 
 def write_names(sheet: Sheet, placed: Sequence[PlacedName], stage_top: int, font: float, line: float) -> None:
@@ -70,41 +87,57 @@ def write_names(sheet: Sheet, placed: Sequence[PlacedName], stage_top: int, font
 
 
 def key_items(
-    scene: Scene, scale: CarpetScale, energies: Numbers, baseline: Array, *, phases: Array | None, where: str,
+    scene: Scene,
+    scale: CarpetScale,
+    energies: Numbers,
+    baseline: Array,
+    *,
+    phases: Array | None,
+    where: str,
     homeless: Sequence[Name],
-) -> list[Item]:  # fmt: skip
+) -> list[Wordings]:
     """The key, most needed first; the item with the mean energy changes from frame to frame."""
-    items: list[Item] = []
+    items: list[Wordings] = []
     if phases is not None:
-        items.append((Words(f"phase{where} {MINUS}180\u00b0"), Ramp(phases), Words("180\u00b0")))
-    low = scientific_floor(scale)
-    ends = numbers_for(scale.high, scale.high / 100)(scale.high)
-    unit = with_unit(ends, per(scene.length_label))
-    kind = "logarithmic" if scale.logarithmic else "linear"
-    items.append((Words(f"density {low}"), Ramp(density_table()), Words(f"{unit}, {kind}")))
-    items += [(Words(name.words),) for name in homeless if name.colour == DETECTOR]
+        start, end = Words(f"{MINUS}180\u00b0"), Words("180\u00b0")
+        items.append(
+            ((Words(f"phase{where}"), start, Ramp(phases), end), (Words("phase"), start, Ramp(phases), end))
+        )
+    items.append(carpet_item(scene, scale))
+    items += [
+        ((Stroke(DETECTOR), Words(name.words, soft=True)),) for name in homeless if name.colour == DETECTOR
+    ]
     if scene.classical_path is not None:
-        items.append((Stroke(PATH), Words("F = m a from the same mean start")))
-    items.append((Stroke(ENERGY, (0, (4, 2))), mean_energy_words(scene, energies, baseline)))
+        stroke = Stroke(PATH)
+        items.append(
+            ((stroke, Words("F = m a from the same mean start")), (stroke, Words("F = m a, same start")))
+        )
+    said = [energy_text(scene, energies, float(e)) for e in baseline]
+    now = Words(said[0], widest=max(said, key=len))
+    items.append(((Stroke(ENERGY, (0, (4, 2))), Words("mean energy", soft=True), now),))
     if scene.layers:
-        items.append((Hatch(LAYER, "//////"), Words("absorbing layer")))
+        items.append(((Hatch(LAYER, "//////"), Words("absorbing layer")),))
     if phases is None and scene.phase is not None:
-        items.append((Words("envelope: waves too short for phase colours"),))
+        items.append(((Words("envelope: waves too short for phase colours", soft=True),),))
     return items
 
 
-def mean_energy_words(scene: Scene, energies: Numbers, baseline: Array) -> Words:
-    said = [mean_energy_text(scene, energies, float(e)) for e in baseline]
-    return Words(said[0], widest=max(said, key=len))
+def carpet_item(scene: Scene, scale: CarpetScale) -> Wordings:
+    """The carpet's colours with both ends of their scale."""
+    low = scientific(scale.low, 1).removeprefix("1\u00d7") if scale.logarithmic else "0"
+    high = numbers_for(scale.high, scale.high / 100)(scale.high)
+    unit = with_unit(high, per(scene.length_label))
+    kind = "logarithmic" if scale.logarithmic else "linear"
+    start, table = Words(f"density {low}"), density_table()
+    return (
+        (start, Ramp(table), Words(f"{unit}, {kind}")),
+        (start, Ramp(table, long=False), Words(f"{unit}, {kind[:3]}")),
+        (start, Ramp(table, long=False), Words(f"{high}, {kind[:3]}")),
+    )
 
 
-def mean_energy_text(scene: Scene, energies: Numbers, energy: float) -> str:
-    return f"mean energy {with_unit(energies(energy), scene.energy_label)}"
-
-
-def scientific_floor(scale: CarpetScale) -> str:
-    """The lower end of the carpet's scale."""
-    return scientific(scale.low, 1).removeprefix("1\u00d7") if scale.logarithmic else "0"
+def energy_text(scene: Scene, energies: Numbers, energy: float) -> str:
+    return with_unit(energies(energy), scene.energy_label)
 
 
 def curve_powers(scene: Scene) -> list[int]:
@@ -116,17 +149,14 @@ def curve_powers(scene: Scene) -> list[int]:
     return powers
 
 
-def readout_items(scene: Scene, numbers: Sequence[Numbers], powers: Sequence[int]) -> list[Item]:
-    """One line for each running probability: its mark, its name and its value now."""
-    items: list[Item] = []
+def readout_items(scene: Scene, numbers: Sequence[Numbers], powers: Sequence[int]) -> list[Wordings]:
+    """One line for each running probability: its mark, its name, its value now, its magnification."""
+    items: list[Wordings] = []
     curves = zip(scene.probabilities[:MOST_CURVES], numbers, powers, CURVES, strict=False)
     for (label, values), number, power, (colour, dash, marker) in curves:
-        said = [readout(label, number, power, float(v)) for v in values]
-        items.append((Stroke(colour, dash, marker), Words(said[0], widest=max(said, key=len))))
+        said = [number(float(v)) for v in values]
+        now = Words(said[0], widest=max(said, key=len))
+        item: Item = (Stroke(colour, dash, marker), Words(label, soft=True), now)
+        times = f"\u00d7{power_of_ten(power)}"
+        items.append(((*item, Words(f"(curve {times})")), (*item, Words(f"({times})"))) if power else (item,))
     return items
-
-
-def readout(label: str, number: Numbers, power: int, value: float) -> str:
-    drawn = f" (curve \u00d7{power_of_ten(power)})" if power else ""
-    return f"{label} {number(value)}{drawn}"
-

@@ -23,10 +23,11 @@ SMALL_RAMP = 3.5
 
 @dataclass(frozen=True)
 class Words:
-    """A text; one that changes from frame to frame gives the `widest` it will be."""
+    """A text. One that changes from frame to frame gives the `widest` it will be; a `soft` one may be cut."""
 
     text: str
     widest: str = ""
+    soft: bool = False
 
 
 @dataclass(frozen=True)
@@ -56,6 +57,7 @@ class Hatch:
 
 Piece = Words | Ramp | Stroke | Hatch
 Item = tuple[Piece, ...]
+Wordings = tuple[Item, ...]  # one item said in full, then shorter: the first that fits is drawn
 
 
 @dataclass(frozen=True)
@@ -66,22 +68,25 @@ class Placed:
     left_out: tuple[int, ...]
 
 
-def rows_needed(sheet: Sheet, items: Sequence[Item], font: float, width: int) -> int:
+def rows_needed(sheet: Sheet, items: Sequence[Wordings], font: float, width: int) -> int:
     """How many rows the items take in that width."""
-    rows, _ = _flow([item_width(sheet, item, font) for item in items], font, width)
-    return max((row for row, _ in rows), default=-1) + 1
+    places = _flow(
+        [item_width(sheet, _fitting(sheet, item, font, width), font) for item in items], font, width
+    )
+    return max((row for row, _ in places), default=-1) + 1
 
 
-def draw_key(sheet: Sheet, items: Sequence[Item], font: float, line: float, rect: Rect) -> Placed:
+def draw_key(sheet: Sheet, items: Sequence[Wordings], font: float, line: float, rect: Rect) -> Placed:
     """Draws the items into `rect`, in rows of height `line`; those that come after its end are left out.
 
-    Give the items most needed first. An item wider than the rectangle is shortened.
+    Give the items most needed first. One whose shortest wording is too wide has its soft words shortened.
     """
-    widths = [item_width(sheet, item, font) for item in items]
-    places, _ = _flow(widths, font, rect.width)
+    chosen = [_fitting(sheet, item, font, rect.width) for item in items]
+    widths = [item_width(sheet, item, font) for item in chosen]
+    places = _flow(widths, font, rect.width)
     moving: dict[int, Text] = {}
     left_out = []
-    for index, (item, width, (row, x)) in enumerate(zip(items, widths, places, strict=True)):
+    for index, (item, width, (row, x)) in enumerate(zip(chosen, widths, places, strict=True)):
         if (row + 1) * line > rect.height + 0.5:
             left_out.append(index)
             continue
@@ -96,7 +101,11 @@ def item_width(sheet: Sheet, item: Item, font: float) -> float:
     return sum(_width(sheet, piece, font) for piece in item) + BETWEEN_PARTS * font * (len(item) - 1)
 
 
-def _flow(widths: Sequence[float], font: float, width: int) -> tuple[list[tuple[int, float]], float]:
+def _fitting(sheet: Sheet, wordings: Wordings, font: float, width: int) -> Item:
+    return next((item for item in wordings if item_width(sheet, item, font) <= width), wordings[-1])
+
+
+def _flow(widths: Sequence[float], font: float, width: int) -> list[tuple[int, float]]:
     """(row, x) of each item, left to right and on to the next row where it does not fit."""
     places: list[tuple[int, float]] = []
     row, x = 0, 0.0
@@ -105,27 +114,30 @@ def _flow(widths: Sequence[float], font: float, width: int) -> tuple[list[tuple[
             row, x = row + 1, 0.0
         places.append((row, x))
         x += needed + BETWEEN_ITEMS * font
-    return places, x
+    return places
 
 
 def _width(sheet: Sheet, piece: Piece, font: float) -> float:
     if isinstance(piece, Words):
-        return max(sheet.measure(piece.text, font), sheet.measure(piece.widest, font) if piece.widest else 0.0)
+        return max(
+            sheet.measure(piece.text, font), sheet.measure(piece.widest, font) if piece.widest else 0.0
+        )
     if isinstance(piece, Ramp):
         return (RAMP if piece.long else SMALL_RAMP) * font
     return SAMPLE * font
 
 
-def _draw_item(sheet: Sheet, item: Item, font: float, x: float, middle: float, too_wide: float) -> Text | None:
+def _draw_item(
+    sheet: Sheet, item: Item, font: float, x: float, middle: float, too_wide: float
+) -> Text | None:
     """Draws the pieces side by side, `middle` being the pixel row of their middle; the changing text."""
     moving = None
     for piece in item:
         width = _width(sheet, piece, font)
         if isinstance(piece, Words):
-            shown = sheet.fit(piece.text, font, width - too_wide) if too_wide else piece.text
-            text = sheet.text(
-                x, middle + 0.36 * font, shown, font, colour=QUIET, moving=bool(piece.widest)
-            )
+            width -= too_wide if piece.soft else 0.0
+            shown = sheet.fit(piece.text, font, width) if piece.soft else piece.text
+            text = sheet.text(x, middle + 0.36 * font, shown, font, colour=QUIET, moving=bool(piece.widest))
             moving = text if piece.widest else moving
         else:
             box = Rect(round(x), round(middle - 0.35 * font), round(width), round(0.7 * font))
@@ -137,9 +149,13 @@ def _draw_item(sheet: Sheet, item: Item, font: float, x: float, middle: float, t
 def _draw_sample(sheet: Sheet, piece: Ramp | Stroke | Hatch, box: Rect) -> None:
     middle = (box.top + box.bottom) / 2
     if isinstance(piece, Stroke):
-        sheet.line([box.left, box.right], [middle, middle], piece.colour, 0.16 * box.height + 0.6, dash=piece.dash)
+        sheet.line(
+            [box.left, box.right], [middle, middle], piece.colour, 0.16 * box.height + 0.6, dash=piece.dash
+        )
         if piece.marker:
-            sheet.line([(box.left + box.right) / 2], [middle], piece.colour, 0.7 * box.height, marker=piece.marker)
+            sheet.line(
+                [(box.left + box.right) / 2], [middle], piece.colour, 0.7 * box.height, marker=piece.marker
+            )
     elif isinstance(piece, Hatch):
         sheet.rectangle(box, piece.colour, hatch=piece.hatch)
     else:
@@ -148,6 +164,8 @@ def _draw_sample(sheet: Sheet, piece: Ramp | Stroke | Hatch, box: Rect) -> None:
         for column, cell in enumerate(cells):
             left = box.left + column
             sheet.area(
-                [left, left + 1, left + 1, left], [box.top, box.top, box.bottom, box.bottom],
-                "#" + "".join(f"{round(255 * c):02x}" for c in table[cell]), within=box,
-            )  # fmt: skip
+                [left, left + 1, left + 1, left],
+                [box.top, box.top, box.bottom, box.bottom],
+                "#" + "".join(f"{round(255 * c):02x}" for c in table[cell]),
+                within=box,
+            )

@@ -36,8 +36,9 @@ class Layout:
     chances: Rect
     key: Rect
     readouts: Rect
-    subtitle_y: float
     title_y: float
+    subtitle_y: float
+    run_y: float  # of the line with the fingerprint
 
 
 def font_size(height: int) -> float:
@@ -51,16 +52,22 @@ def widths(size: tuple[int, int], right_column: bool) -> Widths:
     axis = round(1.25 * LINE * font + 3.85 * font + 8)
     left = round(axis + 6 * unit)
     margin = round(max(22 * unit, 1.4 * font))
-    right_width = round(max(0.225 * width, 16 * font)) if right_column else 0
+    right_width = round(max(0.225 * width, 17.5 * font)) if right_column else 0
     gap = round(max(20 * unit, font)) if right_column else 0
     stage = width - left - axis - gap - right_width - margin
     return Widths(font, axis, left, stage, left + stage + axis + gap, right_width)
 
 
 def arrange(
-    size: tuple[int, int], across: Widths, *, title_lines: int, title_pixels: float, name_rows: int,
-    close_up: bool, key_rows: int,
-) -> Layout:  # fmt: skip
+    size: tuple[int, int],
+    across: Widths,
+    *,
+    title_lines: int,
+    title_pixels: float,
+    name_rows: int,
+    close_up: bool,
+    key_rows: int,
+) -> Layout:
     """Stage and carpet share the height that the words leave. `key_rows` is 0 where the key stands beside."""
     unit, font = size[1] / 720, across.font
     line = LINE * font
@@ -75,15 +82,14 @@ def arrange(
     carpet_top = stage_top + stage_height + between
     left, width = across.stage_left, across.stage_width
     right, right_width = across.right_left, across.right_width
-    whole = across.stage_right + across.axis - 10
-    key_left = round(10 * unit)
     return Layout(
         stage=Rect(left, stage_top, width, stage_height),
         carpet=Rect(left, carpet_top, width, carpet_bottom - carpet_top),
         beside=Rect(right, stage_top, right_width, stage_height),
         chances=Rect(right, carpet_top, right_width, carpet_bottom - carpet_top),
-        key=Rect(key_left, foot, whole - key_left, key_height),
+        key=Rect(left, foot, width + across.axis, key_height),
         readouts=Rect(right, foot, right_width, key_height),
-        subtitle_y=subtitle_y,
         title_y=title_y,
+        subtitle_y=subtitle_y,
+        run_y=title_y + 1.45 * font,
     )

@@ -10,7 +10,7 @@ from matplotlib.artist import Artist
 from .axes import side_tick
 from .choices import Magnified
 from .columns import Columns
-from .palette import DETECTOR, ENERGY, ENVELOPE, INK, LAYER, POTENTIAL, POTENTIAL_FILL, REGION, rgb
+from .palette import DETECTOR, ENERGY, ENVELOPE, INK, LAYER, PAPER, POTENTIAL, POTENTIAL_FILL, REGION, rgb
 from .scene import Scene
 from .sheet import Panel, Rect, Sheet
 from .wording import Ticks
@@ -18,6 +18,7 @@ from .wording import Ticks
 Array = np.ndarray
 
 FAR = 1e4  # pixels: where infinite potentials are cut
+FLAT = 0.3  # pixels: a curve this low is left to the line of the mean energy
 
 
 class PacketPanel:
@@ -30,9 +31,17 @@ class PacketPanel:
     """
 
     def __init__(
-        self, sheet: Sheet, scene: Scene, panel: Panel, *, baseline: Array, per_pixel: float,
-        magnified: Sequence[Magnified], phases: Array | None, fine: float,
-    ) -> None:  # fmt: skip
+        self,
+        sheet: Sheet,
+        scene: Scene,
+        panel: Panel,
+        *,
+        baseline: Array,
+        per_pixel: float,
+        magnified: Sequence[Magnified],
+        phases: Array | None,
+        fine: float,
+    ) -> None:
         self.sheet, self.scene, self.panel, self.phases = sheet, scene, panel, phases
         self.columns = Columns(scene.x, panel.x_low, panel.x_high, panel.rect.width)
         self.base = np.round(panel.down(baseline))
@@ -50,7 +59,7 @@ class PacketPanel:
         self.curve = sheet.line([], [], INK, 1.2 * fine, within=within, moving=moving, order=5)
         self.large_curve = sheet.line([], [], DETECTOR, 1.5 * fine, within=within, moving=moving, order=5)
         self.mean = sheet.line([], [], ENERGY, 1.0 * fine, dash=(0, (5, 3)), within=within, moving=moving)
-        self.front: list[Artist] = [self.outline, self.mean, *draw_detectors(sheet, scene, panel, fine, moving=True)]
+        self.front: list[Artist] = [self.outline, self.mean, *draw_detectors(sheet, scene, panel, fine)]
 
     def _draw_potential(self, fine: float) -> None:
         moves, within = self.scene.potential_moves, self.panel.rect
@@ -77,8 +86,9 @@ class PacketPanel:
         base = float(self.base[frame])
         tops = base - self.heights[frame]
         fill_columns(pixels, self.panel.rect, tops, base, self._colours(frame))
-        self.sheet.move(self.curve, self.x, np.where(self.enlarged, np.nan, tops))
-        self.sheet.move(self.large_curve, self.x, np.where(self.enlarged, tops, np.nan))
+        drawn = np.where(self.heights[frame] > FLAT, tops, np.nan)
+        self.sheet.move(self.curve, self.x, np.where(self.enlarged, np.nan, drawn))
+        self.sheet.move(self.large_curve, self.x, np.where(self.enlarged, drawn, np.nan))
         self.sheet.move(self.mean, [self.panel.rect.left, self.panel.rect.right], [base, base])
         self.sheet.paint(*self.front, self.curve, self.large_curve)
 
@@ -111,7 +121,7 @@ def draw_places(sheet: Sheet, scene: Scene, panel: Panel, fine: float) -> None:
     for _, low, high in scene.regions:
         left, right = _columns_of(panel, low, high)
         if right > left:
-            sheet.line([left, right], [rect.top, rect.top], REGION, 4 * fine, order=3)
+            sheet.line([left + 1, right - 1], [rect.top, rect.top], REGION, 4 * fine, order=3)
     for x in scene.walls:
         if panel.shows(x):
             place = panel.across(x)
@@ -120,25 +130,42 @@ def draw_places(sheet: Sheet, scene: Scene, panel: Panel, fine: float) -> None:
 
 def _columns_of(panel: Panel, low: float, high: float) -> tuple[int, int]:
     left, right = np.clip(panel.across(np.array([low, high])), panel.rect.left, panel.rect.right).round()
-    return int(left), max(int(right), int(left) + 1) if panel.x_low <= high and low <= panel.x_high else int(left)
+    return int(left), max(int(right), int(left) + 1) if panel.x_low <= high and low <= panel.x_high else int(
+        left
+    )
 
 
-def draw_detectors(sheet: Sheet, scene: Scene, panel: Panel, fine: float, *, moving: bool = False) -> list[Artist]:
+def draw_detectors(
+    sheet: Sheet, scene: Scene, panel: Panel, fine: float, *, edged: bool = False
+) -> list[Artist]:
+    """Detector planes of a panel, to be painted; `edged` ones stand out from a dark carpet."""
     rect = panel.rect
-    places = [panel.across(x) for _, x, _ in scene.detectors if panel.shows(x)]
-    return [sheet.line([p, p], [rect.top, rect.bottom], DETECTOR, 1.3 * fine, moving=moving) for p in places]
+    lines: list[Artist] = []
+    for place in (panel.across(x) for _, x, _ in scene.detectors if panel.shows(x)):
+        styles = [(PAPER, 3.6), (DETECTOR, 1.8)] if edged else [(DETECTOR, 1.3)]
+        for colour, width in styles:
+            lines.append(
+                sheet.line(
+                    [place, place], [rect.top, rect.bottom], colour, width * fine, within=rect, moving=True
+                )
+            )
+    return lines
 
 
 class DensityAxis:
     """Numbers of the density left of the stage, whose zero stands on the baseline and moves with it."""
 
-    def __init__(self, sheet: Sheet, packet: PacketPanel, shown: Ticks, per_pixel: float, font: float) -> None:
+    def __init__(
+        self, sheet: Sheet, packet: PacketPanel, shown: Ticks, per_pixel: float, font: float
+    ) -> None:
         self.sheet, self.packet = sheet, packet
         self.steps = shown.values / per_pixel
         self.moves = bool(np.ptp(packet.base) > 0)
         base = packet.base[0]
         rows = zip(self.steps, shown.labels, strict=True)
-        self.marks = [side_tick(sheet, packet.panel, base - s, label, font, moving=self.moves) for s, label in rows]
+        self.marks = [
+            side_tick(sheet, packet.panel, base - s, label, font, moving=self.moves) for s, label in rows
+        ]
         if not self.moves:
             self._show(0)
 

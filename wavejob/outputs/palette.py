@@ -22,6 +22,7 @@ DETECTOR = "#00707c"
 REGION = "#7a6a9b"
 LAYER = "#b9b4a8"
 PATH = "#c2185b"
+CASING = "#ffffff"
 ENVELOPE = "#8aa6c1"
 START = "#9aa3ad"
 

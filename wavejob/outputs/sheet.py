@@ -73,7 +73,9 @@ class Panel:
 @contextmanager
 def plain_matplotlib() -> Iterator[None]:
     """matplotlib as it comes, whatever the user's own settings; letters the font lacks are no warning."""
-    defaults = {k: v for k, v in matplotlib.rcParamsDefault.items() if not k.startswith(("backend", "interactive"))}
+    defaults = {
+        k: v for k, v in matplotlib.rcParamsDefault.items() if not k.startswith(("backend", "interactive"))
+    }
     with warnings.catch_warnings(), matplotlib.rc_context(defaults):
         warnings.filterwarnings("ignore", message="Glyph .* missing from")
         warnings.filterwarnings("ignore", message="Matplotlib currently does not support")
@@ -101,28 +103,66 @@ class Sheet:
             artist.draw(self.renderer)
 
     def text(
-        self, x: float, y: float, words: str, pixels: float, *, colour: str = INK, align: str = "left",
-        upright: str = "baseline", bold: bool = False, rotation: float = 0, moving: bool = False,
-    ) -> Text:  # fmt: skip
+        self,
+        x: float,
+        y: float,
+        words: str,
+        pixels: float,
+        *,
+        colour: str = INK,
+        align: str = "left",
+        upright: str = "baseline",
+        bold: bool = False,
+        rotation: float = 0,
+        moving: bool = False,
+    ) -> Text:
         artist = Text(
-            x, self.height - y, clean(words), fontsize=pixels * 72 / DPI, color=colour, ha=align, va=upright,
-            weight="bold" if bold else "normal", rotation=rotation, rotation_mode="anchor", parse_math=False,
-            transform=IdentityTransform(), animated=moving,
-        )  # fmt: skip
+            x,
+            self.height - y,
+            clean(words),
+            fontsize=pixels * 72 / DPI,
+            color=colour,
+            ha=align,
+            va=upright,
+            weight="bold" if bold else "normal",
+            rotation=rotation,
+            rotation_mode="anchor",
+            parse_math=False,
+            transform=IdentityTransform(),
+            animated=moving,
+        )
         self.figure.add_artist(artist)
         return artist
 
     def line(
-        self, x: Any, y: Any, colour: str, width: float = 1.0, *, dash: Any = "-", within: Rect | None = None,
-        marker: str = "", moving: bool = False, order: float = 2,
-    ) -> Line2D:  # fmt: skip
+        self,
+        x: Any,
+        y: Any,
+        colour: str,
+        width: float = 1.0,
+        *,
+        dash: Any = "-",
+        within: Rect | None = None,
+        marker: str = "",
+        moving: bool = False,
+        order: float = 2,
+    ) -> Line2D:
         """A line or, with `marker`, single points of `width` pixels; clipped to the rectangle `within`."""
         artist = Line2D(
-            np.asarray(x, dtype=float), self.height - np.asarray(y, dtype=float), color=colour,
-            linewidth=0 if marker else width * 72 / DPI, linestyle=dash, marker=marker or None,
-            markersize=width * 72 / DPI, markeredgewidth=0, transform=IdentityTransform(), animated=moving,
-            zorder=order, solid_joinstyle="round", solid_capstyle="butt",
-        )  # fmt: skip
+            np.asarray(x, dtype=float),
+            self.height - np.asarray(y, dtype=float),
+            color=colour,
+            linewidth=0 if marker else width * 72 / DPI,
+            linestyle=dash,
+            marker=marker or None,
+            markersize=width * 72 / DPI,
+            markeredgewidth=0,
+            transform=IdentityTransform(),
+            animated=moving,
+            zorder=order,
+            solid_joinstyle="round",
+            solid_capstyle="butt",
+        )
         self.figure.add_artist(artist)
         if within is not None:
             artist.set_clip_box(self.box(within))
@@ -132,13 +172,28 @@ class Sheet:
         line.set_data(np.asarray(x, dtype=float), self.height - np.asarray(y, dtype=float))
 
     def area(
-        self, x: Any, y: Any, colour: str, *, within: Rect, hatch: str = "", moving: bool = False, order: float = 1
+        self,
+        x: Any,
+        y: Any,
+        colour: str,
+        *,
+        within: Rect,
+        hatch: str = "",
+        moving: bool = False,
+        order: float = 1,
     ) -> Polygon:
         """A filled polygon, or a hatched one with nothing behind the hatch."""
         artist = Polygon(
-            self.corners(x, y), closed=True, facecolor="none" if hatch else colour, edgecolor=colour, linewidth=0,
-            hatch=hatch or None, transform=IdentityTransform(), animated=moving, zorder=order,
-        )  # fmt: skip
+            self.corners(x, y),
+            closed=True,
+            facecolor="none" if hatch else colour,
+            edgecolor=colour,
+            linewidth=0,
+            hatch=hatch or None,
+            transform=IdentityTransform(),
+            animated=moving,
+            zorder=order,
+        )
         self.figure.add_artist(artist)
         artist.set_clip_box(self.box(within))
         return artist
@@ -179,46 +234,3 @@ class Sheet:
     def texts(self) -> list[Text]:
         """Every text that is visible and not empty."""
         return [t for t in self.figure.findobj(Text) if t.get_visible() and t.get_text()]
-
-
-def broken_into_lines(sheet: Sheet, words: str, sizes: tuple[float, float], width: float) -> tuple[list[str], float]:
-    """A bold title whole on one line or two, as large as `sizes` (largest, smallest) allow.
-
-    Two lines at a larger size are preferred to one below four fifths of the largest. Only a title that does not
-    fit in two lines of the smallest size ends with an ellipsis.
-    """
-    words = clean(words)
-    largest, smallest = sizes
-    one = largest * min(1.0, width / max(sheet.measure(words, largest, bold=True), 1e-9))
-    if one >= 0.8 * largest:
-        return [words], one
-    pixels = largest
-    while pixels > smallest:
-        lines = _two_lines(sheet, words, pixels, width)
-        if lines:
-            return lines, pixels
-        pixels = max(smallest, pixels - 0.5)
-    lines = _two_lines(sheet, words, smallest, width)
-    if lines:
-        return lines, smallest
-    half = _longest_start(sheet, words, smallest, width)
-    return [words[:half], sheet.fit(words[half:], smallest, width, bold=True)], smallest
-
-
-def _two_lines(sheet: Sheet, words: str, pixels: float, width: float) -> list[str]:
-    """Both lines where they fit, broken at a blank, or anywhere in a word that is longer than a line; else []."""
-    end = _longest_start(sheet, words, pixels, width)
-    blank = words.rfind(" ", 0, end + 1)
-    for cut in (blank, end):
-        if cut > 0 and sheet.measure(words[cut:].strip(), pixels, bold=True) <= width:
-            return [words[:cut].strip(), words[cut:].strip()]
-    return []
-
-
-def _longest_start(sheet: Sheet, words: str, pixels: float, width: float) -> int:
-    few, many = 0, len(words)
-    while few < many:
-        middle = (few + many + 1) // 2
-        fits = sheet.measure(words[:middle], pixels, bold=True) <= width
-        few, many = (middle, many) if fits else (few, middle - 1)
-    return few

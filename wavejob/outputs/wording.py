@@ -10,7 +10,9 @@ import numpy as np
 
 Array = np.ndarray
 
-SUPERSCRIPTS = str.maketrans("-0123456789", "\u207b\u2070\u00b9\u00b2\u00b3\u2074\u2075\u2076\u2077\u2078\u2079")
+SUPERSCRIPTS = str.maketrans(
+    "-0123456789", "\u207b\u2070\u00b9\u00b2\u00b3\u2074\u2075\u2076\u2077\u2078\u2079"
+)
 MINUS = "\u2212"
 
 
@@ -103,6 +105,8 @@ def ticks(low: float, high: float, most: int) -> Ticks:
     exponent = math.floor(math.log10(largest) + 1e-9)
     power = exponent if exponent >= 5 or exponent < -1 else 0
     scaled_step = step / 10.0**power
-    decimals = next(d for d in range(8) if abs(round(scaled_step, d) - scaled_step) < 1e-6 * scaled_step or d == 7)
+    decimals = next(
+        d for d in range(8) if abs(round(scaled_step, d) - scaled_step) < 1e-6 * scaled_step or d == 7
+    )
     labels = tuple(fixed(v / 10.0**power, decimals) for v in values)
     return Ticks(values, labels, power)
