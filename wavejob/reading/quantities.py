@@ -180,9 +180,11 @@ class Units:
         return Named(term.factor * (worth / self._inside(kind)), kind)
 
     def _kind(self, term: Term, names: Mapping[str, Named]) -> str:
-        if term.unit:
-            return self._measured(term, names).dimension
-        return _named(term, names).dimension if term.name else "number"
+        """What a term is; in the unit that the file gives for energies, be it cm^-1 or K, it is an energy."""
+        if not term.unit:
+            return _named(term, names).dimension if term.name else "number"
+        kind = self._measured(term, names).dimension
+        return "energy" if pint_notation(term.unit) == pint_notation(self.energy) else kind
 
     def _bare(self, number: float, term: Term, wanted: str) -> float:
         """A number without a unit, in the unit that the file gives for its kind; zero needs none."""

@@ -26,10 +26,11 @@ MAX_NODES = 20_000
 MAX_DEPTH = 50
 MAX_DIGITS = 100  # of a whole number: far more than any seed needs, far less than would be slow
 
-# libyaml where PyYAML was built with it, for speed alone: what it refuses is read again by the Python parser,
-# so that places and sentences do not depend on the machine.
+# libyaml where PyYAML was built with it, for speed alone: what it refuses is read again by the Python parser, so
+# that places and sentences do not depend on the machine.
 FAST_LOADER = getattr(yaml, "CSafeLoader", None)
 
+_PARSERS_DIFFER = re.compile(r"\t|[|>]\S*#|\?[\]},]")  # libyaml alone takes tabs in `{ }`, `|#` and `[a?]`
 _ESCAPED = re.compile("[\x00-\x08\x0b-\x1f\x7f\ud800-\udfff]")  # may be written in double quotes only
 _NULL = re.compile(r"~|null|Null|NULL|")
 _TRUE, _FALSE = ("true", "True", "TRUE"), ("false", "False", "FALSE")
@@ -79,11 +80,11 @@ def read_text(text: str, shown: str) -> Document:
     """The content of `text`, called `shown` in messages. Raises JobFileError with all mistakes found."""
     check_characters(text, shown)
     lines = LINE_END.split(text)
-    if FAST_LOADER is not None and "\t" not in text:  # the two parsers differ on tabs
+    if FAST_LOADER is not None and not _PARSERS_DIFFER.search(text):
         try:
             return _Reader(FAST_LOADER(text), lines, shown).document()
-        except yaml.YAMLError:
-            pass  # the Python parser below says the same in the same words everywhere
+        except (yaml.YAMLError, JobFileError):
+            pass  # mistakes are found by the Python parser below
     loader = yaml.SafeLoader(text)
     reader = _Reader(loader, lines, shown)
     try:
@@ -209,7 +210,12 @@ class _Reader:
             inner = _below(path, key)
             if inner is not None:
                 self.key_places[inner] = self._place(mark)
-            entries[key] = self._node(next(events), events, inner, depth + 1)
+            event = next(events)
+            entries[key] = self._node(event, events, inner, depth + 1)
+            if inner is not None and entries[key] is None and event.start_mark.index == event.end_mark.index:
+                self.places[inner] = self._place(
+                    mark
+                )  # of a value left out, the parsers give different marks
         return entries
 
     def _key(self, event: Any, events: Iterator[Any], path: KeyPath | None, depth: int) -> str | None:
