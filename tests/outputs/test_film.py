@@ -235,7 +235,7 @@ def test_no_encoder_is_a_run_error_with_a_cure(tmp_path, monkeypatch):
 
 def test_an_encoder_that_stops_is_a_run_error(tmp_path, monkeypatch):
     monkeypatch.setenv("IMAGEIO_FFMPEG_EXE", "/bin/false")
-    with pytest.raises(RunError, match="the encoder stopped"):
+    with pytest.raises(RunError, match="the video encoder stopped"):
         draw_film(scene("free"), tmp_path / "film.mp4", size=(640, 360))
     assert list(tmp_path.iterdir()) == []
 

@@ -26,11 +26,11 @@ def bottom_axis(
         sheet.line([x, x], [rect.bottom, rect.bottom + TICK], QUIET, 1)
         half = sheet.measure(label, font) / 2
         if x - half > free_from:
-            sheet.text(x, rect.bottom + TICK + 2, label, font, align="center", upright="top", colour=QUIET)
+            sheet.text(x, rect.bottom + _gap(font), label, font, align="center", upright="top", colour=QUIET)
             free_from = x + half + 0.4 * font
     if named:
         said = name if unit is None else axis_label(name, unit, shown.power)
-        y = rect.bottom + TICK + 2 + 1.3 * font
+        y = rect.bottom + _gap(font) + 1.3 * font
         pixels = sheet.shrink(said, font, rect.width, SMALLEST_LABEL)
         sheet.text((rect.left + rect.right) / 2, y, said, pixels, align="center", upright="top")
 
@@ -97,6 +97,11 @@ def upright_grid(sheet: Sheet, panel: Panel, most: int) -> None:
         sheet.line([x, x], [panel.rect.top, panel.rect.bottom], GRID, 1, order=0.5)
 
 
+def _gap(font: float) -> float:
+    """Pixels from a bottom axis to its numbers, which stay clear of the number at the side axis's end."""
+    return 3 + 0.65 * font
+
+
 def beneath(top: int, font: float, named: bool) -> int:
     """The first free pixel row below a bottom axis at `top`."""
-    return round(top + TICK + 2 + (2.6 if named else 1.3) * font)
+    return round(top + _gap(font) + (2.6 if named else 1.3) * font)

@@ -2,10 +2,15 @@
 
 from __future__ import annotations
 
+import contextlib
 import os
 from collections.abc import Callable, Iterator
 from pathlib import Path
+from subprocess import DEVNULL, PIPE, Popen
+from tempfile import TemporaryFile
+from typing import IO, cast
 
+import imageio_ffmpeg
 import numpy as np
 from PIL import Image
 
@@ -26,41 +31,49 @@ def write_mp4(
 ) -> None:
     """H.264 in yuv420p with its index at the start. Raises RunError where it can't be encoded or written."""
     try:
-        import imageio_ffmpeg  # here, because pictures can be drawn without an encoder
-
-        imageio_ffmpeg.get_ffmpeg_exe()
-    except (ImportError, RuntimeError) as error:
+        encoder = imageio_ffmpeg.get_ffmpeg_exe()
+    except RuntimeError as error:
         raise RunError(f"could not write `{path}`: no video encoder was found", CURE) from error
-    with atomic_path(path) as temporary:
-        options = ["-preset", "veryfast", "-crf", str(QUALITY), "-movflags", "+faststart", "-threads", "1"]
+    raw = ["-f", "rawvideo", "-pix_fmt", "rgba", "-s", f"{size[0]}x{size[1]}", "-r", str(fps), "-i", "-"]
+    coded = ["-an", "-c:v", "libx264", "-preset", "veryfast", "-crf", str(QUALITY), "-threads", "1"]
+    played = ["-pix_fmt", "yuv420p", "-movflags", "+faststart"]
+    with atomic_path(path) as temporary, TemporaryFile() as said:
+        command = [encoder, "-y", "-v", "error", *raw, *coded, *played, str(temporary)]
         try:
-            writer = imageio_ffmpeg.write_frames(
-                str(temporary),
-                size,
-                pix_fmt_in="rgba",
-                pix_fmt_out="yuv420p",
-                fps=fps,
-                codec="libx264",
-                quality=None,
-                macro_block_size=2,
-                ffmpeg_log_level="quiet",
-                output_params=options,
+            with Popen(command, stdin=PIPE, stdout=DEVNULL, stderr=said) as process:
+                sent = _send_all(process, frame, frames, progress)
+        except OSError as error:
+            raise RunError(
+                f"could not start the video encoder `{encoder}`: {error.strerror}", CURE
+            ) from error
+        if not sent or process.returncode != 0:
+            _find_cause(temporary)
+            said.seek(0)
+            last = said.read().decode(errors="replace").strip().rpartition("\n")[2]
+            raise RunError(
+                f"could not write `{path}`: the video encoder stopped ({last or 'no reason given'})", CURE
             )
-            writer.send(None)
+
+
+def _send_all(process: Popen[bytes], frame: Frame, frames: int, progress: Progress) -> bool:
+    """Whether the encoder took every frame. It is stopped where drawing fails."""
+    pipe = cast(IO[bytes], process.stdin)
+    try:
+        for number in range(frames):
+            pixels = frame(number)
             try:
-                for number in range(frames):
-                    writer.send(frame(number))
-                    if progress is not None:
-                        progress(number + 1, frames)
-            finally:
-                writer.close()
-            written = imageio_ffmpeg.count_frames_and_secs(str(temporary))[0]
-        except (OSError, RuntimeError) as error:
-            _find_cause(temporary)
-            raise RunError(f"could not write `{path}`: the encoder stopped", CURE) from error
-        if written != frames:
-            _find_cause(temporary)
-            raise RunError(f"could not write `{path}`: the encoder kept {written} of {frames} frames", CURE)
+                pipe.write(pixels.data)
+            except BrokenPipeError:
+                return False
+            if progress is not None:
+                progress(number + 1, frames)
+    except BaseException:
+        process.kill()
+        raise
+    finally:
+        with contextlib.suppress(BrokenPipeError):  # of what was not yet flushed
+            pipe.close()
+    return True
 
 
 def _find_cause(temporary: Path) -> None:

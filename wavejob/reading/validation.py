@@ -36,7 +36,7 @@ def read_as(
     meant = {(p.key.rpartition(".")[0], p.fix) for p in problems if p.message.startswith("unknown key")}
     # A misspelt key is one mistake, not also a missing one.
     echoes = [p for p in missing if (p.key, f"did you mean {p.message.split()[0]}?") in meant]
-    return None, [p for p in problems if p not in echoes]
+    return None, list(dict.fromkeys(p for p in problems if p not in echoes))
 
 
 def _problem(document: Merged, detail: Any, known: Callable[[Any], list[str]]) -> Problem:
@@ -86,9 +86,11 @@ def _present(document: Merged, loc: tuple[str | int, ...]) -> Key:
     """The part of a location that the document has: models add tags of their own between the keys."""
     path: Key = ()
     for part in loc:
-        longer = (*path, part)
-        if longer in document.places or longer in document.key_places:
-            path = longer
+        # A kind serves as a tag too: what stands beside it is then one level up.
+        for longer in ((*path, part), (*path[:-1], part)):
+            if path != longer and (longer in document.places or longer in document.key_places):
+                path = longer
+                break
     return path
 
 
