@@ -39,13 +39,8 @@ def write_mp4(
     played = ["-pix_fmt", "yuv420p", "-movflags", "+faststart"]
     with atomic_path(path) as temporary, TemporaryFile() as said:
         command = [encoder, "-y", "-v", "error", *raw, *coded, *played, str(temporary)]
-        try:
-            with Popen(command, stdin=PIPE, stdout=DEVNULL, stderr=said) as process:
-                sent = _send_all(process, frame, frames, progress)
-        except OSError as error:
-            raise RunError(
-                f"could not start the video encoder `{encoder}`: {error.strerror}", CURE
-            ) from error
+        with _started(command, said) as process:
+            sent = _send_all(process, frame, frames, progress)
         if not sent or process.returncode != 0:
             _find_cause(temporary)
             said.seek(0)
@@ -53,6 +48,13 @@ def write_mp4(
             raise RunError(
                 f"could not write `{path}`: the video encoder stopped ({last or 'no reason given'})", CURE
             )
+
+
+def _started(command: list[str], said: IO[bytes]) -> Popen[bytes]:
+    try:
+        return Popen(command, stdin=PIPE, stdout=DEVNULL, stderr=said)
+    except OSError as error:
+        raise RunError(f"could not start the video encoder `{command[0]}`: {error.strerror}", CURE) from error
 
 
 def _send_all(process: Popen[bytes], frame: Frame, frames: int, progress: Progress) -> bool:
