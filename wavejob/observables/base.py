@@ -91,6 +91,10 @@ class Meter:
     def curves(self) -> list[Curve]:
         return []
 
+    def progress(self) -> list[tuple[str, Array, Array]]:
+        """Probabilities that add up while the run goes on, for pictures: name, times, value at each time."""
+        return []
+
 
 class Observable(Model):
     """One kind of observable."""

@@ -140,5 +140,8 @@ class CrossingMeter(Meter):
             f"{self.name}.undecided": self.undecided,
         }
 
+    def progress(self) -> list[tuple[str, Array, Array]]:
+        return [(self.name, self.flux.times, running(self.flux.times, self.flux.values))]
+
     def notes(self) -> dict[str, str]:
         return {f"{self.name}.mean_time": "nothing crossed"}

@@ -1,0 +1,222 @@
+"""One planned job carried out in memory: nothing is written."""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from .checks import judge_expectation, judge_run, verdict
+from .evolve.loop import Output, evolve
+from .evolve.schedule import Schedule
+from .evolve.stepper import plan as plan_steps
+from .observables.base import Meter, Observable
+from .observables.densities import Density, MomentumDensity
+from .plan import Plan
+from .recording import Frames, Rows, Sampler, Stored, Ticker, Watch
+from .results import Check, Column, Curve, Judgement, Result, Verdict
+from .state import Look
+
+Array = np.ndarray
+
+
+@dataclass(frozen=True)
+class Progress:
+    """How far a run is."""
+
+    step: int
+    steps: int
+    t: float  # scaled units
+    norm: float
+    probabilities: tuple[tuple[str, float], ...]
+
+
+@dataclass(frozen=True)
+class StoredDensity:
+    """A density at regular times, rows of shape (1, points)."""
+
+    name: str
+    times: Array
+    rows: list[Array]
+
+
+@dataclass(frozen=True)
+class Record:
+    """All that a run yields, in scaled units."""
+
+    plan: Plan
+    steps: int  # done
+    stopped: str | None  # why the run ended early
+    columns: tuple[Column, ...]
+    times: Array  # (rows,)
+    series: Array  # (rows, columns)
+    results: tuple[Result, ...]
+    curves: tuple[Curve, ...]
+    checks: tuple[Check, ...]
+    judgements: tuple[Judgement, ...]
+    verdict: Verdict
+    psi: Array  # the final state, (points,)
+    field_times: Array  # of the stored fields, the final state last
+    fields: tuple[Array, ...]  # (points,) each
+    densities: tuple[StoredDensity, ...]
+    frames: Frames
+    crossed: dict[str, Array]  # detector -> probability crossed so far, at the frames
+    seconds: float  # of the loop
+
+    def column(self, name: str) -> Array:
+        """One column of the time series."""
+        return self.series[:, [c.name for c in self.columns].index(name)]
+
+    def result(self, name: str) -> Result:
+        return next(r for r in self.results if r.name == name)
+
+
+def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None) -> Record:
+    """Carries out `plan`. Raises RunError for values that are not finite; KeyboardInterrupt passes through."""
+    job, bench = plan.job, plan.bench
+    stepper = plan_steps(
+        plan.hamiltonian,
+        plan.splitting,
+        plan.step,
+        plan.psi[None, None],
+        start=job.evolve.start,
+        precision=job.evolve.precision,
+        reproducible=job.evolve.reproducible,
+    )
+    meters = [observable.meter(bench) for observable in job.observables]
+    rows, watch = Rows(plan.recorded, meters), Watch(plan.recorded, bench)
+    frames = Frames(plan.frames or plan.every((job.evolve.until - job.evolve.start) / 300), bench, _view(plan))
+    fields = _stored_fields(plan)
+    densities = [_stored_density(plan, o) for o in job.observables if isinstance(o, Density)]
+    outputs: list[Output] = [Sampler(plan.sampled, meters), rows, watch, frames]
+    outputs += [stored for stored in [fields, *(d for _, d in densities)] if stored is not None]
+    if progress is not None:
+        outputs.append(Ticker(plan.recorded, lambda look: progress(_told(plan, rows, look))))
+
+    first = stepper.look(0)
+    for meter in meters:
+        meter.start(first)
+    begun = time.perf_counter()
+    outcome = evolve(stepper, steps=plan.steps, outputs=outputs, control=_stopper(plan, rows))
+    seconds = time.perf_counter() - begun
+
+    table = [rows.series(index) for index in range(len(meters))]
+    results = [
+        result
+        for observable, meter, series in zip(job.observables, meters, table, strict=True)
+        for result in _results(plan, observable, meter, series)
+    ]
+    checks = judge_run(plan, watch, outcome.n)
+    judgements = [
+        judge_expectation(plan, expect, next(r for r in results if r.name == expect.result))
+        for expect in job.keys.expect
+    ]
+    kept = fields.values if fields else []
+    psi = stepper.psi[0, 0].copy()
+    ended = stepper.time(outcome.n)
+    stored = list(zip(fields.times if fields else [], kept, strict=True))
+    if not stored or stored[-1][0] != ended:
+        stored.append((ended, psi))
+    return Record(
+        plan=plan,
+        steps=outcome.n,
+        stopped=outcome.stopped,
+        columns=tuple(column for o in job.observables for column in o.columns(job.outline)),
+        times=np.array(rows.times),
+        series=np.concatenate([series.values for series in table], axis=1) if table else np.empty((len(rows.times), 0)),
+        results=tuple(results),
+        curves=tuple(curve for meter in meters for curve in meter.curves()),
+        checks=tuple(checks),
+        judgements=tuple(judgements),
+        verdict=verdict(checks, judgements),
+        psi=psi,
+        field_times=np.array([t for t, _ in stored]),
+        fields=tuple(field for _, field in stored),
+        densities=tuple(StoredDensity(name, np.array(d.times), d.values) for name, d in densities),
+        frames=frames,
+        crossed={
+            name: np.interp(frames.times, times, running)
+            for meter in meters
+            for name, times, running in meter.progress()
+        },
+        seconds=seconds,
+    )
+
+
+def _view(plan: Plan) -> tuple[float, float]:
+    film = plan.job.keys.film
+    if not isinstance(film, str) and film.view is not None:
+        return film.view.x.start, film.view.x.stop
+    return plan.axis.low, plan.axis.high
+
+
+def _stored_fields(plan: Plan) -> Stored | None:
+    snapshots = plan.job.keys.snapshots
+    if snapshots is None:
+        return None
+    return Stored(plan.every(snapshots.every), lambda look: look.psi[0, 0].copy())
+
+
+def _stored_density(plan: Plan, density: Density) -> tuple[str, Stored]:
+    schedule = plan.every(density.every) if density.every else plan.recorded
+    if isinstance(density, MomentumDensity):
+        width = abs(plan.axis.k[1] - plan.axis.k[0])
+        return "momentum_density", Stored(schedule, lambda look: look.momentum_density[0] / width)
+    return "density", Stored(schedule, lambda look: look.density[0].copy())
+
+
+def _results(plan: Plan, observable: Observable, meter: Meter, series: object) -> list[Result]:
+    values, notes = meter.results(series), meter.notes()  # type: ignore[arg-type]
+    found = []
+    for figure in observable.figures(plan.job.outline):
+        value = values[figure.name]
+        if value is not None and not np.isfinite(value):
+            value = None
+        found.append(
+            Result(
+                figure.name,
+                value,
+                figure.dimension,
+                plan.bench.scale(figure.dimension),
+                figure.meaning,
+                note=notes.get(figure.name, "it is not finite") if value is None else "",
+            )
+        )
+    return found
+
+
+def _stopper(plan: Plan, rows: Rows) -> Callable[[Look], str | None]:
+    """Ends the run at a recorded time at which a bound of `stop_when` is passed."""
+    job = plan.job
+    recorded = Schedule(plan.record, plan.steps)
+    names = [column.name for o in job.observables for column in o.columns(job.outline)]
+    bounds: list[tuple[str, int, float, float]] = []
+    for name, bound in job.evolve.stop_when.items():
+        side = -1.0 if bound.below is not None else 1.0
+        limit = bound.below if bound.below is not None else bound.above
+        bounds.append((name, names.index(name), side, job.units.read(limit, job.columns[name].dimension)))
+
+    def control(look: Look) -> str | None:
+        if not bounds or not recorded.due(look.n):
+            return None
+        values: Sequence[float] = [value for meter in rows.rows[-1] for value in meter]
+        for name, index, side, limit in bounds:
+            if side * values[index] > side * limit:
+                return f"{name} {'fell below' if side < 0 else 'rose above'} its bound of stop_when"
+        return None
+
+    return control
+
+
+def _told(plan: Plan, rows: Rows, look: Look) -> Progress:
+    job = plan.job
+    latest = [value for meter in rows.rows[-1] for value in meter]
+    columns = [column for o in job.observables for column in o.columns(job.outline)]
+    shares = tuple(
+        (column.name, value)
+        for column, value in zip(columns, latest, strict=True)
+        if column.dimension == "number" and column.name != "norm"
+    )
+    return Progress(look.n, plan.steps, look.t, float(look.norm[0]), shares[:3])
