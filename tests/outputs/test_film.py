@@ -106,7 +106,7 @@ def test_the_magnification_beyond_a_detector_is_stated_and_true():
     assert 0.1 < 100 * beyond < 1
     stage = film.packets[0]
     column = int(stage.panel.across(150.0)) - stage.panel.rect.left
-    plain = shown.density[60][np.searchsorted(shown.x, 150.0)] / film.per_pixel
+    plain = shown.density[60][np.searchsorted(shown.x, 150.0)] / stage.per_pixel
     assert stage.heights[60, column] == pytest.approx(100 * plain, rel=0.02)  # 0.8 nm a column on this slope
 
 
@@ -140,10 +140,10 @@ def test_phase_colours_only_where_a_wave_spans_eight_pixels(pixels, coloured):
 
 def test_a_hairline_structure_gets_a_close_up_that_spans_it():
     film = Film(scene("double barrier"), (1280, 720))
-    low, high = film.close
+    low, high = film.chosen.close
     assert -40 < low < -6
     assert 6 < high < 40
-    assert Film(scene("morse"), (1280, 720)).close is None
+    assert Film(scene("morse"), (1280, 720)).chosen.close is None
 
 
 def test_the_baseline_follows_the_mean_energy():
@@ -170,7 +170,7 @@ def test_the_carpet_grows_with_time():
 )
 def test_the_carpet_is_logarithmic_where_something_weak_must_be_seen(name, logarithmic):
     film = Film(scene(name), (1280, 720))
-    assert film.carpet_scale.logarithmic is logarithmic
+    assert film.chosen.carpet.logarithmic is logarithmic
     said = " ".join(text.get_text() for text in film.texts())
     assert ("logarithmic" if logarithmic else "linear") in said
 

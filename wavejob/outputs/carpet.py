@@ -2,18 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 import numpy as np
 from matplotlib.artist import Artist
 from matplotlib.lines import Line2D
 
-from .choices import CarpetScale
+from .axes import bottom_axis, side_axis, spine, upright_grid
+from .choices import CarpetScale, Choices
 from .columns import Columns, rows_in_time
 from .packet_panel import draw_detectors
 from .palette import CASING, CURVES, INK, PATH, density_table
-from .scene import Probability, Scene
-from .sheet import Panel, Rect, Sheet
+from .scene import Scene
+from .sheet import Panel, Sheet
 
 Array = np.ndarray
 
@@ -34,40 +33,42 @@ def paint_carpet(
             sheet.paint(sheet.line(x, y, colour, width * fine, within=rect, moving=True))
 
 
-def paint_curves(
-    sheet: Sheet,
-    times: Array,
-    panel: Panel,
-    curves: Sequence[Probability],
-    powers: Sequence[int],
-    fine: float,
-) -> None:
+def paint_curves(sheet: Sheet, times: Array, panel: Panel, chosen: Choices, fine: float) -> None:
     """The running probabilities of all times, each times its power of ten."""
-    for (_, values), power, (colour, dash, _) in zip(curves, powers, CURVES, strict=False):
+    for (_, values), power, (colour, dash, _) in zip(chosen.curves, chosen.powers, CURVES, strict=False):
         x = panel.across(np.asarray(values) * 10.0**power)
         sheet.paint(sheet.line(x, panel.down(times), colour, 1.8 * fine, dash=dash, moving=True))
+
+
+def draw_time_axes(
+    sheet: Sheet, scene: Scene, carpet: Panel, chances: Panel | None, font: float, room: float
+) -> None:
+    """x, time and probability around carpet and curves; `room` is that of the numbers on the left."""
+    bottom_axis(sheet, carpet, font, "x", scene.length_label)
+    side_axis(sheet, carpet, font, "time", scene.time_label, room=room)
+    if chances is not None:
+        most = 5 if chances.rect.width > 20 * font else 2
+        upright_grid(sheet, chances, most)
+        bottom_axis(sheet, chances, font, "probability", None, most=most)
+        spine(sheet, chances)
 
 
 class Now:
     """The line at the present time through carpet and probabilities, and a mark on each curve."""
 
     def __init__(
-        self,
-        sheet: Sheet,
-        rects: Sequence[Rect],
-        chances: Panel | None,
-        curves: Sequence[Probability],
-        powers: Sequence[int],
-        fine: float,
+        self, sheet: Sheet, carpet: Panel, chances: Panel | None, chosen: Choices, fine: float
     ) -> None:
         self.sheet, self.chances = sheet, chances
+        rects = [carpet.rect] if chances is None else [carpet.rect, chances.rect]
         self.lines = [sheet.line([r.left, r.right], [r.top] * 2, INK, 1, moving=True) for r in rects]
         self.drawn = [
-            np.asarray(values) * 10.0**power for (_, values), power in zip(curves, powers, strict=True)
+            np.asarray(values) * 10.0**power
+            for (_, values), power in zip(chosen.curves, chosen.powers, strict=True)
         ]
         self.marks: list[Line2D] = [
             sheet.line([], [], colour, 7 * fine, marker=marker, moving=True)
-            for _, (colour, _, marker) in zip(curves, CURVES, strict=False)
+            for _, (colour, _, marker) in zip(chosen.curves, CURVES, strict=False)
         ]
 
     def paint(self, frame: int, row: int) -> None:

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from .scene import Scene
+from .scene import Probability, Scene
 
 Array = np.ndarray
 
@@ -20,6 +20,7 @@ UNSEEN = 0.1  # of the highest density: below it the curve beyond a detector is 
 MOST_MAGNIFIED = 9  # powers of ten; further down lie rounding and the absorbing layers' echo
 CARPET_DECADES = (3, 8)
 HAIRLINE = 0.08  # of the view: a structure narrower than this gets a close-up
+MOST_CURVES = 3
 CLOSE_UP_MARGIN = 1.0  # structure widths to each side
 
 
@@ -49,6 +50,44 @@ class CarpetScale:
         else:
             share = density / self.high
         return (np.clip(share, 0, 1) * 255).round().astype(np.uint8)
+
+
+@dataclass(frozen=True)
+class Choices:
+    """All that is decided before anything is drawn."""
+
+    view: tuple[float, float]
+    baseline: Array  # (F,), the energy on which the packet stands
+    energies: tuple[float, float]  # the ends of the energy axis
+    highest: float  # density
+    magnified: tuple[Magnified, ...]
+    carpet: CarpetScale
+    close: tuple[float, float] | None
+    span: tuple[float, float]  # the ends of the time axis
+    curves: tuple[Probability, ...]
+    powers: tuple[int, ...]  # each curve is drawn this power of ten larger
+
+
+def choose(scene: Scene) -> Choices:
+    """What to show of a scene."""
+    view = view_of(scene)
+    baseline = baseline_energies(scene)
+    energies = energy_range(scene, view, baseline)
+    highest = highest_density(scene, view)
+    curves = scene.probabilities[:MOST_CURVES]
+    first, last = float(scene.times[0]), float(scene.times[-1])
+    return Choices(
+        view=view,
+        baseline=baseline,
+        energies=energies,
+        highest=highest,
+        magnified=tuple(magnifications(scene, view, highest)),
+        carpet=carpet_scale(scene, view, highest),
+        close=close_up(scene, view, energies),
+        span=(first, last if last > first else first + 1.0),
+        curves=curves,
+        powers=tuple(curve_power(values) for _, values in curves),
+    )
 
 
 def view_of(scene: Scene) -> tuple[float, float]:
@@ -161,6 +200,17 @@ def carpet_scale(scene: Scene, view: tuple[float, float], highest: float) -> Car
     top = math.ceil(math.log10(highest) - 1e-9)
     decades = math.ceil(-math.log10(max(weakest, 1e-12))) + 2
     return CarpetScale(True, 10.0 ** (top - int(np.clip(decades, *CARPET_DECADES))), highest)
+
+
+def curve_power(values: Array) -> int:
+    """The power of ten by which a running probability is drawn larger, so that a small one is seen."""
+    largest = largest_of(values)
+    return int(np.clip(math.floor(-math.log10(largest)), 0, 12)) if 0 < largest < UNSEEN else 0
+
+
+def largest_of(values: Array) -> float:
+    """The largest finite size of `values`, 0 where there is none."""
+    return float(np.max(np.abs(values[np.isfinite(values)]), initial=0.0))
 
 
 def close_up(

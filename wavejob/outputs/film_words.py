@@ -6,7 +6,7 @@ from collections.abc import Sequence
 
 import numpy as np
 
-from .choices import CarpetScale, Magnified
+from .choices import CarpetScale, Choices, Magnified, largest_of
 from .key import Hatch, Item, Ramp, Stroke, Wordings, Words
 from .names import Name, PlacedName
 from .palette import CURVES, DETECTOR, ENERGY, LAYER, PATH, POTENTIAL, REGION, VERDICT_MARKS, density_table
@@ -18,7 +18,6 @@ Array = np.ndarray
 
 ARROWS = {"+": "\u2192", "-": "\u2190"}
 MINUS = "\u2212"
-MOST_CURVES = 3
 
 
 def time_numbers(times: Array) -> Numbers:
@@ -36,7 +35,7 @@ def time_numbers(times: Array) -> Numbers:
 
 def value_numbers(values: Array) -> Numbers:
     """Decimals of a running probability: four, or powers of ten where it stays small."""
-    largest = float(np.nanmax(np.abs(values), initial=0.0))
+    largest = largest_of(values)
     return numbers_for(largest, 1e-4) if largest >= 0.01 else Numbers(None)
 
 
@@ -87,14 +86,7 @@ def write_names(sheet: Sheet, placed: Sequence[PlacedName], stage_top: int, font
 
 
 def key_items(
-    scene: Scene,
-    scale: CarpetScale,
-    energies: Numbers,
-    baseline: Array,
-    *,
-    phases: Array | None,
-    where: str,
-    homeless: Sequence[Name],
+    scene: Scene, chosen: Choices, *, phases: Array | None, where: str, homeless: Sequence[Name]
 ) -> list[Wordings]:
     """The key, most needed first; the item with the mean energy changes from frame to frame."""
     items: list[Wordings] = []
@@ -103,7 +95,7 @@ def key_items(
         items.append(
             ((Words(f"phase{where}"), start, Ramp(phases), end), (Words("phase"), start, Ramp(phases), end))
         )
-    items.append(carpet_item(scene, scale))
+    items.append(carpet_item(scene, chosen.carpet))
     items += [
         ((Stroke(DETECTOR), Words(name.words, soft=True)),) for name in homeless if name.colour == DETECTOR
     ]
@@ -112,7 +104,7 @@ def key_items(
         items.append(
             ((stroke, Words("F = m a from the same mean start")), (stroke, Words("F = m a, same start")))
         )
-    said = [energy_text(scene, energies, float(e)) for e in baseline]
+    said = [energy_text(scene, chosen, frame) for frame in range(scene.frames)]
     now = Words(said[0], widest=max(said, key=len))
     items.append(((Stroke(ENERGY, (0, (4, 2))), Words("mean energy", soft=True), now),))
     if scene.layers:
@@ -136,26 +128,25 @@ def carpet_item(scene: Scene, scale: CarpetScale) -> Wordings:
     )
 
 
-def energy_text(scene: Scene, energies: Numbers, energy: float) -> str:
-    return with_unit(energies(energy), scene.energy_label)
+def energy_text(scene: Scene, chosen: Choices, frame: int) -> str:
+    """The mean energy in one frame, to about three digits of the largest."""
+    largest = float(np.abs(chosen.baseline).max())
+    number = numbers_for(largest, largest / 200)(float(chosen.baseline[frame]))
+    return with_unit(number, scene.energy_label)
 
 
-def curve_powers(scene: Scene) -> list[int]:
-    """Powers of ten by which the running probabilities are drawn larger, so that small ones are seen."""
-    powers = []
-    for _, values in scene.probabilities[:MOST_CURVES]:
-        largest = float(np.nanmax(np.abs(values), initial=0.0))
-        powers.append(int(np.clip(np.floor(-np.log10(largest)), 0, 12)) if 0 < largest < 0.1 else 0)
-    return powers
+def readout_items(chosen: Choices, frame: int | None = None) -> list[Wordings]:
+    """One line for each running probability: its mark, its name, its value, its magnification.
 
-
-def readout_items(scene: Scene, numbers: Sequence[Numbers], powers: Sequence[int]) -> list[Wordings]:
-    """One line for each running probability: its mark, its name, its value now, its magnification."""
+    The value is that of `frame`; without one it changes from frame to frame.
+    """
     items: list[Wordings] = []
-    curves = zip(scene.probabilities[:MOST_CURVES], numbers, powers, CURVES, strict=False)
-    for (label, values), number, power, (colour, dash, marker) in curves:
+    for (label, values), power, (colour, dash, marker) in zip(
+        chosen.curves, chosen.powers, CURVES, strict=False
+    ):
+        number = value_numbers(values)
         said = [number(float(v)) for v in values]
-        now = Words(said[0], widest=max(said, key=len))
+        now = Words(said[0], widest=max(said, key=len)) if frame is None else Words(said[frame])
         item: Item = (Stroke(colour, dash, marker), Words(label, soft=True), now)
         times = f"\u00d7{power_of_ten(power)}"
         items.append(((*item, Words(f"(curve {times})")), (*item, Words(f"({times})"))) if power else (item,))

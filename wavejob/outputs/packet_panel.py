@@ -2,21 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-
 import numpy as np
 from matplotlib.artist import Artist
 
-from .axes import side_tick
-from .choices import Magnified
+from .choices import Choices
 from .columns import Columns
 from .palette import DETECTOR, ENERGY, ENVELOPE, INK, LAYER, PAPER, POTENTIAL, POTENTIAL_FILL, REGION, rgb
 from .scene import Scene
 from .sheet import Panel, Rect, Sheet
-from .wording import Ticks
 
 Array = np.ndarray
 
+PEAK_AT = 0.94  # of the room above the baseline
 FAR = 1e4  # pixels: where infinite potentials are cut
 FLAT = 0.3  # pixels: a curve this low is left to the line of the mean energy
 
@@ -24,30 +21,22 @@ FLAT = 0.3  # pixels: a curve this low is left to the line of the mean energy
 class PacketPanel:
     """Draws the unmoving parts on creation; `paint` then adds those of one frame.
 
-    panel      pixels for x and for energies
-    baseline   (F,), the energy at which the density's zero stands
-    per_pixel  density of one pixel of height
-    phases     colours from -180 to 180 degrees, shape (256, 3), or None for the envelope alone
+    panel   pixels for x and for energies
+    phases  colours from -180 to 180 degrees, shape (256, 3), or None for the envelope alone
+    fine    width of a fine line in pixels
     """
 
     def __init__(
-        self,
-        sheet: Sheet,
-        scene: Scene,
-        panel: Panel,
-        *,
-        baseline: Array,
-        per_pixel: float,
-        magnified: Sequence[Magnified],
-        phases: Array | None,
-        fine: float,
+        self, sheet: Sheet, scene: Scene, chosen: Choices, panel: Panel, *, phases: Array | None, fine: float
     ) -> None:
         self.sheet, self.scene, self.panel, self.phases = sheet, scene, panel, phases
         self.columns = Columns(scene.x, panel.x_low, panel.x_high, panel.rect.width)
-        self.base = np.round(panel.down(baseline))
+        self.base = np.round(panel.down(chosen.baseline))
+        self.room = float(self.base.min()) - panel.rect.top
+        self.per_pixel = per_pixel = chosen.highest / (PEAK_AT * self.room)
         heights = self.columns.highest(scene.density) / per_pixel
         self.enlarged = np.zeros(panel.rect.width, dtype=bool)
-        for part in magnified:
+        for part in chosen.magnified:
             within = (self.columns.centres > part.low) & (self.columns.centres < part.high)
             heights[:, within] *= 10.0**part.power
             self.enlarged |= within
@@ -150,37 +139,3 @@ def draw_detectors(
                 )
             )
     return lines
-
-
-class DensityAxis:
-    """Numbers of the density left of the stage, whose zero stands on the baseline and moves with it."""
-
-    def __init__(
-        self, sheet: Sheet, packet: PacketPanel, shown: Ticks, per_pixel: float, font: float
-    ) -> None:
-        self.sheet, self.packet = sheet, packet
-        self.steps = shown.values / per_pixel
-        self.moves = bool(np.ptp(packet.base) > 0)
-        base = packet.base[0]
-        rows = zip(self.steps, shown.labels, strict=True)
-        self.marks = [
-            side_tick(sheet, packet.panel, base - s, label, font, moving=self.moves) for s, label in rows
-        ]
-        if not self.moves:
-            self._show(0)
-
-    def _show(self, frame: int) -> list[Artist]:
-        """Puts the ticks where they belong in one frame; those that are in the picture."""
-        height, rect = self.sheet.height, self.packet.panel.rect
-        visible: list[Artist] = []
-        for step, (mark, words) in zip(self.steps, self.marks, strict=True):
-            y = self.packet.base[frame] - step
-            inside = rect.top <= y <= rect.bottom
-            mark.set(ydata=[height - y, height - y], visible=inside)
-            words.set(y=height - y, visible=inside)
-            visible += [mark, words] if inside else []
-        return visible
-
-    def paint(self, frame: int) -> None:
-        if self.moves:
-            self.sheet.paint(*self._show(frame))
