@@ -217,7 +217,9 @@ class _Parser:
             self.at += 1
             value = float(token.text)
             if not math.isfinite(value):
-                raise FormulaError(f"the number `{_short(token.text)}` is out of range", "", token.column)
+                raise FormulaError(
+                    f"the number `{_short(token.text)}` is out of range", "write a smaller one", token.column
+                )
             self.push("number", value, token.column)
         elif token.kind == "name":
             self.at += 1

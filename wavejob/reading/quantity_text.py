@@ -17,15 +17,18 @@ MAX_LENGTH = 80
 MAX_POWERS = 6
 
 _NUMBER = r"(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?"
-_WORD = r"[A-Za-zµμÅÅ_][A-Za-z0-9µμÅÅ_]*"
+_LETTER = r"A-Za-z_\u00b5\u03bc\u00c5\u212b"  # with both signs for micro and for angstrom
+_WORD = rf"[{_LETTER}][{_LETTER}0-9]*"
 _POWER = rf"{_WORD}(?:(?:\^|\*\*)-?[0-9]+)?"
-_UNIT = rf"(?:1\s*/\s*)?{_POWER}(?:(?:\s*[*/·]\s*|\s+){_POWER})*"
-_SIGN = re.compile(r"\s*([+-])\s*")
+_UNIT = rf"(?:1\s*/\s*)?{_POWER}(?:(?:\s*[*/\u00b7]\s*|\s+){_POWER})*"
+_SIGN = re.compile(r"\s*([+-])\s*", re.ASCII)
 _TERM = re.compile(
-    rf"(?P<number>{_NUMBER})(?:\s*\*\s*(?P<times>{_WORD})(?:\s*/\s*(?P<times_by>{_NUMBER}))?|\s*(?P<unit>{_UNIT}))?"
-    rf"|(?P<name>{_WORD})(?:\s*/\s*(?P<by>{_NUMBER}))?"
+    rf"(?P<number>{_NUMBER})"
+    rf"(?:\s*\*\s*(?P<times>{_WORD})(?:\s*/\s*(?P<times_by>{_NUMBER}))?|\s*(?P<unit>{_UNIT}))?"
+    rf"|(?P<name>{_WORD})(?:\s*/\s*(?P<by>{_NUMBER}))?",
+    re.ASCII,
 )
-_UNIT_ALONE = re.compile(_UNIT)
+_UNIT_ALONE = re.compile(_UNIT, re.ASCII)
 _MAYBE_POWER = re.compile(r"-[0-9](?![0-9.]*\s*[*A-Za-z])")  # as in cm-1
 
 
@@ -74,8 +77,8 @@ def unit_words(unit: str) -> list[str]:
 
 def pint_notation(unit: str) -> str:
     """A unit text as pint reads it."""
-    spaced = re.sub(r"\s*([*/·^]|\*\*)\s*", r"\1", unit.strip())
-    return re.sub(r"\s+|·", "*", spaced.replace("^", "**"))
+    spaced = re.sub(r"\s*([*/\u00b7^]|\*\*)\s*", r"\1", unit.strip())
+    return re.sub(r"\s+|\u00b7", "*", spaced.replace("^", "**"))
 
 
 def is_unit(text: str) -> bool:
@@ -135,7 +138,7 @@ def _finite(number: int | float, text: str) -> float:
 def _unreadable(text: str, at: int) -> QuantityError:
     """Why a text is not a quantity, where reading came to an end at `at`."""
     shown = f"`{text}`"
-    strange = next((c for c in text if not (c.isascii() or c in "µμÅÅ·")), "")
+    strange = next((c for c in text if not (c.isascii() or c in "\u00b5\u03bc\u00c5\u212b\u00b7")), "")
     if not text:
         return QuantityError("the quantity is empty", "write a number and a unit, as in `5 nm`")
     if strange == "\u2212":

@@ -26,8 +26,8 @@ MAX_NODES = 20_000
 MAX_DEPTH = 50
 MAX_DIGITS = 100  # of a whole number: far more than any seed needs, far less than would be slow
 
-# libyaml where PyYAML was built with it, for speed alone: what it refuses is read again by the Python parser, so
-# that places and sentences do not depend on the machine.
+# libyaml where PyYAML was built with it, for speed alone: what it refuses is read again by the Python parser,
+# so that places and sentences do not depend on the machine.
 FAST_LOADER = getattr(yaml, "CSafeLoader", None)
 
 _PARSERS_DIFFER = re.compile(r"\t|[|>]\S*#|\?[\]},]")  # libyaml alone takes tabs in `{ }`, `|#` and `[a?]`
