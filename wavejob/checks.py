@@ -6,6 +6,7 @@ import math
 
 import numpy as np
 
+from .job import Job
 from .plan import Plan
 from .recording import Watch
 from .results import Check, Judgement, Result, Verdict
@@ -105,12 +106,10 @@ def _reflection(plan: Plan, index: int) -> Check:
     )
 
 
-def judge_expectation(plan: Plan, expect: ExpectKeys, result: Result) -> Judgement:
+def judge_expectation(job: Job, expect: ExpectKeys, result: Result) -> Judgement:
     """Met, missed or undecided: |value - wanted| with the error bar against the tolerance."""
-    units = plan.job.units
-
     def read(value: object) -> float:
-        return units.read(value, result.dimension)  # type: ignore[arg-type]
+        return job.units.read(value, result.dimension)  # type: ignore[arg-type]
 
     if result.value is None:
         return Judgement(expect.result, "missed", f"{expect.result} has no value: {result.note}")
@@ -136,8 +135,8 @@ def judge_expectation(plan: Plan, expect: ExpectKeys, result: Result) -> Judgeme
         outcome = "missed"
     else:
         outcome = "undecided"
-    given = plan.job.write(value, result.dimension) if result.dimension != "number" else f"{value:.6g}"
-    bar = f" +- {plan.job.write(error, result.dimension)}" if result.error is not None else ""
+    given = job.write(value, result.dimension) if result.dimension != "number" else f"{value:.6g}"
+    bar = f" +- {job.write(error, result.dimension)}" if result.error is not None else ""
     said = f"{expect.result} is {given}{bar}, wanted {wanted}"
     if expect.source:
         said += f" ({expect.source})"

@@ -110,7 +110,7 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None) -> 
     ]
     checks = judge_run(plan, watch, outcome.n)
     judgements = [
-        judge_expectation(plan, expect, next(r for r in results if r.name == expect.result))
+        judge_expectation(job, expect, next(r for r in results if r.name == expect.result))
         for expect in job.keys.expect
     ]
     kept = fields.values if fields else []

@@ -93,6 +93,35 @@ def write_results_json(
     write_json(path, document)
 
 
+def read_results(
+    path: Path, figures: Mapping[str, Column], units: Units
+) -> tuple[list[Result], list[Check]]:
+    """What `write_results_json` wrote, in scaled units again; `figures` gives the dimension of each result."""
+    document = json.loads(path.read_text(encoding="utf-8"))
+    results = []
+    for name, stored in document["results"].items():
+        dimension = figures[name].dimension
+        unit = 1 / units.to_file(1.0, dimension)
+
+        def scaled(x: float | None, unit: float = unit) -> float | None:
+            return None if x is None else x * unit
+
+        results.append(
+            Result(
+                name,
+                scaled(stored["value"]),
+                dimension,
+                scaled(stored["scale"]),
+                stored["meaning"],
+                scaled(stored["error"]),
+                stored["error_status"],
+                {part: value * unit for part, value in stored["error_parts"].items() if value is not None},
+                stored.get("note", ""),
+            )
+        )
+    return results, [Check(**check) for check in document["checks"]]
+
+
 def write_json(path: Path, document: Mapping[str, Any]) -> None:
     """`document` as strict JSON (no NaN), two spaces deep."""
     text = json.dumps(document, indent=2, ensure_ascii=False, allow_nan=False)
