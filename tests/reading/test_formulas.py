@@ -174,6 +174,15 @@ def test_slope_shape_and_constants() -> None:
     np.testing.assert_array_equal(slope, np.ones_like(X))
 
 
+def test_results_may_be_changed_in_place() -> None:
+    x = np.ones(3)
+    value, slope = parse("x", NAMES).with_slope({"x": x}, "x")
+    for result in (value, slope, parse("x", NAMES)({"x": x})):
+        result += 1.0
+        np.testing.assert_array_equal(result, 2.0)
+    np.testing.assert_array_equal(x, 1.0)
+
+
 def test_first_bad() -> None:
     assert first_bad(np.array([[1.0, 2.0], [np.nan, np.inf]])) == (1, 0)
     assert first_bad(np.array([1.0])) is None

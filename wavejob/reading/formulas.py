@@ -43,7 +43,7 @@ class Formula:
                     operation = _OPERATIONS[str(what)]
                     count = len(operation.partials)
                     stack[-count:] = [operation.value(*stack[-count:])]
-        return _plain(stack[0])
+        return _own(stack[0], np.shape(stack[0]))
 
     def with_slope(self, values: Mapping[str, Number], of: str) -> tuple[Number, Number]:
         """The value and its derivative by the name `of`, by forward differentiation (dual numbers).
@@ -71,8 +71,8 @@ class Formula:
                             part = _chain(partial(*arguments, value), inner, operation.selects)
                             slope = part if slope is None else slope + part
                     stack[-count:], slopes[-count:] = [value], [slope]
-        value, slope = stack[0], slopes[0]
-        return _plain(value), _plain(np.broadcast_to(0.0 if slope is None else slope, np.shape(value)))
+        shape = np.shape(stack[0])
+        return _own(stack[0], shape), _own(0.0 if slopes[0] is None else slopes[0], shape)
 
 
 def parse(text: str, names: frozenset[str]) -> Formula:
@@ -105,5 +105,6 @@ def _floats(value: Number) -> Number:
     return np.asarray(value, dtype=float) if np.ndim(value) else float(value)
 
 
-def _plain(value: Number) -> Number:
-    return float(value) if np.ndim(value) == 0 else value
+def _own(value: Number, shape: tuple[int, ...]) -> Number:
+    """A float, or an array of the given shape that is nobody else's, so that it may be changed in place."""
+    return np.array(np.broadcast_to(value, shape)) if shape else float(value)
