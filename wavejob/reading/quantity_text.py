@@ -60,9 +60,8 @@ def terms(value: str | int | float) -> list[Term]:
             f"`{'yes' if value else 'no'}` is no quantity", "write a number and a unit, as in `5 nm`"
         )
     if not isinstance(value, str):
-        return [
-            Term(_finite(value, str(value) if isinstance(value, float) else "the number"), f"{value}"[:40])
-        ]
+        number = _finite(value, "the number" if isinstance(value, int) else str(value))
+        return [Term(number, f"{number:.12g}")]
     if len(value) > MAX_LENGTH:
         raise QuantityError(
             f"the quantity is longer than {MAX_LENGTH} characters", "write a number and a unit"
