@@ -135,4 +135,5 @@ def plain(value: Any) -> Any:
         return [plain(item) for item in value]
     if isinstance(value, Mapping):
         return {str(k): plain(v) for k, v in value.items()}
-    return value
+    # Rounding may differ between two ways to write one quantity: 2 ps and 2000 fs are the same job.
+    return float(f"{value:.12g}") if isinstance(value, float) else value

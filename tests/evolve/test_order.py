@@ -72,12 +72,23 @@ def static() -> Part:
     )
 
 
+def trap() -> Part:
+    return Part("position", lambda _: X**2 / 2, lambda _: (X,))
+
+
 def driven() -> Part:
     return Part(
         "position",
         lambda _: np.sin(np.pi * X / 16),
         lambda _: (np.pi / 16 * np.cos(np.pi * X / 16),),
         in_time=lambda t: np.sin(3 * t),
+    )
+
+
+def pulled() -> Part:
+    """A uniform force: linear, which has a short cut of its own."""
+    return Part(
+        "position", lambda _: 0.3 * X, lambda _: (np.full_like(X, 0.3),), in_time=lambda t: np.cos(3 * t)
     )
 
 
@@ -103,6 +114,7 @@ def tent(axis: Axis, points: int, strength: float) -> tuple[Layer, ...]:
 CASES = {
     "static": ((static(),), ()),
     "driven": ((static(), driven()), ()),
+    "pulled": ((trap(), pulled()), ()),  # the trap keeps the packet from the ends, where the force jumps
     "moving": ((static(), driven(), moving()), ()),
     "absorbing": ((static(),), tent(AXIS, 32, 2.0)),
     "driven and absorbing": ((static(), driven()), tent(AXIS, 32, 2.0)),

@@ -54,6 +54,9 @@ def double_barrier(frames=120, title=TITLE, until=1480.0):
     inside = [(density[:, c].sum(axis=1) * dx) for c in (x < -6, np.abs(x) < 3, x > 60)]
     passed = np.maximum.accumulate(inside[2])
     edges = np.repeat([-6.0, -3.0, 3.0, 6.0], 2)
+    order = np.fft.fftshift(np.arange(x.size))
+    wavenumber = 2 * np.pi * np.fft.fftfreq(x.size, dx)[order]
+    spectra = [np.abs(np.fft.fft(field[n])[order]) ** 2 * dx**2 / (2 * np.pi) for n in (0, -1)]
     return Scene(
         title=title,
         subtitle="electron, 0.067 m\u2091 \u00b7 800 nm \u00b7 1024 points \u00b7 step 0.2 fs",
@@ -75,6 +78,9 @@ def double_barrier(frames=120, title=TITLE, until=1480.0):
         regions=(("well", -3.0, 3.0),),
         probabilities=(("transmitted", passed), ("in the well", inside[1]), ("before the stack", inside[0])),
         classical_path=path,
+        wavenumber=wavenumber,
+        momentum_start=spectra[0],
+        momentum_end=spectra[1],
         results=(
             ("transmitted.total", "0.1589 \u00b1 0.0003"),
             ("well.peak", "0.2081 \u00b1 0.0001"),

@@ -1,234 +1,243 @@
-"""Potential factors: what one kick multiplies the state by, and what its absorbing layers take."""
+"""Potential factors: what one kick multiplies the state by. `factor` picks the kind that suits."""
 
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
 
 import numpy as np
 
-from ..hamiltonian import Hamiltonian, Layer, Part
+from ..hamiltonian import Hamiltonian, Part
+from .channels import matrix_exponential
+from .layers import tallies
+from .phases import Circle, Lines
 
 Array = np.ndarray
 Fetch = Callable[[Part, float], Array]
 
 
-@dataclass(frozen=True)
-class Tally:
-    """The running account of one absorbing layer at one kick, exact to rounding.
+def factor(hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float) -> Factor:
+    """exp(-i share [V - i rates - squeeze sum over axes (d(V - i rates)/dx_a)^2 / m_a]) of one kick.
 
-    A kick takes |psi_j|^2 (1 - |factor_j|^2) cell at each point j of the layer. The loop adds up the
-    squares; `settle` applies the rest, before the factor changes and whenever the loop pauses.
+    share    weight of the kick times the step
+    squeeze  coefficient of its squared gradient times the step squared
+    psi      the live state that it multiplies, shape (runs, channels, *grid)
     """
-
-    layer: Layer
-    where: tuple[slice, ...]  # of the layer in (runs, channels, *grid)
-    amplitude: Array  # live real view of psi there: the last axis is doubled
-    squared: Array  # work array of that shape
-    seen: Array  # sum of amplitude^2 since the last settling
-    share: Array  # cell times this layer's part of what is lost at each point (layers cross in corners)
-
-    def settle(self, survival: Array, absorbed: dict[str, Array]) -> None:
-        """Book what was taken by kicks that left the fraction `survival` of |psi|^2 in the layer."""
-        squares = self.seen.reshape(*self.seen.shape[:-1], -1, 2).sum(-1)
-        taken = squares * (self.share * (1 - survival))
-        absorbed[self.layer.name] += taken.reshape(len(taken), -1).sum(-1)
-        self.seen[...] = 0
-
-
-class Total:
-    """sum over parts of f(t) W; what does not depend on time is added up once."""
-
-    def __init__(self, parts: list[Part], fetch: Fetch, start: float, shape: tuple[int, ...]) -> None:
-        self._fetch = fetch
-        self._fixed = np.zeros(shape)
-        self._timed: list[tuple[Part, Array]] = []
-        for part in parts:
-            if part.depends_on_time:
-                self._timed.append((part, fetch(part, start)))
-            else:
-                self._fixed = self._fixed + fetch(part, start)
-
-    @property
-    def arrays(self) -> list[Array]:
-        return [self._fixed, *(table for _, table in self._timed)]
-
-    def at(self, t: float) -> Array:
-        total = self._fixed
-        for part, table in self._timed:
-            total = total + part.factor(t) * (self._fetch(part, t) if part.moves else table)
-        return total
+    arguments = (hamiltonian, share, squeeze, psi, start)
+    if hamiltonian.couples:
+        return MatrixFactor(*arguments)
+    if not hamiltonian.depends_on_time:
+        return StaticFactor(*arguments)
+    timed = [part for part in hamiltonian.parts if part.depends_on_time]
+    if not squeeze and not any(part.moves for part in timed):
+        lines = Lines.of([part.values(start) for part in timed], hamiltonian.grid.shape)
+        if lines is not None:
+            return SeparableFactor(*arguments, lines)
+    return PhaseFactor(*arguments)
 
 
 class Factor:
-    """exp(-i share (V - i rates - squeeze sum over axes (dV/dx_a - i drate/dx_a)^2 / m_a)) for one kick.
+    """The factor of one kick, kept in `table`, and the accounts of the absorbing layers at this kick."""
 
-    share     weight of the kick times the step
-    squeeze   coefficient of its squared gradient times the step squared
-    table     the factor, complex, broadcasting against psi; with coupled channels the unitary matrix of
-              each point, broadcasting against (runs, channels, channels, *grid)
-    tallies   one for each absorbing layer
-
-    No factor ever exceeds modulus 1: where the squared gradient would turn a layer into a source, it
-    absorbs nothing instead.
-    """
+    table: Array  # complex, broadcasting against psi
 
     def __init__(
         self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float
     ) -> None:
-        self._share, self._squeeze, self._psi = share, squeeze, psi
-        self._masses = hamiltonian.masses
-        parts = [part for part in hamiltonian.parts if part.representation == "position"]
-        diagonal = [part for part in parts if not part.couples]
-        coupling = [part for part in parts if part.couples]
-        point = (1, 1, *hamiltonian.grid.shape)
-        self._values = Total(diagonal, lambda part, t: part.values(t), start, point)
-        self._slopes = [
-            Total(diagonal, _slope_along(a), start, point) for a in range(len(self._masses)) if squeeze
-        ]
-        self._coupling = Total(coupling, lambda part, t: part.values(t), start, (1, *point))
-        self._couples = bool(coupling)
-        self._timed = [part for part in parts if part.depends_on_time]
+        self._hamiltonian, self._share, self._squeeze, self._psi = hamiltonian, share, squeeze, psi
+        self._timed = [part for part in hamiltonian.parts if part.depends_on_time]
         self._moves = any(part.moves for part in self._timed)
-        self.tallies = _tallies(hamiltonian, psi)
-        self.scales: tuple[float, ...] = ()
-        self.table = np.empty(0)
-        self._set(start)
-        self.products = np.empty_like(psi, shape=np.broadcast_shapes(psi[:, None].shape, self.table.shape))
+        self._scales = self._scales_at(start)
+        self.tallies = tallies(hamiltonian, psi)
+        self._damping = [tally.factor(share) for tally in self.tallies]
 
     def refresh(self, t: float, absorbed: dict[str, Array]) -> None:
-        """Make `table` that of time `t`; does nothing where no f(t) has changed."""
+        """Make `table` that of time `t`; nothing to do where no f(t) has changed."""
         scales = self._scales_at(t)
-        if scales != self.scales:
-            self.settle(absorbed)
+        if scales != self._scales:
+            if self._squeeze:  # then the damping depends on time too
+                self.settle(absorbed)
             self._set(t)
-
-    def settle(self, absorbed: dict[str, Array]) -> None:
-        """Add to `absorbed` (name -> (runs,)) what the kicks since the last call have taken."""
-        for tally in self.tallies:
-            tally.settle(self._survival(tally), absorbed)
+            self._scales = scales
 
     def apply(self) -> None:
-        """Multiply psi by the factor, and keep the layers' accounts."""
+        """Multiply psi by the factor, and note what the layers take."""
         for tally in self.tallies:
-            np.multiply(tally.amplitude, tally.amplitude, tally.squared)
-            np.add(tally.seen, tally.squared, tally.seen)
-        if self._couples:
-            np.multiply(self.table, self._psi[:, None], self.products)
-            np.add.reduce(self.products, axis=2, out=self._psi)
-        else:
-            np.multiply(self._psi, self.table, self._psi)
+            tally.note()
+        np.multiply(self._psi, self.table, self._psi)
+
+    def settle(self, absorbed: dict[str, Array]) -> None:
+        """Add to `absorbed` (layer name -> (runs,)) what the kicks since the last call have taken."""
+        for tally in self.tallies:
+            tally.settle(self._survival(self.table[tally.where]), absorbed)
+
+    def _survival(self, there: Array) -> Array:
+        """The fraction of |psi|^2 that the factor `there` leaves."""
+        survival: Array = there.real.astype(float) ** 2 + there.imag.astype(float) ** 2
+        return survival
 
     def _scales_at(self, t: float) -> tuple[float, ...]:
-        """What the factor depends on at time t: equal scales, equal factor."""
-        if self._moves:
-            return (t,)
-        return tuple(part.factor(t) for part in self._timed)
+        """All that the factor depends on at time t: equal scales, equal factor."""
+        return (t,) if self._moves else tuple(part.factor(t) for part in self._timed)
 
     def _set(self, t: float) -> None:
-        self.scales = self._scales_at(t)
-        energy = self._values.at(t)
-        slopes = [slope.at(t) for slope in self._slopes]
-        for slope, mass in zip(slopes, self._masses, strict=False):
-            energy = energy - self._squeeze / mass * slope**2
-        if self._couples:
-            table = _matrix_exponential(energy, self._coupling.at(t), self._share)
-        else:
-            table = np.exp(-1j * self._share * energy)
+        """Write the factor of time `t` to `table`."""
+        raise NotImplementedError
+
+    def _damp(self, slopes: list[Array]) -> None:
+        """Let the layers damp `table`; `slopes` holds dV/dx_a where there is a squared gradient."""
+        for tally, damping in zip(self.tallies, self._damping, strict=True):
+            if slopes:
+                axis = tally.layer.axis
+                per_mass = self._squeeze / self._hamiltonian.masses[axis]
+                damping = tally.bent_factor(self._share, per_mass, slopes[axis][tally.where])
+            self.table[tally.where] *= damping
+
+
+class StaticFactor(Factor):
+    """Nothing depends on time."""
+
+    def __init__(
+        self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float
+    ) -> None:
+        super().__init__(hamiltonian, share, squeeze, psi, start)
+        values, slopes = _totals(hamiltonian, squeeze, start)
+        energy = values.fixed
+        for slope, mass in zip(slopes, hamiltonian.masses, strict=False):
+            energy = energy - squeeze / mass * slope.fixed**2
+        self.table = np.exp(-1j * share * energy).astype(psi.dtype)
+        self._damp([slope.fixed for slope in slopes])
+
+
+class SeparableFactor(Factor):
+    """What depends on time is a sum of functions of one coordinate each, so its factor is a product of lines."""
+
+    def __init__(
+        self,
+        hamiltonian: Hamiltonian,
+        share: float,
+        squeeze: float,
+        psi: Array,
+        start: float,
+        lines: Lines,
+    ) -> None:
+        super().__init__(hamiltonian, share, squeeze, psi, start)
+        values, _ = _totals(hamiltonian, 0.0, start)
+        self._lines = lines
+        self.table = np.empty(np.broadcast_shapes(values.shape, lines.shape), psi.dtype)
+        self.table[...] = np.exp(-1j * share * values.fixed)
+        self._damp([])
+        self._fixed = self.table.copy()
+        self._set(start)
+
+    def _set(self, t: float) -> None:
+        scales = np.array([-self._share * part.factor(t) for part in self._timed])
+        self._lines.multiply(self._fixed, scales, self.table)
+
+
+class PhaseFactor(Factor):
+    """Anything else without coupled channels: the potential is summed and its phase taken anew."""
+
+    def __init__(
+        self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float
+    ) -> None:
+        super().__init__(hamiltonian, share, squeeze, psi, start)
+        self._values, self._slopes = _totals(hamiltonian, squeeze, start)
+        self.table = np.empty(self._values.shape, psi.dtype)
+        self._circle = Circle(self._values.shape)
+        self._slope_work = [np.empty(self._values.shape) for _ in self._slopes]
+        self._square = np.empty(self._values.shape) if self._slopes else np.empty(0)
+        self._set(start)
+
+    def _set(self, t: float) -> None:
+        half, square = self._circle.half, self._square
+        self._values.into(half, t)
+        for total, slope, mass in zip(self._slopes, self._slope_work, self._hamiltonian.masses, strict=False):
+            total.into(slope, t)
+            np.multiply(slope, slope, square)
+            np.multiply(square, self._squeeze / mass, square)
+            np.subtract(half, square, half)
+        np.multiply(half, -self._share / 2, half)
+        self._circle.into(self.table)
+        self._damp(self._slope_work)
+
+
+class MatrixFactor(Factor):
+    """Coupled channels: `table` holds a matrix for each point, (runs, channels, channels, *grid)."""
+
+    def __init__(
+        self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float
+    ) -> None:
+        super().__init__(hamiltonian, share, squeeze, psi, start)
+        parts = [part for part in hamiltonian.parts if part.couples]
+        channels = psi.shape[1]
+        self._values, _ = _totals(hamiltonian, 0.0, start)
+        self._coupling = Total(parts, _values, start, (1, channels, channels, *hamiltonian.grid.shape))
+        self._set(start)
+        self._products = np.empty((len(psi), *self.table.shape[1:]), psi.dtype)
+
+    def apply(self) -> None:
         for tally in self.tallies:
-            table[..., *tally.where[2:]] *= self._decay(tally, slopes)
-        self.table = table.astype(self._psi.dtype)
+            tally.note()
+        np.multiply(self.table, self._psi[:, None], self._products)
+        np.add.reduce(self._products, axis=2, out=self._psi)
 
-    def _decay(self, tally: Tally, slopes: list[Array]) -> Array:
-        """The layer's own factor on its points, of modulus 1 or less."""
-        layer, ndim = tally.layer, self._psi.ndim - 2
-        shape = [-1 if axis == layer.axis else 1 for axis in range(ndim)]
-        rate, drop = layer.rate.reshape(shape), layer.slope.reshape(shape)
-        energy = np.zeros(1)
-        if slopes:
-            per_mass = self._squeeze / self._masses[layer.axis]
-            energy = per_mass * drop**2
-            rate = np.where(rate > 0, rate - 2 * per_mass * slopes[layer.axis][tally.where] * drop, 0)
-        decay: Array = np.exp(-self._share * (np.maximum(rate, 0) + 1j * energy))
-        return decay
+    def _survival(self, there: Array) -> Array:
+        """Each column of a unitary matrix times the damping has the damping as its length."""
+        return super()._survival(there[:, :, 0]).sum(1, keepdims=True)
 
-    def _survival(self, tally: Tally) -> Array:
-        """|factor|^2 on the layer's points; one column of the matrix has it where channels couple."""
-        there = self.table[..., *tally.where[2:]]
-        if self._couples:
-            there = there[:, :, 0]
-            return (there.real.astype(float) ** 2 + there.imag.astype(float) ** 2).sum(1, keepdims=True)
-        return there.real.astype(float) ** 2 + there.imag.astype(float) ** 2
+    def _set(self, t: float) -> None:
+        matrix = matrix_exponential(self._values.at(t), self._coupling.at(t), self._share)
+        self.table = matrix.astype(self._psi.dtype)
+        self._damp([])
+
+
+class Total:
+    """sum over parts of f(t) W; what does not depend on time is added up once, in `fixed`."""
+
+    def __init__(self, parts: list[Part], fetch: Fetch, start: float, shape: tuple[int, ...]) -> None:
+        self._fetch = fetch
+        self.fixed = np.zeros(shape)
+        self._timed: list[tuple[Part, Array, Array]] = []  # with its W at the start, and a work array
+        for part in parts:
+            values = fetch(part, start)
+            if part.depends_on_time:
+                self._timed.append((part, values, np.empty(values.shape)))
+            else:
+                self.fixed = self.fixed + values
+        self.shape = np.broadcast_shapes(self.fixed.shape, *(values.shape for _, values, _ in self._timed))
+
+    def at(self, t: float) -> Array:
+        """The sum at time `t`."""
+        total = self.fixed
+        for part, values, _ in self._timed:
+            total = total + part.factor(t) * (self._fetch(part, t) if part.moves else values)
+        return total
+
+    def into(self, out: Array, t: float) -> None:
+        """Write the real sum at time `t` to `out`."""
+        np.copyto(out, self.fixed)
+        for part, values, scaled in self._timed:
+            np.multiply(self._fetch(part, t) if part.moves else values, part.factor(t), scaled)
+            np.add(out, scaled, out)
+
+
+def _totals(hamiltonian: Hamiltonian, squeeze: float, start: float) -> tuple[Total, list[Total]]:
+    """V of the parts that are diagonal in position and channel, and its slope along each axis if squeezed."""
+    parts = [part for part in hamiltonian.parts if part.representation == "position" and not part.couples]
+    shape = (1, 1, *hamiltonian.grid.shape)
+    axes = range(len(hamiltonian.grid.axes)) if squeeze else ()
+    slopes = [Total(parts, _slope_along(axis), start, shape) for axis in axes]
+    return Total(parts, _values, start, shape), slopes
+
+
+def _values(part: Part, t: float) -> Array:
+    return part.values(t)
 
 
 def _slope_along(axis: int) -> Fetch:
     def slope(part: Part, t: float) -> Array:
-        if part.gradient is None:  # refused by `plan` long before
-            raise TypeError("a part without a gradient")
+        if part.gradient is None:
+            raise TypeError("a squared gradient of a part without gradient: `plan` refuses this")
         return part.gradient(t)[axis]
 
     return slope
-
-
-def _tallies(hamiltonian: Hamiltonian, psi: Array) -> list[Tally]:
-    grid = hamiltonian.grid
-    total = np.zeros(grid.shape)
-    wheres = []
-    for layer in hamiltonian.layers:
-        span = slice(layer.first, layer.first + len(layer.rate))
-        where = tuple(span if axis == layer.axis else slice(None) for axis in range(len(grid.axes)))
-        wheres.append(where)
-        total[where] += _along(layer.axis, layer.rate, total.ndim)
-    tallies = []
-    reals = psi.view(psi.real.dtype)
-    for layer, where in zip(hamiltonian.layers, wheres, strict=True):
-        rate = _along(layer.axis, layer.rate, total.ndim)
-        there = total[where]
-        share = np.divide(rate, there, out=np.zeros_like(there), where=there > 0) * grid.cell
-        last = where[-1]
-        doubled = last if last.start is None else slice(2 * last.start, 2 * last.stop)
-        amplitude = reals[:, :, *where[:-1], doubled]
-        tallies.append(
-            Tally(
-                layer,
-                (slice(None), slice(None), *where),
-                amplitude,
-                np.empty(amplitude.shape, amplitude.dtype),
-                np.zeros(amplitude.shape),
-                share,
-            )
-        )
-    return tallies
-
-
-def _along(axis: int, values: Array, ndim: int) -> Array:
-    return values.reshape([-1 if index == axis else 1 for index in range(ndim)])
-
-
-def _matrix_exponential(diagonal: Array, coupling: Array, share: float) -> Array:
-    """exp(-i share H) of the Hermitian channel matrix of each point, shape (runs, channels, channels, *grid)."""
-    channels = coupling.shape[1]
-    matrix = coupling + diagonal[:, :, None] * np.eye(channels).reshape(
-        1, channels, channels, *(1,) * (diagonal.ndim - 2)
-    )
-    if channels == 2:
-        return _two_by_two(matrix, share)
-    inward = np.moveaxis(matrix, (1, 2), (-2, -1))
-    energies, states = np.linalg.eigh(inward)
-    turned = (states * np.exp(-1j * share * energies)[..., None, :]) @ states.conj().swapaxes(-1, -2)
-    return np.moveaxis(turned, (-2, -1), (1, 2))
-
-
-def _two_by_two(matrix: Array, share: float) -> Array:
-    """Rabi's closed form: with H = mean + D and D^2 = w^2, exp(-i s H) = exp(-i s mean)(cos sw - i D sin(sw) / w)."""
-    upper, lower = matrix[:, 0, 0].real, matrix[:, 1, 1].real
-    mean, half = (upper + lower) / 2, (upper - lower) / 2
-    angle = share * np.hypot(half, np.abs(matrix[:, 0, 1]))
-    turn = -1j * share * np.sinc(angle / np.pi)
-    table = np.empty(matrix.shape, complex)
-    table[:, 0, 0] = np.cos(angle) + turn * half
-    table[:, 1, 1] = np.cos(angle) - turn * half
-    table[:, 0, 1] = turn * matrix[:, 0, 1]
-    table[:, 1, 0] = turn * matrix[:, 1, 0]
-    table *= np.exp(-1j * share * mean)[:, None, None]
-    return table

@@ -11,7 +11,7 @@ import numpy as np
 
 from ..hamiltonian import Hamiltonian
 from ..state import Look
-from .factors import Factor
+from .factors import Factor, factor
 from .splittings import Kick, PlanError, Splitting
 from .transforms import Precision, Settings, Spectrum, Transforms
 
@@ -149,9 +149,8 @@ def plan(
     psi = transforms.psi
     psi[...] = psi0
 
-    def factor(kick: Kick, weight: float) -> Factor:
-        at = start + kick.at * step
-        return Factor(hamiltonian, weight * step, kick.gradient * step**2, psi, at)
+    def potential(kick: Kick, weight: float) -> Factor:
+        return factor(hamiltonian, weight * step, kick.gradient * step**2, psi, start)
 
     energy = hamiltonian.kinetic() + sum(
         part.values(start) for part in hamiltonian.parts if part.representation == "wave number"
@@ -162,10 +161,10 @@ def plan(
         for share in splitting.drifts
     }
     first, *inner, last = splitting.kicks
-    opening = factor(last, last.weight)
-    joined = factor(last, first.weight + last.weight)
+    opening = potential(last, last.weight)
+    joined = potential(last, first.weight + last.weight)
     rows = [
-        Row(drifts[share], factor(kick, kick.weight), kick.at)
+        Row(drifts[share], potential(kick, kick.weight), kick.at)
         for share, kick in zip(splitting.drifts, inner, strict=False)
     ]
     final = drifts[splitting.drifts[-1]]

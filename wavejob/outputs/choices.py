@@ -140,14 +140,15 @@ def _visited_potential(scene: Scene, view: tuple[float, float]) -> tuple[float, 
     visited = scene.x[seen(scene, view) & (ever > VISITED * ever.max())]
     if visited.size == 0:
         visited = scene.x
-    lows, highs = [], []
+    found: list[Array] = []
     for frame in _some_frames(scene):
         x, v = scene.potential_at(frame)
-        corners = v[(x >= visited[0]) & (x <= visited[-1]) & np.isfinite(v)]
-        values = np.concatenate([corners, np.interp(visited[[0, -1]], x, v)])
-        lows.append(float(np.min(values)))
-        highs.append(float(np.max(values)))
-    return min(lows), max(highs)
+        finite = np.isfinite(v)
+        if finite.any():
+            corners = v[finite & (x >= visited[0]) & (x <= visited[-1])]
+            found += [corners, np.interp(visited[[0, -1]], x[finite], v[finite])]
+    values = np.concatenate(found) if found else np.zeros(1)
+    return float(values.min()), float(values.max())
 
 
 def _some_frames(scene: Scene, most: int = 60) -> list[int]:

@@ -86,9 +86,15 @@ def write_names(sheet: Sheet, placed: Sequence[PlacedName], stage_top: int, font
 
 
 def key_items(
-    scene: Scene, chosen: Choices, *, phases: Array | None, where: str, homeless: Sequence[Name]
+    scene: Scene,
+    chosen: Choices,
+    *,
+    phases: Array | None,
+    where: str,
+    homeless: Sequence[Name],
+    last: bool = False,
 ) -> list[Wordings]:
-    """The key, most needed first; the item with the mean energy changes from frame to frame."""
+    """The key, most needed first. The mean energy changes from frame to frame, or is that of the `last`."""
     items: list[Wordings] = []
     if phases is not None:
         start, end = Words(f"{MINUS}180\u00b0"), Words("180\u00b0")
@@ -105,11 +111,11 @@ def key_items(
             ((stroke, Words("F = m a from the same mean start")), (stroke, Words("F = m a, same start")))
         )
     said = [energy_text(scene, chosen, frame) for frame in range(scene.frames)]
-    now = Words(said[0], widest=max(said, key=len))
+    now = Words(said[-1]) if last else Words(said[0], widest=max(said, key=len))
     items.append(((Stroke(ENERGY, (0, (4, 2))), Words("mean energy", soft=True), now),))
     if scene.layers:
         items.append(((Hatch(LAYER, "//////"), Words("absorbing layer")),))
-    if phases is None and scene.phase is not None:
+    if phases is None and scene.phase is not None and not last:
         items.append(((Words("envelope: waves too short for phase colours", soft=True),),))
     return items
 

@@ -7,7 +7,19 @@ from matplotlib.artist import Artist
 
 from .choices import Choices
 from .columns import Columns
-from .palette import DETECTOR, ENERGY, ENVELOPE, INK, LAYER, PAPER, POTENTIAL, POTENTIAL_FILL, REGION, rgb
+from .palette import (
+    DETECTOR,
+    ENERGY,
+    ENVELOPE,
+    INK,
+    LAYER,
+    PAPER,
+    POTENTIAL,
+    POTENTIAL_FILL,
+    REGION,
+    SHADOW,
+    rgb,
+)
 from .scene import Scene
 from .sheet import Panel, Rect, Sheet
 
@@ -65,15 +77,20 @@ class PacketPanel:
         bottom = self.panel.rect.bottom
         return np.concatenate([x, x[[-1, 0]]]), np.concatenate([y, [bottom, bottom]])
 
-    def paint(self, frame: int, pixels: Array) -> None:
-        """Paints one frame onto the pixels of the sheet, shape (height, width, 4)."""
+    def tops(self, frame: int) -> Array:
+        """Pixel row of the curve in each column, shape (width,)."""
+        return self.base[frame] - self.heights[frame]
+
+    def paint(self, frame: int, pixels: Array, *, shadow: int | None = None) -> None:
+        """Paints one frame onto the pixels of the sheet, shape (height, width, 4), before a frame in grey."""
         if self.scene.potential_moves:
             x, y = self._potential(frame)
             self.ground.set_xy(self.sheet.corners(*self._closed(x, y)))
             self.sheet.move(self.outline, x, y)
             self.sheet.paint(self.ground)
-        base = float(self.base[frame])
-        tops = base - self.heights[frame]
+        if shadow is not None:
+            fill_columns(pixels, self.panel.rect, self.tops(shadow), float(self.base[shadow]), rgb(SHADOW))
+        base, tops = float(self.base[frame]), self.tops(frame)
         fill_columns(pixels, self.panel.rect, tops, base, self._colours(frame))
         drawn = np.where(self.heights[frame] > FLAT, tops, np.nan)
         self.sheet.move(self.curve, self.x, np.where(self.enlarged, np.nan, drawn))

@@ -24,7 +24,8 @@ LAYER = "#b9b4a8"
 PATH = "#c2185b"
 CASING = "#ffffff"
 ENVELOPE = "#8aa6c1"
-START = "#9aa3ad"
+SHADOW = "#d3d7da"
+START = "#59636e"
 
 # Running probabilities: colour, dash, marker.
 CURVES = (("#0072b2", "-", "o"), ("#c04a00", (0, (5, 2)), "s"), ("#5a3d8a", (0, (1.5, 1.5)), "^"))

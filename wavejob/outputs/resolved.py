@@ -24,17 +24,17 @@ def write_resolved(path: Path, plan: Plan) -> None:
     resolved["units"] = _units(job.units)
     if isinstance(job.keys.particle, str) or job.keys.particle is None:
         resolved["particle"] = job.keys.particle or {
-            "mass": job.units.write(job.particle.mass, "mass"),
-            "charge": job.units.write(job.particle.charge, "charge"),
+            "mass": _quantity(job.particle.mass, "mass", job.units),
+            "charge": _quantity(job.particle.charge, "charge", job.units),
         }
     axis = resolved["grid"]["x"]
     axis.pop("spacing", None)
     axis["points"] = plan.axis.points
     evolve = resolved["evolve"]
     evolve.pop("accuracy", None)
-    evolve["step"] = job.units.write(plan.step, "time")
+    evolve["step"] = _quantity(plan.step, "time", job.units)
     evolve["order"] = plan.splitting.order
-    evolve["record"] = job.units.write(plan.record * plan.step, "time")
+    evolve["record"] = _quantity(plan.record * plan.step, "time", job.units)
     lines = [
         "# The job with every default and choice made explicit. Choices made here:",
         *(f"#   {key}: {why}" for key, why in _reasons(plan).items()),
@@ -105,6 +105,7 @@ def _plain(value: Any, quantity: Quantity | None, units: Units) -> Any:
 
 
 def _quantity(value: float, dimension: str, units: Units) -> Any:
-    """In natural units a bare number, so that it reads back as one."""
-    text = units.write(value, dimension)
-    return value if units.system == "natural" or dimension == "number" else text
+    """As a person would write it, to 15 digits; in natural units a bare number, so that it reads back as one."""
+    number = f"{units.to_file(value, dimension):.15g}"
+    label = units.label(dimension)
+    return f"{number} {label}" if label else float(number)

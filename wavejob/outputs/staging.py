@@ -62,7 +62,8 @@ def stage(record: Record) -> Scene:
 def subtitle(plan: Plan) -> str:
     """Grid and step in one line."""
     job = plan.job
-    particle = job.keys.particle if isinstance(job.keys.particle, str) else "particle"
+    mass = f"mass {job.write(job.particle.mass, 'mass')}"
+    particle = job.keys.particle if isinstance(job.keys.particle, str) else mass
     return (
         f"{particle}, {job.write(plan.axis.length, 'length')}, {plan.axis.points} points, "
         f"step {job.write(plan.step, 'time')}, order {plan.splitting.order}"

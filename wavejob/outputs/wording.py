@@ -18,7 +18,7 @@ MINUS = "\u2212"
 
 def clean(text: str) -> str:
     """`text` on one line, without control, direction and half characters, blanks joined."""
-    kept = ("" if unicodedata.category(c) in {"Cf", "Cs", "Co", "Cn"} else c for c in text)
+    kept = (c for c in text if unicodedata.category(c) not in {"Cf", "Cs", "Co", "Cn"})
     return " ".join("".join(" " if unicodedata.category(c) == "Cc" else c for c in kept).split())
 
 
