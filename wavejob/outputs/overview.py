@@ -11,7 +11,7 @@ from matplotlib.text import Text
 from . import film_words
 from .axes import bottom_axis, numbers_room, side_axis, side_ticks
 from .carpet import draw_time_axes, paint_carpet, paint_curves
-from .choices import choose
+from .choices import CLOSE_UP_MARGIN, choose
 from .encode import write_png
 from .key import Stroke, Wordings, Words, draw_key
 from .names import pack
@@ -101,7 +101,8 @@ class Overview:
     def _draw_close_up(self, stage: Panel, close: Panel) -> None:
         sheet, scene, rect = self.sheet, self.scene, close.rect
         mark_close_up(sheet, stage, close)
-        inside = (scene.x > close.x_low) & (scene.x < close.x_high)
+        reach = (close.x_high - close.x_low) / (2 + 4 * CLOSE_UP_MARGIN)  # of the structure itself
+        inside = np.abs(scene.x - (close.x_low + close.x_high) / 2) < reach
         self.fullest = int(np.argmax(scene.density[:, inside].sum(axis=1)))
         self.packets.append(PacketPanel(sheet, scene, self.chosen, close, phases=None, fine=FINE))
         self.axes.append((draw_stage_axes(sheet, scene, self.packets[1], FONT, None)[0], self.fullest))
@@ -110,7 +111,7 @@ class Overview:
         placed, _ = pack(sheet, names, FONT, (rect.left, rect.right), 1)
         film_words.write_names(sheet, placed, rect.top, FONT, LINE)
         y = rect.top - 4 - (1.28 if placed else 0.28) * LINE
-        said = f"{close_up_title(scene, stage, close)}, {self._time(self.fullest)}: most is in here"
+        said = f"{close_up_title(scene, stage, close)}, {self._time(self.fullest)}, when most is inside"
         sheet.text(rect.left, y, said, FONT, colour=QUIET)
 
     def _time(self, frame: int) -> str:

@@ -35,8 +35,9 @@ def broken_into_lines(
 def _two_lines(sheet: Sheet, words: str, pixels: float, width: float) -> list[str]:
     """Both lines where they fit, broken at a blank, else within a long word; [] where not."""
     end = _longest_start(sheet, words, pixels, width)
-    blank = words.rfind(" ", 0, end + 1)
-    for cut in (blank, end):
+    blanks = [place for place in range(1, end + 1) if words[place : place + 1] == " "][::-1]
+    apart = [place for place in blanks if not words[place - 1].isdigit()]  # a number keeps its unit
+    for cut in [*apart, *blanks, end]:
         if cut > 0 and sheet.measure(words[cut:].strip(), pixels, bold=True) <= width:
             return [words[:cut].strip(), words[cut:].strip()]
     return []
