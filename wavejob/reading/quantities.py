@@ -117,20 +117,15 @@ class Units:
 
     def write(self, x: float, dimension: str) -> str:
         """A text that `read` turns back into `x` in inside units, as nearly as numbers allow."""
-        if self.system == "file" and DIMENSIONS[dimension].powers.energy and dimension != "energy":
-            plain = replace(self, energy=_PRINTED["energy"]) if not _is_energy(self.energy) else self
-        else:
-            plain = self
-        scale = plain.scale(dimension)
-        number = x / scale
-        near = [
-            number,
-            float(f"{number:.15g}"),
-            *(math.nextafter(number, way) for way in (-math.inf, math.inf)),
-        ]
-        exact = [candidate for candidate in near if candidate * scale == x] or [number]
-        label = plain.label(dimension) if self.system == "file" else ""
-        return f"{min(exact, key=lambda n: len(repr(n)))!r} {label}".rstrip()
+        printed = self
+        if DIMENSIONS[dimension].powers.energy and dimension != "energy" and not _is_energy(self.energy):
+            printed = replace(self, energy=_PRINTED["energy"])  # cm^-1 is an energy only by itself
+        label = printed.label(dimension) if self.system == "file" else ""
+        number = float(printed.to_file(x, dimension))
+        below, above = (math.nextafter(number, way) for way in (-math.inf, math.inf))
+        near = [f"{n!r} {label}".rstrip() for n in (float(f"{number:.15g}"), number, below, above)]
+        exact = [text for text in near if self.read(text, dimension) == x]
+        return min(exact, key=len) if exact else near[1]
 
     def _inside(self, dimension: str) -> float:
         """One inside unit of `dimension` in SI base units."""
@@ -231,7 +226,7 @@ def _base_unit(kind: str, unit: Any) -> str:
 
 
 def _is_energy(unit: str) -> bool:
-    return kind_of(measure(pint_notation(unit))[1]) == "energy"
+    return not unit or kind_of(measure(pint_notation(unit))[1]) == "energy"
 
 
 def _spell(powers: Powers, units: Units, top: str) -> str:
