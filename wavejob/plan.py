@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass, replace
 from fractions import Fraction
+from functools import cached_property
 
 import numpy as np
 
@@ -32,11 +33,17 @@ TAIL = 1e-10  # probability left out of the range of wave numbers
 
 @dataclass(frozen=True)
 class Ending:
-    """One absorbing end: the layer, what it reflects as predicted, and the depth that would do."""
+    """One absorbing end: the layer, with what it reflects as predicted, and what it must absorb."""
 
     side: str
     shape: LayerShape
-    recommended: float
+    momenta: Momenta
+    spacing: float
+
+    @cached_property
+    def recommended(self) -> float:
+        """The depth that would do; found when first asked for, because it takes a while."""
+        return recommended_depth(self.shape.mass, self.momenta, self.spacing)
 
 
 @dataclass(frozen=True)
@@ -99,7 +106,7 @@ class Plan:
 
 def make_plan(job: Job) -> Plan:
     """The plan of a job. Raises JobFileError where the job cannot be carried out as it is written."""
-    axis, notes = _axis(job)
+    axis, notes = chosen_axis(job)
     psi = job.packet.field(axis, job.particle.mass, job.units)
     _refuse_lost(job, axis, psi)
     endings = _endings(job, axis, psi)
@@ -142,7 +149,7 @@ def _timed(term: Term, axis: Axis) -> Part:
     return Part("position", lambda t: values, lambda t: (slopes,), term.in_time)
 
 
-def _axis(job: Job) -> tuple[Axis, dict[str, str]]:
+def chosen_axis(job: Job) -> tuple[Axis, dict[str, str]]:
     """The x axis, with its points chosen where the job leaves them out."""
     axis, keys = axis_as_written(job), job.keys.grid.x
     if keys.points:
@@ -156,16 +163,8 @@ def _axis(job: Job) -> tuple[Axis, dict[str, str]]:
 
 def choose_points(job: Job, axis: Axis) -> tuple[int, str]:
     """How many points hold the wave numbers of the packet wherever the potential lets it go."""
-    mass, accuracy = job.particle.mass, job.evolve.accuracy or ACCURACY
-    k = job.packet.widest_wavenumber(mass)
-    fine = replace(axis, points=2**14)
-    psi = job.packet.field(fine, mass, job.units)
-    if k is None:
-        k = float(np.max(np.abs(wave_numbers(fine, psi)[0])))
-    potential = job.landscape.value(fine.x, job.evolve.start)
-    present = np.abs(psi) ** 2 > TAIL * np.max(np.abs(psi) ** 2)
-    highest = k**2 / (2 * mass) + float(potential[present].max()) - float(potential.min())
-    needed = math.sqrt(2 * mass * max(highest, k**2 / (2 * mass)))
+    accuracy = job.evolve.accuracy or ACCURACY
+    needed = highest_wavenumber(job, axis)
     sharp = any(term.shape.breaks is not None for term in job.landscape.terms)
     room = max(2.0, 2.5 * (1e-4 / accuracy) ** 0.25) if sharp else 1.5
     if job.landscape.depends_on_time:
@@ -176,6 +175,20 @@ def choose_points(job: Job, axis: Axis) -> tuple[int, str]:
         f"{job.write(needed, 'wavenumber')}{', for sharp edges' if sharp else ''}"
     )
     return points, why
+
+
+def highest_wavenumber(job: Job, axis: Axis) -> float:
+    """The largest wave number that the packet reaches where the potential is lowest."""
+    mass = job.particle.mass
+    k = job.packet.widest_wavenumber(mass)
+    fine = replace(axis, points=2**14)
+    psi = job.packet.field(fine, mass, job.units)
+    if k is None:
+        k = float(np.max(np.abs(wave_numbers(fine, psi)[0])))
+    potential = job.landscape.value(fine.x, job.evolve.start)
+    present = np.abs(psi) ** 2 > TAIL * np.max(np.abs(psi) ** 2)
+    highest = k**2 / (2 * mass) + float(potential[present].max()) - float(potential.min())
+    return math.sqrt(2 * mass * max(highest, k**2 / (2 * mass)))
 
 
 def wave_numbers(axis: Axis, psi: Array) -> tuple[Array, Array]:
@@ -219,8 +232,13 @@ def _endings(job: Job, axis: Axis, psi: Array) -> tuple[Ending, ...]:
         else:
             momenta = _arriving(job, axis, k, weight, side)
         shape = tuned(end.absorb, mass, momenta, axis.spacing)
-        found.append(Ending(side, shape, recommended_depth(mass, momenta, axis.spacing)))
+        found.append(Ending(side, shape, momenta, axis.spacing))
     return tuple(found)
+
+
+def retuned(plan: Plan, axis: Axis) -> tuple[Ending, ...]:
+    """The absorbing ends of a plan on another grid: the same depths, tuned anew."""
+    return _endings(plan.job, axis, plan.job.packet.field(axis, plan.job.particle.mass, plan.job.units))
 
 
 def _arriving(job: Job, axis: Axis, k: Array, weight: Array, side: str) -> Momenta:
