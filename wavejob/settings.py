@@ -141,7 +141,7 @@ class EndsKeys(Model):
             if value not in ("wrap", "wall"):
                 raise refuse(f"no edge called {shown(value)}", "there are: `wrap`, `wall`, `{absorb: depth}`")
             return {"low": value, "high": value}
-        if isinstance(value, dict) and not {"low", "high"} & value.keys():
+        if isinstance(value, dict) and value and not {"low", "high"} & value.keys():
             return {"low": value, "high": value}
         return value
 

@@ -77,7 +77,7 @@ def read_with_bases(path: Path, shown: str, tree: JobTree, trust: bool = False) 
             written = doc.value["based_on"]
             if not isinstance(written, str):
                 raise PathError("is not a path", "write the path of one file")
-            base = tree.inside(written, here, trust)
+            base = tree.inside(written, here, trust=trust)
         except PathError as error:
             raise _at(doc, at, error.message, error.fix) from None
         if base.resolve() in [file for file, _ in chain]:
