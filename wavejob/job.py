@@ -128,7 +128,7 @@ def plain(value: Any) -> Any:
         return value.digest
     if isinstance(value, Named):
         return [value.value, value.dimension]
-    if hasattr(value, "model_fields"):
+    if hasattr(type(value), "model_fields"):
         data = {name: plain(getattr(value, name)) for name in type(value).model_fields}
         return {**data, **{k: plain(v) for k, v in (value.__pydantic_extra__ or {}).items()}}
     if isinstance(value, (list, tuple)):
