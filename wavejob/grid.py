@@ -88,3 +88,11 @@ def fast_size(at_least: int) -> int:
             three *= 3
         five *= 5
     return best
+
+
+def fast_size_below(at_most: int) -> int:
+    """The largest even size <= `at_most` whose only prime factors are 2, 3 and 5."""
+    size = at_most - at_most % 2
+    while fast_size(size) != size:
+        size -= 2
+    return size

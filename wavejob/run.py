@@ -12,6 +12,7 @@ from pathlib import Path
 from typing import Any, Literal
 
 from .checks import judge_expectation, verdict
+from .evidence.assess import assess
 from .job import Job, plain
 from .outputs.fields import DensityTable, write_fields
 from .outputs.files import atomic
@@ -46,6 +47,7 @@ def run_job(
     runs: Path,
     *,
     again: bool = False,
+    bars: bool = True,
     film: bool = True,
     plan: Plan | None = None,
     progress: Tell | None = None,
@@ -69,7 +71,8 @@ def run_job(
         for key, why in plan.notes.items():
             log.info("%s: %s", key, why)
         planned = time.perf_counter()
-        record = simulate(plan, progress)
+        wanted_bars = bars and job.keys.error_bars is None
+        record = assess(plan, progress).record if wanted_bars else simulate(plan, progress)
         log.info("%d steps in %.2f s%s", record.steps, record.seconds, f"; {record.stopped}" if record.stopped else "")
         simulated = time.perf_counter()
         write_numbers(folder.path, record)
@@ -112,9 +115,11 @@ def write_numbers(folder: Path, record: Record) -> None:
     with atomic(folder / "job.yml") as file:
         file.write(job.text)
     write_resolved(folder / "resolved.yml", record.plan)
-    write_series(folder / "series.csv", record.times, record.columns, record.series, units)
+    errors = record.series_errors
+    by_column = {} if errors is None else {c.name: errors[:, i] for i, c in enumerate(record.columns)}
+    write_series(folder / "series.csv", record.times, record.columns, record.series, units, by_column)
     for curve in record.curves:
-        write_curve(folder, curve, units)
+        write_curve(folder, curve, units, (record.curve_errors or {}).get(curve.name))
     write_fields(
         folder / "fields.nc",
         grid=record.plan.hamiltonian.grid,

@@ -4,15 +4,15 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from .checks import judge_expectation, judge_run, verdict
-from .evolve.loop import Output, evolve
+from .evolve.loop import Output, evolve, go_on
 from .evolve.schedule import Schedule
 from .evolve.stepper import plan as plan_steps
-from .observables.base import Meter, Observable
+from .observables.base import Meter, Observable, Series
 from .observables.densities import Density, MomentumDensity
 from .plan import Plan
 from .recording import Frames, Rows, Sampler, Stored, Ticker, Watch
@@ -57,6 +57,8 @@ class Record:
     checks: tuple[Check, ...]
     judgements: tuple[Judgement, ...]
     verdict: Verdict
+    norm_drift: float  # what rounding errors did to norm + absorbed
+    thinned: dict[str, float]  # results from every second row and sample
     psi: Array  # the final state, (points,)
     field_times: Array  # of the stored fields, the final state last
     fields: tuple[Array, ...]  # (points,) each
@@ -64,6 +66,8 @@ class Record:
     frames: Frames
     crossed: dict[str, Array]  # detector -> probability crossed so far, at the frames
     seconds: float  # of the loop
+    series_errors: Array | None = None  # like `series`
+    curve_errors: dict[str, dict[str, Array]] | None = None  # curve -> column -> errors
 
     def column(self, name: str) -> Array:
         """One column of the time series."""
@@ -73,8 +77,11 @@ class Record:
         return next(r for r in self.results if r.name == name)
 
 
-def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None) -> Record:
-    """Carries out `plan`. Raises RunError for values that are not finite; KeyboardInterrupt passes through."""
+def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, alone: bool = True) -> Record:
+    """Carries out `plan`. Raises RunError for values that are not finite; KeyboardInterrupt passes through.
+
+    With `alone` not set it is one of several runs of a job: all its steps are made, whatever `stop_when` says.
+    """
     job, bench = plan.job, plan.bench
     stepper = plan_steps(
         plan.hamiltonian,
@@ -99,7 +106,7 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None) -> 
     for meter in meters:
         meter.start(first)
     begun = time.perf_counter()
-    outcome = evolve(stepper, steps=plan.steps, outputs=outputs, control=_stopper(plan, rows))
+    outcome = evolve(stepper, steps=plan.steps, outputs=outputs, control=_stopper(plan, rows) if alone else go_on)
     seconds = time.perf_counter() - begun
 
     table = [rows.series(index) for index in range(len(meters))]
@@ -108,18 +115,19 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None) -> 
         for observable, meter, series in zip(job.observables, meters, table, strict=True)
         for result in _results(plan, observable, meter, series)
     ]
-    checks = judge_run(plan, watch, outcome.n)
-    judgements = [
-        judge_expectation(job, expect, next(r for r in results if r.name == expect.result))
-        for expect in job.keys.expect
-    ]
+    thinned = {
+        name: value
+        for meter, series in zip(meters, table, strict=True)
+        for name, value in meter.results(series.thinned(), 2).items()
+        if value is not None
+    }
     kept = fields.values if fields else []
     psi = stepper.psi[0, 0].copy()
     ended = stepper.time(outcome.n)
     stored = list(zip(fields.times if fields else [], kept, strict=True))
     if not stored or stored[-1][0] != ended:
         stored.append((ended, psi))
-    return Record(
+    record = Record(
         plan=plan,
         steps=outcome.n,
         stopped=outcome.stopped,
@@ -128,9 +136,11 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None) -> 
         series=np.concatenate([series.values for series in table], axis=1) if table else np.empty((len(rows.times), 0)),
         results=tuple(results),
         curves=tuple(curve for meter in meters for curve in meter.curves()),
-        checks=tuple(checks),
-        judgements=tuple(judgements),
-        verdict=verdict(checks, judgements),
+        checks=tuple(judge_run(plan, watch, outcome.n)),
+        judgements=(),
+        verdict="doubtful",
+        norm_drift=watch.norm_drift,
+        thinned=thinned,
         psi=psi,
         field_times=np.array([t for t, _ in stored]),
         fields=tuple(field for _, field in stored),
@@ -143,6 +153,15 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None) -> 
         },
         seconds=seconds,
     )
+    return judged(record)
+
+
+def judged(record: Record, checks: tuple[Check, ...] = ()) -> Record:
+    """The record with further checks, its expectations judged with the bars it has, and its verdict."""
+    job = record.plan.job
+    judgements = [judge_expectation(job, expect, record.result(expect.result)) for expect in job.keys.expect]
+    checks = (*record.checks, *checks)
+    return replace(record, checks=checks, judgements=tuple(judgements), verdict=verdict(list(checks), judgements))
 
 
 def _view(plan: Plan) -> tuple[float, float]:
@@ -167,8 +186,8 @@ def _stored_density(plan: Plan, density: Density) -> tuple[str, Stored]:
     return "density", Stored(schedule, lambda look: look.density[0].copy())
 
 
-def _results(plan: Plan, observable: Observable, meter: Meter, series: object) -> list[Result]:
-    values, notes = meter.results(series), meter.notes()  # type: ignore[arg-type]
+def _results(plan: Plan, observable: Observable, meter: Meter, series: Series) -> list[Result]:
+    values, notes = meter.results(series), meter.notes()
     found = []
     for figure in observable.figures(plan.job.outline):
         value = values[figure.name]

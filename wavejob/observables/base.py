@@ -20,6 +20,7 @@ from ..reading.quantities import Units
 from ..results import Column, Curve
 from ..shapes import Landscape
 from ..state import Look
+from .integrals import every
 
 Array = np.ndarray
 Toward = Literal["+x", "-x"]
@@ -64,6 +65,11 @@ class Series:
     times: Array
     values: Array
 
+    def thinned(self) -> Series:
+        """Every second row, and the last."""
+        kept = every(2, len(self.times))
+        return Series(self.times[kept], self.values[kept])
+
 
 class Meter:
     """Measures one run of a state; subclasses keep what they need between calls."""
@@ -80,8 +86,8 @@ class Meter:
         """The values of the observable's columns at a recorded time."""
         return ()
 
-    def results(self, series: Series) -> Mapping[str, float | None]:
-        """A value for each of the observable's figures; None where it cannot be had."""
+    def results(self, series: Series, stride: int = 1) -> Mapping[str, float | None]:
+        """A value for each of the observable's figures, from every `stride`-th sample; None where it cannot be had."""
         return {}
 
     def notes(self) -> Mapping[str, str]:

@@ -20,17 +20,15 @@ class Samples:
         self._times.append(t)
         self._values.append(value)
 
-    @property
-    def times(self) -> Array:
-        return np.array(self._times)
+    def thinned(self, stride: int) -> tuple[Array, Array]:
+        """Times and values of every `stride`-th sample, and of the last."""
+        kept = every(stride, len(self._times))
+        return np.array(self._times)[kept], np.array(self._values)[kept]
 
-    @property
-    def values(self) -> Array:
-        return np.array(self._values)
 
-    def integral(self) -> float:
-        """Integral over all times."""
-        return float(running(self.times, self.values)[-1])
+def every(stride: int, count: int) -> Array:
+    """Indices of every `stride`-th of `count`, and of the last."""
+    return np.unique(np.append(np.arange(0, count, stride), count - 1))
 
 
 def spline(times: Array, values: Array) -> Any:

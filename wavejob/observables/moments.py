@@ -94,7 +94,7 @@ class NormMeter(Meter):
         self.drift = max(self.drift, abs(norm(look) + sum(absorbed) - 1))
         return [norm(look), *absorbed]
 
-    def results(self, series: Series) -> dict[str, float | None]:
+    def results(self, series: Series, stride: int = 1) -> dict[str, float | None]:
         taken = {f"absorbed.{name}": float(series.values[-1, 1 + i]) for i, name in enumerate(self.layers)}
         return {"norm.final": float(series.values[-1, 0]), "norm.drift": self.drift, **taken}
 
@@ -128,7 +128,7 @@ class MomentMeter(Meter):
     def row(self, look: Look) -> Sequence[float]:
         return [self.measure(look, self.bench)]
 
-    def results(self, series: Series) -> dict[str, float | None]:
+    def results(self, series: Series, stride: int = 1) -> dict[str, float | None]:
         return summary(self.name, series)
 
 
@@ -223,10 +223,11 @@ class EnergyMeter(Meter):
         kinetic, potential = kinetic_energy(look, self.bench), potential_energy(look, self.bench)
         return [(kinetic + potential) / norm(look), kinetic / norm(look), potential / norm(look)]
 
-    def results(self, series: Series) -> dict[str, float | None]:
-        change = self.total.values - self.total.values[0]
+    def results(self, series: Series, stride: int = 1) -> dict[str, float | None]:
+        _, total = self.total.thinned(stride)
+        change = total - total[0]
         if self.open:
-            change = change - running(self.gain.times, self.gain.values)
+            change = change - running(*self.gain.thinned(stride))
         drift = float(np.max(np.abs(change))) / self.largest_kinetic if self.largest_kinetic > 0 else None
         return {"energy.final": float(series.values[-1, 0]), "energy.drift": drift}
 
@@ -266,13 +267,14 @@ class EhrenfestMeter(Meter):
         self.force.add(look.t, mean_force(look, self.bench))
         self.absorbed = 1 - norm(look)
 
-    def results(self, series: Series) -> dict[str, float | None]:
+    def results(self, series: Series, stride: int = 1) -> dict[str, float | None]:
         if self.absorbed > ABSORBED_TOO_MUCH:
             return dict.fromkeys(NAMES)
-        moved = running(self.momentum.times, self.momentum.values) / self.bench.mass
-        pushed = running(self.force.times, self.force.values)
-        place = np.max(np.abs(self.place.values - self.place.values[0] - moved))
-        momentum = np.max(np.abs(self.momentum.values - self.momentum.values[0] - pushed))
+        times, momenta = self.momentum.thinned(stride)
+        places, forces = self.place.thinned(stride)[1], self.force.thinned(stride)[1]
+        moved, pushed = running(times, momenta) / self.bench.mass, running(times, forces)
+        place = np.max(np.abs(places - places[0] - moved))
+        momentum = np.max(np.abs(momenta - momenta[0] - pushed))
         scale = self.bench.scale
         return dict(zip(NAMES, (float(place / scale("length")), float(momentum / scale("momentum"))), strict=True))
 

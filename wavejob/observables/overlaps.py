@@ -53,7 +53,7 @@ class OverlapMeter(Meter):
         amplitude = np.sum(self.state * look.psi[0]) * self.bench.axis.spacing
         return [float(abs(amplitude) ** 2)]
 
-    def results(self, series: Series) -> dict[str, float | None]:
+    def results(self, series: Series, stride: int = 1) -> dict[str, float | None]:
         values = series.values[:, 0]
         return {
             f"{self.name}.final": float(values[-1]),

@@ -66,7 +66,7 @@ class InsideMeter(Meter):
     def row(self, look: Look) -> Sequence[float]:
         return [probability(look, self.bench.axis, self.weights)]
 
-    def results(self, series: Series) -> dict[str, float | None]:
+    def results(self, series: Series, stride: int = 1) -> dict[str, float | None]:
         values = series.values[:, 0]
         top = int(np.argmax(values))
         return {
@@ -129,8 +129,8 @@ class CrossingMeter(Meter):
         self.undecided = probability(look, self.bench.axis, self.before)
         return [self._flux(look)]
 
-    def results(self, series: Series) -> dict[str, float | None]:
-        times, flux = self.flux.times, self.flux.values
+    def results(self, series: Series, stride: int = 1) -> dict[str, float | None]:
+        times, flux = self.flux.thinned(stride)
         total = float(running(times, flux)[-1])
         late = float(running(times, times * flux)[-1])
         return {
@@ -141,7 +141,8 @@ class CrossingMeter(Meter):
         }
 
     def progress(self) -> list[tuple[str, Array, Array]]:
-        return [(self.name, self.flux.times, running(self.flux.times, self.flux.values))]
+        times, flux = self.flux.thinned(1)
+        return [(self.name, times, running(times, flux))]
 
     def notes(self) -> dict[str, str]:
         return {f"{self.name}.mean_time": "nothing crossed"}

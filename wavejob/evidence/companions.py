@@ -1,0 +1,76 @@
+"""Companion runs: the same job on a coarser or finer grid with a longer or shorter step."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from ..grid import fast_size, fast_size_below
+from ..plan import Plan, on_grid, retuned, wave_numbers
+
+COARSER_STEP = 2.0
+COARSER_POINTS = 2**-0.5  # with twice the step the largest kinetic phase a step stays what it was
+HOLDS = 0.9  # of the largest wave number of a grid: a packet that reaches beyond needs a finer companion
+
+
+@dataclass(frozen=True)
+class Companion:
+    """A plan to compare a run with. `step` and `points` are its ratios to those of the run."""
+
+    plan: Plan
+    step: float
+    points: float
+    reason: str
+
+    @property
+    def coarser(self) -> bool:
+        return self.step * self.points**-1 > 1
+
+
+def coarser(plan: Plan, *, step: bool = True, points: bool = True, until: int | None = None) -> Companion:
+    """Twice the step and 0.7 of the points, or a finer run where the packet or the rows allow nothing coarser.
+
+    `until` is the number of steps that the run has made: the companion ends at the same time.
+    """
+    rows = plan.record // 2 if step and plan.record > 1 else plan.record
+    grid = fast_size_below(int(plan.axis.points * COARSER_POINTS)) if points else plan.axis.points
+    reach = float(np.max(np.abs(wave_numbers(plan.axis, plan.psi)[0])))
+    if (step and plan.record == 1) or (points and reach > HOLDS * math.pi * grid / plan.axis.length):
+        return finer(plan, step=step, points=points, until=until)
+    return _changed(plan, rows, grid, until, "coarser: it costs about a third of the run")
+
+
+def finer(plan: Plan, *, step: bool = True, points: bool = True, until: int | None = None) -> Companion:
+    """Half the step and 1.4 times the points."""
+    rows = plan.record * 2 if step else plan.record
+    grid = fast_size(math.ceil(plan.axis.points / COARSER_POINTS)) if points else plan.axis.points
+    return _changed(plan, rows, grid, until, "finer: a coarser one would not tell")
+
+
+def _changed(plan: Plan, record: int, points: int, until: int | None, reason: str) -> Companion:
+    """The plan with `record` steps between the same recorded times, on `points` points."""
+    whole = plan.steps if until is None else until
+    ratio = plan.record / record
+    steps = round(whole / ratio)
+    axis = replace(plan.axis, points=points)
+    endings = plan.endings if points == plan.axis.points else retuned(plan, axis)
+    changed = replace(
+        plan,
+        axis=axis,
+        psi=plan.job.packet.field(axis, plan.job.particle.mass, plan.job.units),
+        hamiltonian=on_grid(plan.job, axis, endings),
+        endings=endings,
+        step=plan.step * whole / steps,
+        steps=steps,
+        record=record,
+        sample=_sample(plan, record, steps, ratio),
+    )
+    return Companion(changed, changed.step / plan.step, points / plan.axis.points, reason)
+
+
+def _sample(plan: Plan, record: int, steps: int, ratio: float) -> int:
+    """The largest divisor of rows and run that samples at least as often as the run does."""
+    common = math.gcd(record, steps)
+    return max(d for d in range(1, common + 1) if common % d == 0 and d <= max(plan.sample / ratio, 1))
