@@ -17,7 +17,7 @@ from PIL import Image
 from tests.outputs.scenes import MAKERS, TITLE, double_barrier, scene
 from wavejob.outputs.film import draw_film
 from wavejob.outputs.film_picture import Film
-from wavejob.outputs.palette import ENVELOPE, rgb
+from wavejob.outputs.palette import CURVES, ENVELOPE, PAPER, rgb
 from wavejob.problems import RunError
 
 SIZES = [(640, 360), (1280, 720), (1920, 1080)]
@@ -209,6 +209,9 @@ def test_mp4_has_every_frame_and_plays_in_browsers(tmp_path, size):
     # half-resolution colour and its coding blur single pixels, but not the picture
     drawn = Film(shown, size).frame(40)[..., :3]
     assert np.abs(frames[40].astype(float) - drawn).mean() < 3
+    paper = frames[40][2, 2].astype(float)
+    assert np.abs(paper - rgb(PAPER)).max() <= 2  # one step of 219 in luma, and rounding
+    assert "bt709" in said
     assert told == [(n + 1, shown.frames) for n in range(shown.frames)]
     start = (tmp_path / "film.mp4").read_bytes()
     assert start.index(b"moov") < start.index(b"mdat")
@@ -222,6 +225,9 @@ def test_gif_has_every_frame_and_one_palette(tmp_path):
         assert gif.size == (640, 360)
         assert gif.info["duration"] == 50
         assert gif.info["loop"] == 0
+        seen = np.unique(np.array(gif.convert("RGB"), dtype=int).reshape(-1, 3), axis=0)
+    for colour in (PAPER, *(colour for colour, _, _ in CURVES)):
+        assert np.abs(seen - rgb(colour)).max(axis=1).min() <= 4  # looked up in cells of 4 to 8 levels
 
 
 def test_a_film_that_fails_leaves_nothing_and_keeps_the_old_one(tmp_path):

@@ -16,6 +16,7 @@ from PIL import Image
 
 from ..problems import RunError
 from .files import atomic_path
+from .palette import LINE_COLOURS, rgb
 
 Array = np.ndarray
 Frame = Callable[[int], Array]  # number of a frame -> its pixels, shape (height, width, 4), uint8
@@ -36,9 +37,12 @@ def write_mp4(
         raise RunError(f"could not write `{path}`: no video encoder was found", CURE) from error
     raw = ["-f", "rawvideo", "-pix_fmt", "rgba", "-s", f"{size[0]}x{size[1]}", "-r", str(fps), "-i", "-"]
     coded = ["-an", "-c:v", "libx264", "-preset", "veryfast", "-crf", str(QUALITY), "-threads", "1"]
+    # players take pictures of this size for BT.709 whatever was written, and would shift every colour
+    toned = ["-vf", "scale=out_color_matrix=bt709:out_range=tv", "-colorspace", "bt709"]
+    toned += ["-color_primaries", "bt709", "-color_trc", "bt709", "-color_range", "tv"]
     played = ["-pix_fmt", "yuv420p", "-movflags", "+faststart"]
     with atomic_path(path) as temporary, TemporaryFile() as said:
-        command = [encoder, "-y", "-v", "error", *raw, *coded, *played, str(temporary)]
+        command = [encoder, "-y", "-v", "error", *raw, *coded, *toned, *played, str(temporary)]
         with _started(command, said) as process:
             sent = _send_all(process, frame, frames, progress)
         if not sent or process.returncode != 0:
@@ -90,7 +94,7 @@ def write_gif(path: Path, frame: Frame, frames: int, *, fps: float, progress: Pr
     """A GIF that repeats, with one palette for all frames. Raises RunError where it can't be written."""
     with atomic_path(path) as temporary:
         sample = [frame(int(n))[::2, ::2, :3].copy() for n in np.linspace(0, frames - 1, min(5, frames))]
-        palette = Image.fromarray(np.concatenate(sample)).quantize(GIF_COLOURS, dither=Image.Dither.NONE)
+        palette = _palette(np.concatenate(sample))
 
         def pictures() -> Iterator[Image.Image]:
             for number in range(frames):
@@ -109,6 +113,16 @@ def write_gif(path: Path, frame: Frame, frames: int, *, fps: float, progress: Pr
             loop=0,
             optimize=False,
         )
+
+
+def _palette(sample: Array) -> Image.Image:
+    """A palette for pictures like `sample`, shape (rows, columns, 3), that keeps thin lines' colours."""
+    lines = np.array([rgb(colour) for colour in LINE_COLOURS])
+    common = Image.fromarray(sample).quantize(GIF_COLOURS - len(lines), dither=Image.Dither.NONE)
+    colours = common.getpalette() or []
+    palette = Image.new("P", (1, 1))
+    palette.putpalette(colours[: 3 * (GIF_COLOURS - len(lines))] + [int(c) for c in lines.flat])
+    return palette
 
 
 def write_png(path: Path, pixels: Array) -> None:

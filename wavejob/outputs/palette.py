@@ -30,6 +30,8 @@ START = "#59636e"
 # Running probabilities: colour, dash, marker.
 CURVES = (("#0072b2", "-", "o"), ("#c04a00", (0, (5, 2)), "s"), ("#5a3d8a", (0, (1.5, 1.5)), "^"))
 
+LINE_COLOURS = (PAPER, INK, POTENTIAL, ENERGY, DETECTOR, REGION, PATH, CLOSE_UP, *(c for c, _, _ in CURVES))
+
 VERDICT_MARKS = {"trusted": "\u2713", "doubtful": "?", "failed": "\u2717"}
 
 # The stripes of a phase this short are mixed with the envelope's colour so that they do not flicker.
