@@ -22,9 +22,7 @@ def packet(x: np.ndarray, at: float, sigma: float, k: float, t: float = 0.0) -> 
 
 
 def free(axis: Axis, psi0: np.ndarray, time: float, steps: int = 1, **options: object) -> Stepper:
-    stepper = plan(
-        Hamiltonian(Grid((axis,)), (1.0,)), STRANG, time / steps, psi0[None, None] + 0j, **options
-    )
+    stepper = plan(Hamiltonian(Grid((axis,)), (1.0,)), STRANG, time / steps, psi0[None, None] + 0j, **options)
     evolve(stepper, steps=steps)
     return stepper
 
@@ -65,10 +63,10 @@ def test_levels_between_walls():
 
 
 def test_one_step_is_the_short_time_propagator():
-    """Source: Feynman & Hibbs, Quantum Mechanics and Path Integrals (1965), eq. 2-34, with V in trapezium form.
+    """Source: Feynman & Hibbs, Quantum Mechanics and Path Integrals (1965), section 2-4, V by trapezium rule.
 
-    The kernel sqrt(m / 2 pi i tau) exp(i m (x - x')^2 / 2 tau - i tau [V(x) + V(x')] / 2) summed over the grid. The
-    sum equals the integral while the kernel's local wave number m |x - x'| / tau stays below pi / dx.
+    The kernel sqrt(m / 2 pi i tau) exp(i m (x - x')^2 / 2 tau - i tau [V(x) + V(x')] / 2) summed over the
+    grid. The sum equals the integral while its local wave number m |x - x'| / tau stays below pi / dx.
     """
     tau, mass, axis = 2.0, 1.3, Axis("x", -60.0, 60.0, 2048)
     x = axis.x
@@ -109,7 +107,7 @@ def test_norm_and_absorbed_are_one(splitting, parts):
 
 
 def test_layers_that_cross_in_a_corner_share_what_they_take():
-    """By symmetry of the set-up: two equal layers on a square take equal parts, and nothing is booked twice."""
+    """By symmetry: two equal layers on a square take equal parts, and nothing is booked twice."""
     axes = Axis("x", -16.0, 16.0, 64), Axis("y", -16.0, 16.0, 64)
     layers = tuple(
         type(layer)(f"{axis.name}.{layer.name[2:]}", i, layer.first, layer.rate, layer.slope)

@@ -67,9 +67,7 @@ X = AXIS.x[None, None]
 
 
 def static() -> Part:
-    return Part(
-        "position", lambda _: 1.5 / np.cosh(X) ** 2, lambda _: (-3 * np.tanh(X) / np.cosh(X) ** 2,)
-    )
+    return Part("position", lambda _: 1.5 / np.cosh(X) ** 2, lambda _: (-3 * np.tanh(X) / np.cosh(X) ** 2,))
 
 
 def trap() -> Part:

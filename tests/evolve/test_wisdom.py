@@ -50,7 +50,8 @@ def test_other_precision_or_shape_has_its_own_file(tmp_path):
 
 
 @pytest.mark.parametrize(
-    "text", ["", "not json", "[]", '{"key": 1}', "{}", '{"key": "KEY", "wisdom": ["(rubbish", "", ""]}', "\x00\xff"]
+    "text",
+    ["", "not json", "[]", '{"key": 1}', "{}", '{"key": "KEY", "wisdom": ["(rubbish", "", ""]}', "\x00\xff"],
 )
 def test_a_corrupt_file_is_replaced(tmp_path, text, caplog):
     good = run(cache=tmp_path)

@@ -48,7 +48,7 @@ class Factor:
         self._moves = any(part.moves for part in self._timed)
         self._scales = self._scales_at(start)
         self.tallies = tallies(hamiltonian, psi)
-        self._damping = [tally.factor(share) for tally in self.tallies]
+        self._damping = [tally.damping(share) for tally in self.tallies]
 
     def refresh(self, t: float, absorbed: dict[str, Array]) -> None:
         """Make `table` that of time `t`; nothing to do where no f(t) has changed."""
@@ -83,13 +83,18 @@ class Factor:
         """Write the factor of time `t` to `table`."""
         raise NotImplementedError
 
+    def _stiffen(self, energy: Array) -> None:
+        """Add what the layers' own squared slopes do to the energy: -squeeze (-i rate')^2 / m."""
+        for tally in self.tallies:
+            energy[tally.where] += self._squeeze / self._hamiltonian.masses[tally.layer.axis] * tally.slope**2
+
     def _damp(self, slopes: list[Array]) -> None:
         """Let the layers damp `table`; `slopes` holds dV/dx_a where there is a squared gradient."""
         for tally, damping in zip(self.tallies, self._damping, strict=True):
             if slopes:
                 axis = tally.layer.axis
                 per_mass = self._squeeze / self._hamiltonian.masses[axis]
-                damping = tally.bent_factor(self._share, per_mass, slopes[axis][tally.where])
+                damping = tally.bent_damping(self._share, per_mass, slopes[axis][tally.where])
             self.table[tally.where] *= damping
 
 
@@ -102,6 +107,7 @@ class StaticFactor(Factor):
         super().__init__(hamiltonian, share, squeeze, psi, start)
         values, slopes = _totals(hamiltonian, squeeze, start)
         energy = values.fixed
+        self._stiffen(energy)
         for slope, mass in zip(slopes, hamiltonian.masses, strict=False):
             energy = energy - squeeze / mass * slope.fixed**2
         self.table = np.exp(-1j * share * energy).astype(psi.dtype)
@@ -109,7 +115,7 @@ class StaticFactor(Factor):
 
 
 class SeparableFactor(Factor):
-    """What depends on time is a sum of functions of one coordinate each, so its factor is a product of lines."""
+    """What depends on time is a sum of functions of one coordinate each: its factor is a product of lines."""
 
     def __init__(
         self,
@@ -142,6 +148,7 @@ class PhaseFactor(Factor):
     ) -> None:
         super().__init__(hamiltonian, share, squeeze, psi, start)
         self._values, self._slopes = _totals(hamiltonian, squeeze, start)
+        self._stiffen(self._values.fixed)
         self.table = np.empty(self._values.shape, psi.dtype)
         self._circle = Circle(self._values.shape)
         self._slope_work = [np.empty(self._values.shape) for _ in self._slopes]
@@ -183,7 +190,8 @@ class MatrixFactor(Factor):
 
     def _survival(self, there: Array) -> Array:
         """Each column of a unitary matrix times the damping has the damping as its length."""
-        return super()._survival(there[:, :, 0]).sum(1, keepdims=True)
+        survival: Array = super()._survival(there[:, :, 0]).sum(1, keepdims=True)
+        return survival
 
     def _set(self, t: float) -> None:
         matrix = matrix_exponential(self._values.at(t), self._coupling.at(t), self._share)

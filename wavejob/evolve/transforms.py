@@ -18,7 +18,7 @@ from typing import Literal
 os.environ.setdefault("OMP_WAIT_POLICY", "passive")
 
 import numpy as np
-import pyfftw  # type: ignore[import-untyped]
+import pyfftw
 
 from ..grid import Grid, Transform
 from . import wisdom
@@ -145,7 +145,7 @@ class Spectrum:
     """psi -> its amplitudes on the wave numbers, normalised: sum |a|^2 = sum |psi|^2 * cell.
 
     Periodic axes: psi(x) = sum over k of a_k exp(i k (x - x_0)) / sqrt(L), x_0 the first point, k = `axis.k`.
-    Sine axes: psi(x) = sum over n of a_n sqrt(2 / L) sin(k_n (x - low)), n = 1 ... N, the last mode over sqrt(2).
+    Sine axes: psi(x) = sum over n = 1 ... N of a_n sqrt(2 / L) sin(k_n (x - low)), the last one over sqrt(2).
     """
 
     def __init__(self, settings: Settings) -> None:

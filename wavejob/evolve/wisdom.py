@@ -1,7 +1,7 @@
 """What FFTW learnt about this machine, kept between runs in a cache folder.
 
-One small JSON file for each kind of plan, named by the hash of what it is good for. A cache that cannot be read
-or written costs planning time and nothing else: that is said once, and the run goes on without.
+One small JSON file for each kind of plan, named by the hash of what it is good for. A cache that cannot be
+read or written costs planning time and nothing else: that is said once, and the run goes on without.
 """
 
 from __future__ import annotations
