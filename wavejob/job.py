@@ -99,8 +99,7 @@ class Job:
 
     def write(self, value: float, dimension: str) -> str:
         """A quantity as a user would write it, to four digits."""
-        label = self.units.label(dimension)
-        return f"{self.units.to_file(value, dimension):.4g}" + (f" {label}" if label else "")
+        return self.units.rounded(value, dimension)
 
     @cached_property
     def fingerprint(self) -> str:

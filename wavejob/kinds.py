@@ -40,7 +40,7 @@ FAMILIES: dict[str, dict[str, type[Model]]] = {
     "path": dict(PATHS),
 }
 
-# Kinds and keys of the job-file format that this version reads but cannot carry out; `*` stands for any list place.
+# Kinds and keys of the job-file format that this version reads but cannot carry out; `*` stands for any one.
 NOT_YET: tuple[tuple[str, ...], ...] = (
     ("channels",),
     ("vary",),
@@ -54,10 +54,15 @@ NOT_YET: tuple[tuple[str, ...], ...] = (
     ("edges", "y"),
     ("edges", "z"),
     ("particle", "mass_profile"),
+    ("particle", "mass", "x"),
+    ("particle", "mass", "y"),
+    ("particle", "mass", "z"),
     ("potential", "*", "slits"),
     ("potential", "*", "image"),
     ("potential", "*", "channel"),
+    ("potential", "*", "*", "axis"),
     ("packet", "channel"),
+    ("packet", "*", "axis"),
     ("packet", "eigenstate"),
     ("observables", "*", "transmission"),
     ("observables", "*", "arrival"),

@@ -10,11 +10,11 @@ from typing import Any
 from .job import Job, Particle
 from .kinds import NOT_YET, OBSERVABLES
 from .misfits import misfits
-from .models import NAME, Choice, Item, Reader, shown
+from .models import NAME, Choice, Item, Reader
 from .particles import particle as known_particle
-from .problems import JobFileError, Problem
+from .problems import JobFileError, Problem, shown
 from .reading.merging import Key, Merged, read_with_bases
-from .reading.quantities import Named, QuantityError, Units, unit_names
+from .reading.quantities import Named, QuantityError, Units, unit_names, unknown_name
 from .reading.tree import JobTree, find_tree
 from .reading.tree import shown as shown_path
 from .reading.validation import problem_at, read_as
@@ -54,23 +54,35 @@ def _checked(document: Merged, path: Path, tree: JobTree, trust: bool, text: str
         raise JobFileError(
             [problem_at(document, ("format",), f"format {format_} needs a newer wavejob", "this one reads format 1")]
         )
-    problems, later = _not_yet(document, value)
-    units = _units(document, value)
+    later = list(_not_yet(value))
+    problems = [problem_at(document, key, *_later(value, key), key=True) for key in later]
+    units = _units(document, value, problems)
     names = _names(document, value, units, problems)
     reader = Reader(units, names, open_path=lambda written: tree.inside(written, path, trust=trust))
-    keys, mistakes = read_as(JobKeys, document, reader, _keys_of(reader))
-    problems += [p for p in mistakes if not any(p.key.startswith(key) or p.key == holder for key, holder in later)]
-    if keys is None:
+    skip = [*later, *([("let",)] if _broken(value, names) else [])]
+    keys, mistakes = read_as(JobKeys, document, reader, _keys_of(reader), skip)
+    problems += [p for p in mistakes if not _echoes(p, value, names)]
+    units_wrong = any(p.key.startswith("units") for p in problems)
+    if keys is None or units_wrong or (particle := _particle(document, keys, units, problems)) is None:
         raise JobFileError(problems)
     if keys.observables is None:
         keys = keys.model_copy(update={"observables": _default_observables()})
-    particle = _particle(document, keys, units, problems)
-    if particle is not None:
-        job = Job(tree.job_id(path), path, text, document, keys, units, particle, tree)
-        problems += misfits(job)
-        if not problems:
-            return job
-    raise JobFileError(problems)
+    job = Job(tree.job_id(path), path, text, document, keys, units, particle, tree)
+    problems += misfits(job, [*later, *mistakes.values()])
+    if problems:
+        raise JobFileError(problems)
+    return job
+
+
+def _echoes(problem: Problem, value: dict[str, Any], names: dict[str, Named]) -> bool:
+    """Whether a mistake is the use of a name that `let` defines, but wrongly."""
+    return any(problem.message == unknown_name(name) for name in _broken(value, names))
+
+
+def _broken(value: dict[str, Any], names: dict[str, Named]) -> list[str]:
+    """The names of `let` that could not be read."""
+    let = value.get("let")
+    return [name for name in let if name not in names] if isinstance(let, dict) else ["let"] if let else []
 
 
 def _keys_of(reader: Reader) -> Any:
@@ -86,39 +98,51 @@ def _default_observables() -> list[Item]:
     return [items[name].model_validate({name: {}}) for name in DEFAULT_OBSERVABLES]
 
 
-def _not_yet(document: Merged, value: dict[str, Any]) -> tuple[list[Problem], list[tuple[str, str]]]:
-    """Problems for what is not available yet, and the keys (with those around them) that need no other complaint."""
-    problems, later = [], []
+def _not_yet(value: dict[str, Any]) -> Iterator[Key]:
+    """The paths of what is not available yet, none of them inside another."""
+    found: list[Key] = []
     for pattern in NOT_YET:
-        for path in _matches(value, pattern):
-            problems.append(problem_at(document, path, f"`{path[-1]}` is not available yet", "leave it out", key=True))
-            later.append((dotted(path), dotted(path[:-1])))
-    return problems, later
+        found += [path for path in _matches(value, pattern) if not any(path[: len(f)] == f for f in found)]
+    yield from found
+
+
+def _later(value: Any, path: Key) -> tuple[str, str]:
+    """Message and cure for a key, or a name in a list, that is not available yet."""
+    for part in path:
+        value = value[part]
+    word = value if isinstance(path[-1], int) else path[-1]
+    return f"`{word}` is not available yet", "leave it out"
 
 
 def _matches(value: Any, pattern: tuple[str, ...], path: Key = ()) -> Iterator[Key]:
-    """The paths in `value` that fit `pattern`, where `*` stands for any place of a list."""
+    """The paths in `value` that fit `pattern`, where `*` stands for any key or place of a list."""
     if not pattern:
         yield path
-    elif pattern[0] == "*":
-        for index, item in enumerate(value if isinstance(value, list) else []):
-            if isinstance(item, str) and pattern[1:] == (item,):
-                yield (*path, index)
-            yield from _matches(item, pattern[1:], (*path, index))
-    elif isinstance(value, dict) and pattern[0] in value:
-        yield from _matches(value[pattern[0]], pattern[1:], (*path, pattern[0]))
+        return
+    wanted, rest = pattern[0], pattern[1:]
+    inner = value.items() if isinstance(value, dict) else enumerate(value) if isinstance(value, list) else ()
+    for key, item in inner:
+        if wanted in ("*", key):
+            yield from _matches(item, rest, (*path, key))
+            if rest == (item,):  # a kind that stands there as its name alone
+                yield (*path, key)
 
 
-def _units(document: Merged, value: dict[str, Any]) -> Units:
+def _units(document: Merged, value: dict[str, Any], problems: list[Problem]) -> Units:
+    """The file's units; where they are wrong, some that let the rest be read."""
     written = value.get("units")
-    try:
-        if written is not None and not isinstance(written, (str, dict)):
-            raise QuantityError(
-                f"{shown(written)} is no system of units", "write `natural`, `atomic` or {length: nm, time: fs, energy: meV}"
-            )
-        return Units.from_file(written)
-    except QuantityError as error:
-        raise JobFileError([problem_at(document, ("units",), error.message, error.fix)]) from None
+    if isinstance(written, dict):
+        parts: list[tuple[Key, Any]] = [(("units", kind), {kind: unit}) for kind, unit in written.items()]
+    else:
+        parts = [(("units",), written)]
+    wrong = []
+    for key, part in parts:
+        try:
+            Units.from_file(part)
+        except QuantityError as error:
+            wrong.append(problem_at(document, key, error.message, error.fix, key=error.message.startswith("`units`")))
+    problems += wrong
+    return Units.from_file({"length": "nm", "time": "fs", "energy": "meV"} if wrong else written)
 
 
 def _names(document: Merged, value: dict[str, Any], units: Units, problems: list[Problem]) -> dict[str, Named]:
@@ -128,7 +152,7 @@ def _names(document: Merged, value: dict[str, Any], units: Units, problems: list
     if written is None:
         return names
     if not isinstance(written, dict):
-        problems.append(problem_at(document, ("let",), "`let` is a mapping of names", "write {b2: 3 nm, V0: 300 meV}"))
+        problems.append(problem_at(document, ("let",), f"{shown(written)} stands where names are wanted", "write {b2: 3 nm, V0: 300 meV}"))
         return names
     taken = unit_names() | RESERVED_NAMES | set(JobKeys.keys())
     for name, text in written.items():

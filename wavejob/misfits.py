@@ -3,32 +3,55 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
+
+import numpy as np
 
 from .grid import Axis
 from .job import Job
+from .models import Item
+from .packets.base import Packet, PacketError
 from .packets.file import FilePacket
-from .problems import Problem, nearest
+from .problems import Problem, nearest, shown
 from .reading.merging import Key
 from .reading.quantities import QuantityError
+from .reading.validation import problem_at
+from .reading.yaml_tree import dotted
 from .results import Column
 from .settings import Absorb
+from .shapes import Term
 from .time_shapes import TimeShape
 
 HEAD_ROOM = 1.25  # largest wave number of the grid over the largest of the packet, at the least
+LARGEST = 1e100  # of a potential or a function of time: its square and its products are numbers still
+FINEST = 1e-11  # a spacing, over the distance from 0, below which places lose their digits
+SHORTEST = 1e-8  # a duration, over the time since 0, below which times lose their digits
+PLACES, TIMES, INSTANTS = 2001, 2001, 41  # looked at: along x, along t, and along t for all x at once
 
 
-def misfits(job: Job) -> list[Problem]:
-    """Everything in a job that does not fit together."""
-    return [
+def misfits(job: Job, lost: Sequence[Key] = ()) -> list[Problem]:
+    """Everything in a job that does not fit together.
+
+    `lost` are the paths of the file that could not be read; nothing is said about what rests on them.
+    """
+    found = [
         *_names(job),
+        *_grid(job),
         *_potential(job),
         *_edges(job),
-        *_packet(job),
+        *_packet(job, job.packet, ("packet", job.keys.packet.kind)),
         *_observables(job),
         *_evolution(job),
-        *_expectations(job),
+        *_pictures(job),
     ]
+    if not {"observables", "edges"} & {path[0] for path in lost if path}:  # what results there are is known
+        found += [*_stop_when(job), *_expectations(job)]
+    gone = [dotted(path) for path in lost]
+    return [p for p in found if not any(_within(p.key, key) or _within(key, p.key) for key in gone)]
+
+
+def _within(key: str, outer: str) -> bool:
+    return key == outer or key.startswith((f"{outer}.", f"{outer}["))
 
 
 def axis_as_written(job: Job) -> Axis:
@@ -40,127 +63,225 @@ def axis_as_written(job: Job) -> Axis:
 
 
 def _names(job: Job) -> Iterator[Problem]:
-    """Columns, results and files must not share a name."""
-    taken: set[str] = set()
+    """Columns, results and files must not share a name, not even where a file system does not tell a from A."""
+    taken = {"time": "time"}
     for index, observable in enumerate(job.observables):
         made = (*observable.figures(job.outline), *observable.columns(job.outline))
-        names = {column.name for column in made} | {getattr(observable, "name", "")} - {""}
-        if names & taken:
+        own = getattr(observable, "name", "")
+        names = {column.name for column in made} | ({own} if own else set())
+        shared = sorted(name for name in names if name.lower() in taken)
+        if shared:
+            kind = job.keys.observables[index].kind if job.keys.observables else ""
+            other = taken[shared[0].lower()]
+            also = "" if other == shared[0] else f", and files cannot tell it from `{shared[0]}`"
             yield job.problem(
-                ("observables", index),
-                f"another observable already yields `{min(names & taken)}`",
-                "give it another `name:`, or drop one of the two",
+                ("observables", index, kind, "name") if own else ("observables", index),
+                f"the name `{other}` is in use before{also}",
+                "choose another `name:`" if own else "drop one of the two",
             )
-        taken |= names
+        taken |= {name.lower(): name for name in names}
+
+
+def _grid(job: Job) -> Iterator[Problem]:
+    axis, keys = axis_as_written(job), job.keys.grid.x
+    points = axis.points if keys.points or keys.spacing else 1000
+    if axis.length / points < FINEST * max(abs(axis.low), abs(axis.high)):
+        yield job.problem(
+            ("grid", "x"), "the grid is so far from 0 that its places lose their digits", "move 0 nearer to the grid"
+        )
 
 
 def _potential(job: Job) -> Iterator[Problem]:
     axis = axis_as_written(job)
-    start, stop = job.evolve.start, job.evolve.until
     for index, item in enumerate(job.keys.potential):
+        where: Key = ("potential", index, item.kind)
         wrong = item.body.misfit(job.setting, axis.low, axis.high)
-        if wrong:
-            yield job.problem(("potential", index, item.kind), *wrong)
         shapes: list[tuple[Key, TimeShape | None]] = [
-            (("in_time",), item.in_time.body if item.in_time else None),
-            (("path", "x"), item.path.x.body if item.path else None),
+            (("potential", index, "in_time"), item.in_time.body if item.in_time else None),
+            (("potential", index, "path", "x"), item.path.x.body if item.path else None),
         ]
-        for key, shape in shapes:
-            if shape is None:
-                continue
-            low, high = shape.span(job.units)
-            if low > start or high < stop:
-                yield job.problem(
-                    ("potential", index, *key),
-                    f"the table covers {job.write(low, 'time')} to {job.write(high, 'time')}, less than the run",
-                    "extend the table or shorten the run",
-                )
+        of_time = [problem for key, shape in shapes if shape for problem in _in_time(job, key, shape)]
+        yield from of_time
+        if wrong:
+            yield job.problem(where, *wrong)
+        elif not of_time:
+            yield from _term(job, where, item.term(job.setting), axis)
+
+
+def _in_time(job: Job, key: Key, shape: TimeShape) -> Iterator[Problem]:
+    """What is wrong with a function of time during the run."""
+    start, stop = job.evolve.start, job.evolve.until
+    low, high = shape.span(job.units)
+    if low > start or high < stop:
+        yield job.problem(
+            key,
+            f"the table covers {job.write(low, 'time')} to {job.write(high, 'time')}, less than the run",
+            "extend the table or shorten the run",
+        )
+        return
+    value = shape.function(job.units, "number" if key[-1] == "in_time" else "length")
+    for t in np.linspace(start, stop, TIMES):
+        with np.errstate(all="ignore"):
+            amount = value(float(t))
+        if not abs(amount) < LARGEST:
+            said = f"the function of time {_size(amount)} at t = {job.write(float(t), 'time')}"
+            yield job.problem(key, said, "keep it finite over the whole run")
+            return
+
+
+def _term(job: Job, key: Key, term: Term, axis: Axis) -> Iterator[Problem]:
+    """What is wrong with a term of the potential on the grid, during the run."""
+    breaks = term.shape.breaks
+    if breaks is not None and term.path is None:
+        if np.all(breaks.positions >= axis.high) or np.all(breaks.positions <= axis.low):
+            yield job.problem(key, "all its edges lie outside the grid", f"keep it within {_span(job, axis)}")
+        return
+    x = np.linspace(axis.low, axis.high, PLACES)
+    for t in np.linspace(job.evolve.start, job.evolve.until, INSTANTS) if term.moves else [job.evolve.start]:
+        for what, field in (("the potential", term.shape.value), ("the slope of the potential", term.shape.slope)):
+            with np.errstate(all="ignore"):
+                values = np.broadcast_to(field(x[1:-1] - term.shift(t), t), PLACES - 2)
+            bad = np.flatnonzero(~(np.abs(values) < LARGEST))
+            if bad.size:
+                at = f"x = {job.write(float(x[bad[0] + 1]), 'length')}"
+                when = f", t = {job.write(float(t), 'time')}" if term.moves else ""
+                said = f"{what} {_size(float(values[bad[0]]))} at {at}{when}"
+                yield job.problem(key, said, "keep it finite over the whole grid")
+                return
+
+
+def _size(value: float) -> str:
+    return f"is as large as {value:.1e}" if math.isfinite(value) else "is not finite"
+
+
+def _span(job: Job, axis: Axis) -> str:
+    return f"{job.write(axis.low, 'length')} to {job.write(axis.high, 'length')}"
 
 
 def _edges(job: Job) -> Iterator[Problem]:
     axis, ends = axis_as_written(job), job.keys.edges.x
     depths = [end.absorb if isinstance(end, Absorb) else 0.0 for end in (ends.low, ends.high)]
     if sum(depths) > 0.8 * axis.length:
-        yield job.problem(("edges", "x"), "the absorbing layers fill the grid", "make them thinner or the grid longer")
+        said = f"the absorbing layers take {job.write(sum(depths), 'length')} of the {job.write(axis.length, 'length')} of the grid"
+        yield job.problem(("edges", "x"), said, "make them thinner or the grid longer")
 
 
-def _packet(job: Job) -> Iterator[Problem]:
-    axis, packet, kind = axis_as_written(job), job.packet, job.keys.packet.kind
-    where = ("packet", kind)
-    extent = packet.extent()
+def _packet(job: Job, packet: Packet, where: Key) -> Iterator[Problem]:
+    """What keeps a packet from standing on the grid."""
+    axis, keys = axis_as_written(job), job.keys.grid.x
+    try:
+        packet.check(job.particle.mass)
+    except PacketError as error:
+        yield job.problem(where, error.message, error.fix)
+        return
     if isinstance(packet, FilePacket):
         places = packet.places(job.units)
         if places[0] < axis.low - axis.spacing or places[-1] > axis.high + axis.spacing:
-            yield job.problem(where, "the stored field is wider than the grid", "extend the grid")
+            stored = f"{job.write(float(places[0]), 'length')} to {job.write(float(places[-1]), 'length')}"
+            said = f"the stored field reaches from {stored}, the grid from {_span(job, axis)}"
+            yield job.problem((*where, "path"), said, "extend the grid")
         return
+    extent = packet.extent()
     if extent and (extent[0] < axis.low or extent[1] > axis.high):
+        needs = f"{job.write(extent[0], 'length')} to {job.write(extent[1], 'length')}"
         yield job.problem(
             where,
-            f"the packet needs room from {job.write(extent[0], 'length')} to {job.write(extent[1], 'length')} "
-            f"(6 sigma on both sides), the grid spans {job.write(axis.low, 'length')} to "
-            f"{job.write(axis.high, 'length')}",
+            f"the packet needs room from {needs} (6 sigma on both sides), the grid reaches from {_span(job, axis)}",
             "move the packet, narrow it, or extend the grid",
         )
     k = packet.widest_wavenumber(job.particle.mass)
-    keys = job.keys.grid.x
     if k is not None and (keys.points or keys.spacing) and k * HEAD_ROOM > axis.k_max:
         needed = math.ceil(k * HEAD_ROOM * axis.length / math.pi)
+        fix = f"give at least {needed} points" if keys.points else f"give at most {job.write(axis.length / needed, 'length')}"
+        key = "points" if keys.points else "spacing"
         yield job.problem(
-            ("grid", "x", "points" if keys.points else "spacing"),
+            ("grid", "x", key),
             f"the packet has wave numbers up to {job.write(k, 'wavenumber')}, the grid holds "
             f"{job.write(axis.k_max, 'wavenumber')}",
-            f"give at least {needed} points, or leave `points` out",
+            f"{fix}, or leave `{key}` out",
         )
 
 
 def _observables(job: Job) -> Iterator[Problem]:
     axis = axis_as_written(job)
     for index, observable in enumerate(job.observables):
+        kind = job.keys.observables[index].kind if job.keys.observables else ""
         wrong = observable.misplaced(axis)
         if wrong:
-            kind = job.keys.observables[index].kind if job.keys.observables else ""
             yield job.problem(("observables", index, kind, wrong[0]), wrong[1], wrong[2])
-        every = getattr(observable, "every", None)
-        if every is not None and every > job.evolve.until - job.evolve.start:
-            yield job.problem(("observables", index), "`every` is longer than the run", "shorten it")
+        yield from _spaced(job, getattr(observable, "every", None), ("observables", index, kind, "every"))
+        state = getattr(observable, "with_", None)
+        if isinstance(state, Item):
+            yield from _packet(job, state.body, ("observables", index, kind, "with", state.kind))
+
+
+def _spaced(job: Job, every: float | None, key: Key) -> Iterator[Problem]:
+    """A problem where the time between two is longer than the run."""
+    duration = job.evolve.until - job.evolve.start
+    if every is not None and every > duration * (1 + 1e-9):
+        yield job.problem(key, f"`{key[-1]}` is longer than the run ({job.write(duration, 'time')})", "shorten it")
 
 
 def _evolution(job: Job) -> Iterator[Problem]:
     evolve = job.evolve
     duration = evolve.until - evolve.start
+    if duration < SHORTEST * max(abs(evolve.start), abs(evolve.until)):
+        yield job.problem(("evolve", "until"), "the run is so far from t = 0 that times lose their digits", "start at 0")
+        return
     if evolve.step is not None:
         steps = duration / evolve.step
-        if steps > 2**40:
-            yield job.problem(("evolve", "step"), f"{steps:.3g} steps are needed", "give a larger step or leave it out")
-        elif abs(steps - round(steps)) > 1e-6 * max(steps, 1):
-            near = max(round(steps), 1)
+        if evolve.step > duration * (1 + 1e-9):
+            yield from _spaced(job, evolve.step, ("evolve", "step"))
+            return
+        if abs(steps - round(steps)) > 1e-6 * max(steps, 1):
             yield job.problem(
                 ("evolve", "step"),
-                f"`until` is not a whole number of steps ({steps:.6g})",
-                f"a step of {job.units.write(duration / near, 'time')} gives {near}",
+                f"the run is {steps:.6g} steps long, not a whole number of them",
+                f"a step of {_exact(job, duration / round(steps))} makes {round(steps)}",
             )
         if evolve.record is not None:
             per = evolve.record / evolve.step
-            if per < 1 - 1e-9 or abs(per - round(per)) > 1e-6 * per:
+            if abs(per - round(per)) > 1e-6 * per:
                 yield job.problem(
                     ("evolve", "record"),
-                    f"`record` is not a whole number of steps ({per:.6g})",
-                    f"write {job.units.write(max(round(per), 1) * evolve.step, 'time')}",
+                    f"`record` is {per:.6g} steps long, not a whole number of them",
+                    f"write {_exact(job, max(round(per), 1) * evolve.step)}",
                 )
-    if evolve.record is not None and evolve.record > duration:
-        yield job.problem(("evolve", "record"), "`record` is longer than the run", "shorten it")
-    for name, bound in evolve.stop_when.items():
+    yield from _spaced(job, evolve.record, ("evolve", "record"))
+
+
+def _exact(job: Job, time: float) -> str:
+    """A time to as many digits as make a whole number of steps."""
+    return f"{job.units.to_file(time, 'time'):.10g} {job.units.label('time')}".rstrip()
+
+
+def _stop_when(job: Job) -> Iterator[Problem]:
+    for name, bound in job.evolve.stop_when.items():
         path: Key = ("evolve", "stop_when", name)
         column = job.columns.get(name)
         if column is None:
-            yield job.problem(path, *_unknown(name, "series column", list(job.columns)))
+            message, fix = _unknown(name, "series column", list(job.columns))
+            yield problem_at(job.document, path, message, fix, key=True)
             continue
         side = "below" if bound.below is not None else "above"
         yield from _value(job, (*path, side), getattr(bound, side), column)
-    if not isinstance(job.keys.film, str) and job.keys.film.view is not None:
-        view, axis = job.keys.film.view.x, axis_as_written(job)
+
+
+def _pictures(job: Job) -> Iterator[Problem]:
+    axis = axis_as_written(job)
+    if job.keys.snapshots is not None:
+        yield from _spaced(job, job.keys.snapshots.every, ("snapshots", "every"))
+    if isinstance(job.keys.film, str):
+        return
+    yield from _spaced(job, job.keys.film.every, ("film", "every"))
+    if job.keys.film.view is not None:
+        view = job.keys.film.view.x
         if view.start < axis.low or view.stop > axis.high:
-            yield job.problem(("film", "view", "x"), "the view reaches beyond the grid", "keep it within the grid")
+            key = "from" if view.start < axis.low else "to"
+            said = f"the view reaches beyond the grid ({_span(job, axis)})"
+            yield job.problem(("film", "view", "x", key), said, "keep it within the grid")
+        elif view.stop - view.start < 2 * axis.length / (axis.points if job.keys.grid.x.points else 1000):
+            yield job.problem(("film", "view", "x"), "the view is narrower than two grid points", "widen it")
 
 
 def _expectations(job: Job) -> Iterator[Problem]:
@@ -170,17 +291,34 @@ def _expectations(job: Job) -> Iterator[Problem]:
         if figure is None:
             yield job.problem((*path, "result"), *_unknown(expect.result, "result", list(job.figures)))
             continue
-        for key in ("equals", "tolerance", "below", "above"):
-            if getattr(expect, key) is not None:
-                yield from _value(job, (*path, key), getattr(expect, key), figure)
+        wrong = [
+            problem
+            for key in ("equals", "tolerance", "below", "above")
+            if getattr(expect, key) is not None
+            for problem in _value(job, (*path, key), getattr(expect, key), figure)
+        ]
         for place, value in enumerate(expect.within or []):
-            yield from _value(job, (*path, "within", place), value, figure)
+            wrong += _value(job, (*path, "within", place), value, figure)
+        yield from wrong
+        if wrong:
+            continue
+        if expect.tolerance is not None and job.units.read(expect.tolerance, figure.dimension) < 0:
+            yield job.problem((*path, "tolerance"), "a tolerance below 0 is never met", "write 0 or more")
+        if expect.within:
+            low, high = (job.units.read(value, figure.dimension) for value in expect.within)
+            if low > high:
+                yield job.problem((*path, "within"), "the lowest value is above the highest", "swap them")
 
 
 def _unknown(name: str, what: str, known: list[str]) -> tuple[str, str]:
+    said = f"this job has no {what} {shown(name)}"
+    begun = [k for k in known if k.startswith(f"{name}.")]
     near = nearest(name, known)
-    listed = ", ".join(f"`{k}`" for k in known[:12]) + (", ..." if len(known) > 12 else "")
-    return f"this job has no {what} `{name}`", f"did you mean `{near}`?" if near else f"there are: {listed}"
+    if begun:
+        return said, "there are: " + ", ".join(f"`{k}`" for k in begun)
+    if near or not known:
+        return said, f"did you mean `{near}`?" if near else "add an observable"
+    return said, "there are: " + ", ".join(f"`{k}`" for k in known[:12]) + (", ..." if len(known) > 12 else "")
 
 
 def _value(job: Job, path: Key, value: object, column: Column) -> Iterator[Problem]:

@@ -27,10 +27,11 @@ from pydantic.functional_validators import BeforeValidator
 from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import PydanticCustomError, core_schema
 
-from .problems import nearest
+from .problems import nearest, shown
 from .reading.formulas import Formula, FormulaError, parse
 from .reading.quantities import Named, QuantityError, Units
 
+SMALLEST, LARGEST = 1e-40, 1e40  # of quantities other than 0, in scaled units: their products are numbers still
 NAME = re.compile(r"[A-Za-z][A-Za-z0-9_-]{0,40}")
 
 
@@ -44,18 +45,18 @@ class Reader:
     read_as: dict[int, type[BaseModel]] = field(default_factory=dict)  # id of a mapping -> the model it was read as
 
 
-def refuse(message: str, fix: str = "") -> PydanticCustomError:
-    """The error a validator raises; the texts reach the user as they are."""
-    return PydanticCustomError("wavejob", "{message}", {"message": message, "fix": fix})
+def refuse(message: str, fix: str = "", at: str | int | None = None, column: int = 0) -> PydanticCustomError:
+    """The error a validator raises; the texts reach the user as they are.
+
+    `at` names the key of a mapping (or the place in a list) that is to blame, `column` a character of its text.
+    """
+    return PydanticCustomError("wavejob", "{message}", {"message": message, "fix": fix, "at": at, "column": column})
 
 
-def shown(value: Any) -> str:
-    """What the user wrote, between back-ticks and cut to a readable length."""
-    text = "yes" if value is True else "no" if value is False else "nothing" if value is None else str(value)
-    if isinstance(value, dict):
-        text = "{" + ", ".join(f"{k}: ..." for k in value) + "}"
-    text = " ".join(text.split())
-    return f"`{text if len(text) <= 60 else text[:57] + '...'}`"
+def in_order(model: Any, first: str, last: str, names: tuple[str, str] = ("from", "to")) -> None:
+    """Refuses a model whose field `first` does not lie before its field `last`."""
+    if not getattr(model, first) < getattr(model, last):
+        raise refuse(f"`{names[1]}` must be greater than `{names[0]}`", "swap them, or change one", at=names[1])
 
 
 class Model(BaseModel):
@@ -95,6 +96,8 @@ class Quantity:
             number = reader.units.read(value, self.dimension, reader.names)
         except QuantityError as error:
             raise refuse(error.message, error.fix) from None
+        if self.dimension != "number" and number and not SMALLEST <= abs(number) <= LARGEST:
+            raise refuse(f"{shown(value)} is beyond all that can be computed with", f"write {self.wanted()}")
         if self.above is not None and not number > self.above:
             raise refuse(f"must be greater than {self.above:g}, got {shown(value)}", "")
         if self.at_least is not None and not number >= self.at_least:
@@ -142,6 +145,21 @@ def phrase(dimension: str) -> str:
 
 def example(dimension: str) -> str:
     return PHRASES[dimension][1]
+
+
+def unit_of(dimension: str) -> BeforeValidator:
+    """Checks that a text is a unit of `dimension`, as the file's units allow."""
+
+    def read(value: Any, info: ValidationInfo) -> Any:
+        if not isinstance(value, str):
+            raise refuse(f"{shown(value)} is no unit", f"write one, as in `{example(dimension)}`")
+        try:
+            info.context.units.read(f"1 {value}", dimension)
+        except QuantityError as error:
+            raise refuse(error.message, error.fix) from None
+        return value
+
+    return BeforeValidator(read)
 
 
 Number = Annotated[float, Quantity("number")]
@@ -198,15 +216,14 @@ def one_of(value: Any, table: Mapping[str, Any], what: str, beside: tuple[str, .
     if len(kinds) == 1:
         return kinds[0]
     if kinds:
-        raise refuse(
-            f"two kinds in one {what}: {', '.join(f'`{k}`' for k in kinds)}", "give each an item of its own"
-        )
+        listed = " and ".join(f"`{kind}`" for kind in kinds)
+        raise refuse(f"{listed} are {len(kinds)} kinds in one {what}", "keep one of them here", at=kinds[1])
     strange = [key for key in value if key not in beside]
     if strange:
         near = nearest(strange[0], [*table, *beside])
         said = f"no {what} called `{strange[0]}`"
-        raise refuse(said, f"did you mean `{near}`?" if near else f"there are: {names}")
-    raise refuse(f"a {what} needs one kind", f"there are: {names}")
+        raise refuse(said, f"did you mean `{near}`?" if near else f"there are: {names}", at=strange[0])
+    raise refuse(f"a {what} needs one kind with its parameters", f"there are: {names}")
 
 
 class FormulaText:
@@ -214,10 +231,22 @@ class FormulaText:
 
     @staticmethod
     def parsed(text: str, names: frozenset[str]) -> Formula:
+        """The formula that stands under the key `value`."""
         try:
             return parse(text, names)
         except FormulaError as error:
-            raise refuse(f"{error.message} at character {error.column + 1} of the formula", error.fix) from None
+            raise refuse(error.message, error.fix, at="value", column=error.column) from None
+
+    @staticmethod
+    def parameters(value: Any, known: tuple[str, ...]) -> None:
+        """Refuses what cannot be the name of a parameter of a formula of the variables `known`."""
+        for name in value if isinstance(value, dict) else ():
+            if not NAME.fullmatch(name) or "-" in name:
+                fix = "use a letter, then letters, digits or `_`; a formula with a comma in it stands in quotes"
+                raise refuse(f"`{name}` cannot be the name of a parameter", fix, at=name)
+            if name in (*known, "y", "z", "pi"):
+                fix = "choose another name, it has a meaning of its own"
+                raise refuse(f"`{name}` cannot be a parameter of a formula", fix, at=name)
 
 
 class NamedQuantity:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from typing import Any
 
 
 @dataclass(frozen=True, order=True)
@@ -64,6 +65,18 @@ def nearest(word: str, words: Iterable[str]) -> str | None:
     spelt = {known.lower(): known for known in words}
     found = get_close_matches(word.lower(), spelt, 1, 0.6)
     return spelt[found[0]] if found else None
+
+
+def shown(value: Any) -> str:
+    """What the user wrote, between back-ticks and cut to a readable length."""
+    if value is None or value == "":
+        return "nothing"
+    if isinstance(value, dict):
+        return "a mapping"
+    if isinstance(value, list):
+        return "a list"
+    text = {True: "yes", False: "no"}[value] if isinstance(value, bool) else " ".join(str(value).split())
+    return f"`{text if len(text) <= 60 else text[:57] + '...'}`"
 
 
 def in_order(problems: Iterable[Problem]) -> list[Problem]:

@@ -21,12 +21,12 @@ from .models import (
     Name,
     PositiveEnergy,
     Time,
+    in_order,
     refuse,
-    shown,
 )
 from .packets.item import PACKETS
 from .potentials.item import POTENTIALS, TermItem
-from .problems import nearest
+from .problems import nearest, shown
 
 MAX_POINTS = 2**26
 
@@ -34,11 +34,13 @@ MAX_POINTS = 2**26
 def whole(least: int, most: int) -> Any:
     """A whole number between two bounds."""
 
+    accepted = f"write `{least}`" if least == most else f"write one from {least} to {most}"
+
     def read(value: Any) -> int:
         if isinstance(value, bool) or not isinstance(value, int):
-            raise refuse(f"{shown(value)} is no whole number", f"write one from {least} to {most}")
+            raise refuse(f"{shown(value)} is no whole number", accepted)
         if not least <= value <= most:
-            raise refuse(f"must be from {least} to {most}, got {shown(value)}", "")
+            raise refuse(f"{shown(value)} is out of range", accepted)
         return value
 
     return [BeforeValidator(read), WithJsonSchema({"type": "integer", "minimum": least, "maximum": most})]
@@ -67,12 +69,13 @@ class AxisKeys(Model):
 
     @model_validator(mode="after")
     def _ordered(self) -> AxisKeys:
-        if not self.start < self.stop:
-            raise refuse("`from` must lie before `to`", "swap them")
+        in_order(self, "start", "stop")
         if self.points is not None and self.spacing is not None:
-            raise refuse("`points` and `spacing` say the same thing", "keep one of them, or neither")
+            raise refuse("`points` and `spacing` say the same thing", "keep one of them, or neither", at="spacing")
         if self.spacing is not None and not 8 <= (self.stop - self.start) / self.spacing <= MAX_POINTS:
-            raise refuse("`spacing` does not give from 8 to 67108864 points", "change it")
+            points = f"{(self.stop - self.start) / self.spacing:.4g}"
+            said = f"`spacing` makes {points} points of the axis, from 8 to {MAX_POINTS} are accepted"
+            raise refuse(said, "change it, or leave it out", at="spacing")
         return self
 
 
@@ -90,8 +93,7 @@ class Energies(Model):
 
     @model_validator(mode="after")
     def _ordered(self) -> Energies:
-        if not self.start < self.stop:
-            raise refuse("`from` must lie before `to`", "swap them")
+        in_order(self, "start", "stop")
         return self
 
 
@@ -110,7 +112,9 @@ def word_or(words: tuple[str, ...], model: type[Model], what: str) -> Any:
             return value
         listed = ", ".join(f"`{word}`" for word in words)
         near = nearest(value, words) if isinstance(value, str) else None
-        raise refuse(f"{shown(value)} is no {what}", f"did you mean `{near}`?" if near else f"there are: {listed}, {{...}}")
+        keys = ", ".join(f"{key}: ..." for key in model.keys())
+        fix = f"did you mean `{near}`?" if near else f"write {listed} or {{{keys}}}"
+        raise refuse(f"{shown(value)} is no {what}", fix)
 
     word = Annotated[Literal[words], Tag("word")]
     mapping = Annotated[model, Tag("mapping")]
@@ -136,19 +140,22 @@ class EndsKeys(Model):
     @model_validator(mode="before")
     @classmethod
     def _both(cls, value: Any) -> Any:
-        """`wall` or `{absorb: ...}` for both ends at once."""
+        """A word or `{absorb: ...}` for both ends at once."""
         if isinstance(value, str):
             if value not in ("wrap", "wall"):
-                raise refuse(f"no edge called {shown(value)}", "there are: `wrap`, `wall`, `{absorb: depth}`")
+                near = nearest(value, ("wrap", "wall"))
+                fix = f"did you mean `{near}`?" if near else "there are: `wrap`, `wall`, `{absorb: depth}`"
+                raise refuse(f"{shown(value)} is no edge", fix)
             return {"low": value, "high": value}
-        if isinstance(value, dict) and value and not {"low", "high"} & value.keys():
+        if isinstance(value, dict) and value and value.keys() <= set(Absorb.keys()):
             return {"low": value, "high": value}
         return value
 
     @model_validator(mode="after")
     def _agree(self) -> EndsKeys:
         if (self.low == "wrap" and self.high == "wall") or (self.low == "wall" and self.high == "wrap"):
-            raise refuse("one end cannot wrap while the other is a wall", "make both `wall`, or absorb at one")
+            fix = "make both `wall`, or absorb at one"
+            raise refuse("one end cannot wrap while the other is a wall", fix, at="high")
         return self
 
 
@@ -190,7 +197,7 @@ class Bound(Model):
     @model_validator(mode="after")
     def _one(self) -> Bound:
         if (self.below is None) == (self.above is None):
-            raise refuse("exactly one of `below` and `above` is needed", "keep one of them")
+            raise refuse("a bound needs either `below` or `above`", "write exactly one of them")
         return self
 
 
@@ -222,9 +229,9 @@ class EvolveKeys(Model):
     @model_validator(mode="after")
     def _ordered(self) -> EvolveKeys:
         if not self.until > self.start:
-            raise refuse("`until` must come after `start`", "give a later time")
+            raise refuse("`until` must come after `start`", "give a later time", at="until")
         if self.step is not None and self.accuracy is not None:
-            raise refuse("`step` and `accuracy` both set the time step", "keep one of them")
+            raise refuse("`step` and `accuracy` both set the time step", "keep one of them", at="accuracy")
         return self
 
 
@@ -236,8 +243,7 @@ class ViewKeys(Model):
 
     @model_validator(mode="after")
     def _ordered(self) -> ViewKeys:
-        if not self.start < self.stop:
-            raise refuse("`from` must lie before `to`", "swap them")
+        in_order(self, "start", "stop")
         return self
 
 
@@ -283,7 +289,9 @@ class ExpectKeys(Model):
     def _one(self) -> ExpectKeys:
         given = [n for n in ("equals", "below", "above", "within") if getattr(self, n) is not None]
         if len(given) != 1:
-            raise refuse("exactly one of `equals`, `below`, `above` and `within` is needed", "keep one of them")
+            said = f"{' and '.join(f'`{n}`' for n in given)} stand together" if given else "nothing is expected"
+            fix = "write exactly one of `equals`, `below`, `above` and `within`"
+            raise refuse(said, fix, at=given[1] if given else None)
         if (self.equals is None) != (self.tolerance is None):
             missing = "tolerance" if self.tolerance is None else "equals"
             raise refuse(f"`{missing}` is missing", "`equals` and `tolerance` go together")
@@ -294,6 +302,17 @@ def _tags(value: Any) -> Any:
     if isinstance(value, list) and all(isinstance(tag, str) and tag for tag in value) and len(value) <= 50:
         return value
     raise refuse(f"{shown(value)} is no list of tags", "write words, such as `[tunnelling, stack-A]`")
+
+
+def _only_none(what: str) -> BeforeValidator:
+    """Refuses everything but `none`, by name."""
+
+    def read(value: Any) -> Any:
+        if value != "none":
+            raise refuse(f"{what} not available yet", "write `none`, or leave it out")
+        return value
+
+    return BeforeValidator(read)
 
 
 UNITS_SCHEMA = {
@@ -334,8 +353,12 @@ class JobKeys(Model):
     observables: list[Annotated[Item, Choice(OBSERVABLES, "observable", bare=True)]] | None = Field(
         None, description="what is measured; left out: norm, position, energy", max_length=200
     )
-    classical: Literal["none"] | None = Field(None, description="the F = m a companion; `none` to skip")
-    error_bars: Literal["none"] | None = Field(None, description="numerical error bars; `none` to skip")
+    classical: Annotated[Literal["none"] | None, _only_none("the classical companion is")] = Field(
+        None, description="the F = m a companion; `none` to skip"
+    )
+    error_bars: Annotated[Literal["none"] | None, _only_none("error bars are")] = Field(
+        None, description="numerical error bars; `none` to skip"
+    )
     film: FilmChoice = Field(default_factory=FilmKeys, description="the animation; `none` to skip")
     snapshots: SnapshotKeys | None = Field(None, description="store the field; left out: the final state only")
     expect: list[ExpectKeys] = Field(default_factory=list, description="checks on the results", max_length=500)

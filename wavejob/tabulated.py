@@ -12,7 +12,8 @@ import numpy as np
 from pydantic import Field, ValidationInfo, WithJsonSchema
 from pydantic.functional_validators import BeforeValidator
 
-from .models import Reader, refuse, shown
+from .models import Reader, refuse
+from .problems import shown
 from .reading.tree import PathError
 
 Array = np.ndarray

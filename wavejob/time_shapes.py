@@ -21,6 +21,7 @@ from .models import (
     NamedQuantity,
     Number,
     Time,
+    in_order,
     refuse,
 )
 from .reading.quantities import Named, Units
@@ -68,9 +69,8 @@ class Ramp(TimeShape, Generic[Amount]):
     @model_validator(mode="after")
     def _whole(self) -> Ramp[Amount]:
         if (self.by is None) == (self.to is None):
-            raise refuse("a ramp needs exactly one of `by` and `to`", "write the value reached once")
-        if not self.stop > self.start:
-            raise refuse("`stop` must come after `start`", "swap them")
+            raise refuse("a ramp needs either `by` or `to`", "write the value reached once")
+        in_order(self, "start", "stop", ("start", "stop"))
         return self
 
     def function(self, units: Units, dimension: str) -> Function:
@@ -165,6 +165,12 @@ class TimeFormula(TimeShape):
     model_config = ConfigDict(extra="allow")
     __pydantic_extra__: dict[str, NamedQuantity]
     value: str = Field(description="the formula, for example `1 + a*sin(w*t)`")
+
+    @model_validator(mode="before")
+    @classmethod
+    def _named(cls, value: Any) -> Any:
+        FormulaText.parameters(value, ("x", "t"))
+        return value
 
     @model_validator(mode="after")
     def _parsed(self) -> TimeFormula:

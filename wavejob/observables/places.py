@@ -8,7 +8,7 @@ import numpy as np
 from pydantic import Field, model_validator
 
 from ..grid import Axis
-from ..models import Length, Name, refuse
+from ..models import Length, Name, in_order
 from ..results import Column
 from ..state import Look
 from .base import Bench, Meter, Observable, Outline, Series, Toward, time_average
@@ -34,8 +34,7 @@ class Inside(Observable):
 
     @model_validator(mode="after")
     def _ordered(self) -> Inside:
-        if not self.start < self.stop:
-            raise refuse("`from` must lie before `to`", "swap them")
+        in_order(self, "start", "stop")
         return self
 
     def columns(self, outline: Outline) -> tuple[Column, ...]:

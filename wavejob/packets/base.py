@@ -14,6 +14,14 @@ from ..reading.quantities import Units
 Array = np.ndarray
 
 
+class PacketError(ValueError):
+    """A packet that cannot be set down: what is wrong, and the cure."""
+
+    def __init__(self, message: str, fix: str = "") -> None:
+        self.message, self.fix = message, fix
+        super().__init__(message, fix)
+
+
 class Packet(Model):
     """One kind of initial state, on one axis."""
 
@@ -24,6 +32,9 @@ class Packet(Model):
     def extent(self) -> tuple[float, float] | None:
         """Between which places it must have room; None where only the field tells."""
         return None
+
+    def check(self, mass: float) -> None:
+        """Raises PacketError where there is nothing to normalise."""
 
     def widest_wavenumber(self, mass: float) -> float | None:
         """The largest wave number it holds; None where only the field tells."""

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 from pydantic import Field, model_validator
 
@@ -9,8 +11,9 @@ from ..grid import Axis
 from ..models import Angle, Extent, Length, Model, Momentum, Number, PositiveEnergy, Velocity, Wavenumber, refuse
 from ..potentials.base import Toward, sign
 from ..reading.quantities import Units
-from .base import Array, Packet, normalised, waves
+from .base import Array, Packet, PacketError, normalised, waves
 
+LEAST_LEFT = 1e-10  # of the probabilities of a sum's packets, below which they are said to cancel
 ROOM = 6.0  # standard deviations a packet needs on both sides, in place and in wave number: 2e-9 is left outside
 
 
@@ -32,7 +35,7 @@ class GaussianPacket(Packet):
         ]
         if len(given) > 1:
             listed = " and ".join(f"`{name}`" for name in given)
-            raise refuse(f"{listed} both set the motion of the packet", "keep one of them")
+            raise refuse(f"{listed} all set the motion of the packet", "keep one of them", at=given[1])
         if (self.energy is None) != (self.toward is None):
             missing = "toward" if self.toward is None else "energy"
             raise refuse(f"`{missing}` is missing", "`energy` and `toward: +x` or `-x` go together")
@@ -53,6 +56,20 @@ class GaussianPacket(Packet):
 
     def widest_wavenumber(self, mass: float) -> float:
         return abs(self.mean_wavenumber(mass)) + ROOM / (2 * self.sigma)
+
+
+def overlaps(packets: Sequence[GaussianPacket], mass: float) -> Array:
+    """<a, b> of all pairs of Gaussian packets in closed form, shape (packets, packets)."""
+    at = np.array([packet.at for packet in packets])
+    narrow = 1 / (4 * np.array([packet.sigma for packet in packets]) ** 2)
+    k = np.array([packet.mean_wavenumber(mass) for packet in packets])
+    total, product = narrow[:, None] + narrow, narrow[:, None] * narrow
+    apart, turning = at[:, None] - at, k - k[:, None]
+    # Phases are counted from the first packet of a pair, which keeps them small.
+    middle = -narrow * apart / total
+    phase = turning * middle + k * apart
+    size = np.sqrt(2 * np.sqrt(product) / total) * np.exp(-product / total * apart**2 - turning**2 / (4 * total))
+    return np.asarray(size * np.exp(1j * phase))
 
 
 class Summand(Model):
@@ -86,6 +103,12 @@ class SumPacket(Packet):
             amplitude = part.weight * np.exp(1j * part.phase)
             total += amplitude * waves(axis.x, one.at, one.sigma, one.mean_wavenumber(mass))
         return normalised(total, axis)
+
+    def check(self, mass: float) -> None:
+        amplitudes = np.array([part.weight * np.exp(1j * part.phase) for part in self.parts])
+        norm = (amplitudes.conj() @ overlaps([part.gaussian for part in self.parts], mass) @ amplitudes).real
+        if not norm > LEAST_LEFT * np.sum(np.abs(amplitudes) ** 2):
+            raise PacketError("the packets of the sum cancel each other", "change a weight, a phase or a packet")
 
     def extent(self) -> tuple[float, float]:
         extents = [part.gaussian.extent() for part in self.parts]

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from pydantic import Field, model_validator
 
-from ..models import Energy, Extent, Length, Model, PositiveEnergy, refuse
+from ..models import Energy, Extent, Length, Model, PositiveEnergy, in_order
 from ..shapes import Breaks, Shape
 from .base import Potential, Setting
 
@@ -32,8 +32,7 @@ class Between(Potential):
 
     @model_validator(mode="after")
     def _ordered(self) -> Between:
-        if not self.start < self.stop:
-            raise refuse("`from` must lie before `to`", "swap them")
+        in_order(self, "start", "stop")
         return self
 
 

@@ -52,9 +52,10 @@ class Harmonic(Potential):
     def _one(self) -> Harmonic:
         given = [value for value in (self.omega, self.frequency, self.stiffness) if value is not None]
         if len(given) != 1:
-            raise refuse("a harmonic well needs exactly one of `omega`, `frequency` and `stiffness`", "keep one of them")
+            said = f"a harmonic well has {len(given) or 'none'} of `omega`, `frequency` and `stiffness`"
+            raise refuse(said, "write exactly one of them")
         if self.frequency is not None and self.frequency <= 0:
-            raise refuse("`frequency` must be greater than 0", "")
+            raise refuse("must be greater than 0", "", at="frequency")
         return self
 
     def shape(self, setting: Setting) -> Shape:

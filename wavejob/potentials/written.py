@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from typing import Annotated, Any
+
 import numpy as np
 from pydantic import ConfigDict, Field, model_validator
 
-from ..models import FormulaText, Model, NamedQuantity, Quantity, refuse
-from ..reading.quantities import QuantityError, Units
+from ..models import FormulaText, Model, NamedQuantity, unit_of
+from ..reading.quantities import Units
 from ..shapes import Shape
 from ..tabulated import TablePath
 from ..time_shapes import in_file_units
@@ -18,8 +20,8 @@ Array = np.ndarray
 class Columns(Model):
     """Units of a table's columns."""
 
-    x: str | None = Field(None, description="unit of the first column")
-    value: str | None = Field(None, description="unit of the second column")
+    x: Annotated[str | None, unit_of("length")] = Field(None, description="unit of the first column")
+    value: Annotated[str | None, unit_of("energy")] = Field(None, description="unit of the second column")
 
     def scales(self, units: Units) -> tuple[float, float]:
         """What the columns are multiplied by to be in scaled units."""
@@ -27,12 +29,7 @@ class Columns(Model):
 
 
 def _scale(unit: str | None, dimension: str, units: Units) -> float:
-    if unit is None:
-        return units.scale(dimension)
-    try:
-        return units.read(f"1 {unit}", dimension)
-    except QuantityError as error:
-        raise refuse(error.message, error.fix) from None
+    return units.scale(dimension) if unit is None else units.read(f"1 {unit}", dimension)
 
 
 class Table(Potential):
@@ -50,12 +47,8 @@ class Table(Potential):
     def misfit(self, setting: Setting, low: float, high: float) -> tuple[str, str] | None:
         at = self.file.rows[:, 0] * self.columns.scales(setting.units)[0]
         if at[0] > low or at[-1] < high:
-            write = setting.units.write
-            return (
-                f"the table covers {write(float(at[0]), 'length')} to {write(float(at[-1]), 'length')}, "
-                "less than the grid",
-                "extend the table or shrink the grid",
-            )
+            first, last = (setting.units.rounded(float(end), "length") for end in (at[0], at[-1]))
+            return f"the table covers {first} to {last}, less than the grid", "extend the table or shrink the grid"
         return None
 
 
@@ -66,11 +59,14 @@ class FormulaPotential(Potential):
     __pydantic_extra__: dict[str, NamedQuantity]
     value: str = Field(description="the formula, for example `V0*exp(-(x/w)**2)` with V0 and w beside it")
 
+    @model_validator(mode="before")
+    @classmethod
+    def _named(cls, value: Any) -> Any:
+        FormulaText.parameters(value, ("x", "t"))
+        return value
+
     @model_validator(mode="after")
     def _parsed(self) -> FormulaPotential:
-        for name in self.__pydantic_extra__ or {}:
-            if name in ("x", "y", "z", "t", "pi"):
-                raise refuse(f"`{name}` cannot be a parameter of a formula", "it has a meaning of its own")
         FormulaText.parsed(self.value, frozenset({"x", "t", *(self.__pydantic_extra__ or {})}))
         return self
 
@@ -92,12 +88,3 @@ class FormulaPotential(Potential):
 
         return Shape(value, slope, moves="t" in formula.used)
 
-    def misfit(self, setting: Setting, low: float, high: float) -> tuple[str, str] | None:
-        x = np.linspace(low, high, 2001)[1:-1]
-        shape = self.shape(setting)
-        for kind, values in (("", shape.value(x, 0.0)), ("the slope of ", shape.slope(x, 0.0))):
-            bad = np.flatnonzero(~np.isfinite(values))
-            if bad.size:
-                place = setting.units.write(float(x[bad[0]]), "length")
-                return f"{kind}the formula is not finite at x = {place}", "keep it finite over the whole grid"
-        return None

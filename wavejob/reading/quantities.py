@@ -23,7 +23,7 @@ if TYPE_CHECKING:
 
     Amount = TypeVar("Amount", float, NDArray[np.float64])
 
-__all__ = ["Named", "QuantityError", "Units", "unit_names"]
+__all__ = ["Named", "QuantityError", "Units", "unit_names", "unknown_name"]
 
 _PRINTED = {"length": "nm", "time": "fs", "energy": "meV"}  # in tables, where the file does not say
 
@@ -52,9 +52,11 @@ class Units:
             return cls("natural")
         if system == "atomic":
             return cls("atomic", "bohr", "hbar/hartree", "hartree")
+        fix = "write natural, atomic, or a map such as `{length: nm, time: fs, energy: meV}`"
         if isinstance(system, str):
-            fix = "write natural, atomic, or a map such as `{length: nm, time: fs, energy: meV}`"
             raise QuantityError(f"`{system[:40]}` is no system of units", fix)
+        if system is not None and not isinstance(system, Mapping):
+            raise QuantityError("this is no system of units", fix)
         given = {kind: _base_unit(kind, unit) for kind, unit in (system or {}).items()}
         return cls("file", **(_PRINTED | given), stated=frozenset(given))
 
@@ -114,6 +116,10 @@ class Units:
             )
         top = "K" if kind.kelvin else "rad" if kind.angle else ""
         return _spell(powers, self, top)
+
+    def rounded(self, x: float, dimension: str) -> str:
+        """`x` in inside units as a message shows it, to four digits."""
+        return f"{self.to_file(x, dimension):.4g} {self.label(dimension)}".rstrip()
 
     def write(self, x: float, dimension: str) -> str:
         """A text that `read` turns back into `x` in inside units, as nearly as numbers allow."""
@@ -211,7 +217,9 @@ class Units:
 def _base_unit(kind: str, unit: Any) -> str:
     """The unit that the file's `units` gives for length, time or energy, checked."""
     if kind not in _PRINTED:
-        raise QuantityError(f"`units` gives no unit of `{kind}`", f"it takes {', '.join(_PRINTED)}")
+        near = nearest(str(kind), _PRINTED)
+        fix = f"did you mean `{near}`?" if near else f"it takes {', '.join(_PRINTED)}"
+        raise QuantityError(f"`units` gives no unit of `{str(kind)[:40]}`", fix)
     example = f"write one unit, e.g. `{kind}: {_PRINTED[kind]}`"
     if not isinstance(unit, str) or not is_unit(unit.strip()) or len(unit_words(unit)) != 1:
         raise QuantityError(f"`{str(unit)[:40]}` is not one unit of {kind}", example)
@@ -250,7 +258,12 @@ def _named(term: Term, names: Mapping[str, Named]) -> Named:
         )
     near = nearest(term.name, names)
     fix = f"did you mean `{near}`?" if near else "define it under `let`, or write a number and a unit"
-    raise QuantityError(f"no quantity is called `{term.name}`", fix)
+    raise QuantityError(unknown_name(term.name), fix)
+
+
+def unknown_name(name: str) -> str:
+    """The message about a name that stands for no quantity."""
+    return f"no quantity is called `{name}`"
 
 
 def _unknown_unit(word: str, term: Term, names: Mapping[str, Named]) -> QuantityError:
