@@ -14,13 +14,13 @@ from .evolve.schedule import Schedule
 from .evolve.splittings import SPLITTINGS, Splitting
 from .evolve.step_choice import choose_step, largest_step
 from .grid import Axis, Grid, fast_size
-from .hamiltonian import Hamiltonian, Layer, Part
+from .hamiltonian import Hamiltonian, Layer
 from .job import Job
 from .misfits import axis_as_written
 from .observables.base import Bench
+from .on_grid import on_grid
 from .problems import JobFileError
 from .settings import Absorb
-from .shapes import Term
 
 Array = np.ndarray
 
@@ -110,43 +110,18 @@ def make_plan(job: Job) -> Plan:
     psi = job.packet.field(axis, job.particle.mass, job.units)
     _refuse_lost(job, axis, psi)
     endings = _endings(job, axis, psi)
-    hamiltonian = on_grid(job, axis, endings)
+    hamiltonian = on_grid(job, axis, layers(axis, endings))
     splitting, longest, notes["step"] = _step(job, hamiltonian, psi)
     shortest = _sampling(job, hamiltonian, psi)
     step, steps, record, sample = _timetable(job, longest, shortest)
-    return Plan(job, axis, psi, hamiltonian, endings, splitting, step, steps, record, sample, notes)
+    plan = Plan(job, axis, psi, hamiltonian, endings, splitting, step, steps, record, sample, notes)
+    _refuse_unfit(plan)
+    return plan
 
 
-def on_grid(job: Job, axis: Axis, endings: tuple[Ending, ...] = ()) -> Hamiltonian:
-    """The Hamiltonian on the grid; terms that do not change in time are one part."""
-    still = [term for term in job.landscape.terms if not term.moves and term.in_time is None]
-    timed = [term for term in job.landscape.terms if term.moves or term.in_time is not None]
-    parts = [_still(still, axis)] if still else []
-    parts += [_timed(term, axis) for term in timed]
-    layers: tuple[Layer, ...] = tuple(
-        layer(0, axis, ending.shape, "low" if ending.side == "low" else "high") for ending in endings
-    )
-    return Hamiltonian(Grid((axis,)), (job.particle.mass,), tuple(parts), layers)
-
-
-def _still(terms: list[Term], axis: Axis) -> Part:
-    sampled = [term.sampled(axis, 0.0) for term in terms]
-    values = np.sum([v for v, _ in sampled], axis=0)[None, None]
-    slopes = np.sum([s for _, s in sampled], axis=0)[None, None]
-    return Part("position", lambda t: values, lambda t: (slopes,))
-
-
-def _timed(term: Term, axis: Axis) -> Part:
-    if term.moves:
-        return Part(
-            "position",
-            lambda t: term.sampled(axis, t)[0][None, None],
-            lambda t: (term.sampled(axis, t)[1][None, None],),
-            term.in_time,
-            moves=True,
-        )
-    values, slopes = (table[None, None] for table in term.sampled(axis, 0.0))
-    return Part("position", lambda t: values, lambda t: (slopes,), term.in_time)
+def layers(axis: Axis, endings: tuple[Ending, ...]) -> tuple[Layer, ...]:
+    """The absorbing layers on the points of `axis`."""
+    return tuple(layer(0, axis, ending.shape, "low" if ending.side == "low" else "high") for ending in endings)
 
 
 def chosen_axis(job: Job) -> tuple[Axis, dict[str, str]]:
@@ -218,6 +193,18 @@ def _refuse_lost(job: Job, axis: Axis, psi: Array) -> None:
                 )
             ]
         )
+
+
+def _refuse_unfit(plan: Plan) -> None:
+    """Raises JobFileError where an observable cannot be had of this initial state."""
+    found = []
+    for index, observable in enumerate(plan.job.observables):
+        wrong = observable.unfit(plan.bench, plan.psi)
+        if wrong:
+            kind = plan.job.keys.observables[index].kind if plan.job.keys.observables else ""
+            found.append(plan.job.problem(("observables", index, kind, wrong[0]), wrong[1], wrong[2]))
+    if found:
+        raise JobFileError(found)
 
 
 def _endings(job: Job, axis: Axis, psi: Array) -> tuple[Ending, ...]:

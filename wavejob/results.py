@@ -36,11 +36,15 @@ class Result:
 
 @dataclass(frozen=True)
 class Curve:
-    """A table of its own, written as `<name>.csv`; `rows` has shape (rows, columns)."""
+    """A table of its own, written as `<name>.csv`; `rows` has shape (rows, columns), nan where there is no value.
+
+    `errors` is what the method itself adds to the error bars: column name -> shape (rows,).
+    """
 
     name: str
     columns: tuple[Column, ...]
     rows: Array
+    errors: dict[str, Array] = field(default_factory=dict)
 
 
 @dataclass(frozen=True)

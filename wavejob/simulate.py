@@ -109,7 +109,7 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
     outcome = evolve(stepper, steps=plan.steps, outputs=outputs, control=_stopper(plan, rows) if alone else go_on)
     seconds = time.perf_counter() - begun
 
-    table = [rows.series(index) for index in range(len(meters))]
+    table = [meter.finished(rows.series(index)) for index, meter in enumerate(meters)]
     results = [
         result
         for observable, meter, series in zip(job.observables, meters, table, strict=True)
@@ -136,7 +136,7 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
         series=np.concatenate([series.values for series in table], axis=1) if table else np.empty((len(rows.times), 0)),
         results=tuple(results),
         curves=tuple(curve for meter in meters for curve in meter.curves()),
-        checks=tuple(judge_run(plan, watch, outcome.n)),
+        checks=(*judge_run(plan, watch, outcome.n), *(check for meter in meters for check in meter.checks())),
         judgements=(),
         verdict="doubtful",
         norm_drift=watch.norm_drift,
@@ -187,7 +187,7 @@ def _stored_density(plan: Plan, density: Density) -> tuple[str, Stored]:
 
 
 def _results(plan: Plan, observable: Observable, meter: Meter, series: Series) -> list[Result]:
-    values, notes = meter.results(series), meter.notes()
+    values, notes, errors = meter.results(series), meter.notes(), meter.own_errors()
     found = []
     for figure in observable.figures(plan.job.outline):
         value = values[figure.name]
@@ -200,6 +200,7 @@ def _results(plan: Plan, observable: Observable, meter: Meter, series: Series) -
                 figure.dimension,
                 plan.bench.scale(figure.dimension),
                 figure.meaning,
+                error_parts=dict(errors.get(figure.name, {})),
                 note=notes.get(figure.name, "it is not finite") if value is None else "",
             )
         )

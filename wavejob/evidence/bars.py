@@ -66,7 +66,7 @@ def _barred(record: Record, mine: Result, theirs: Result, weight: float, part: s
         return replace(mine, error_status="not_converging" if mine.value is not None else "off")
     difference = abs(mine.value - theirs.value)
     scale = mine.scale or 1.0
-    parts = {part: weight * difference, "rounding": rounding(record) * max(abs(mine.value), scale)}
+    parts = {**mine.error_parts, part: weight * difference, "rounding": rounding(record) * max(abs(mine.value), scale)}
     thinned = record.thinned.get(mine.name)
     if thinned is not None and thinned != mine.value:
         parts["recording"] = abs(thinned - mine.value)
@@ -82,17 +82,23 @@ def _envelope(values: Array) -> Array:
     """The largest of each value and its neighbours, along the first axis."""
     padded = np.pad(values, ((NEIGHBOURS, NEIGHBOURS), (0, 0)), mode="edge")
     windows = [padded[i : i + len(values)] for i in range(2 * NEIGHBOURS + 1)]
-    return np.asarray(np.max(windows, axis=0))
+    return np.asarray(np.fmax.reduce(windows))
 
 
 def _curve_errors(mine: Curve, theirs: Curve, weight: float, floor: float) -> dict[str, Array]:
-    """Errors of all columns but the first, the other curve interpolated to the same places."""
-    from scipy.interpolate import make_interp_spline
-
-    places = mine.rows[:, 0]
+    """Errors of all columns but the first: nan where there is no value, or none to compare it with."""
     errors = {}
     for index, column in enumerate(mine.columns[1:], 1):
-        other = make_interp_spline(theirs.rows[:, 0], theirs.rows[:, index], k=5)(places)
-        difference = np.abs(mine.rows[:, index] - other)[:, None]
-        errors[column.name] = weight * _envelope(difference)[:, 0] + floor
+        difference = np.abs(mine.rows[:, index] - _at_places(theirs, index, mine.rows[:, 0]))[:, None]
+        total = weight * _envelope(difference)[:, 0] + floor + mine.errors.get(column.name, 0.0)
+        errors[column.name] = np.where(np.isnan(mine.rows[:, index]), np.nan, total)
     return errors
+
+
+def _at_places(curve: Curve, index: int, places: Array) -> Array:
+    """One column of a curve, interpolated where its own places are others."""
+    from scipy.interpolate import make_interp_spline
+
+    if np.array_equal(curve.rows[:, 0], places):
+        return np.asarray(curve.rows[:, index])
+    return np.asarray(make_interp_spline(curve.rows[:, 0], curve.rows[:, index], k=5)(places))

@@ -17,7 +17,7 @@ from ..grid import Axis
 from ..hamiltonian import Hamiltonian
 from ..models import Model
 from ..reading.quantities import Units
-from ..results import Column, Curve
+from ..results import Check, Column, Curve
 from ..shapes import Landscape
 from ..state import Look
 from .integrals import every
@@ -97,6 +97,18 @@ class Meter:
     def curves(self) -> list[Curve]:
         return []
 
+    def finished(self, series: Series) -> Series:
+        """The rows as they are written, where the end of the run decides about all of them."""
+        return series
+
+    def own_errors(self) -> Mapping[str, Mapping[str, float]]:
+        """What the method itself adds to a figure's error bar: figure -> part -> error."""
+        return {}
+
+    def checks(self) -> list[Check]:
+        """What the meter judges about its own figures."""
+        return []
+
     def progress(self) -> list[tuple[str, Array, Array]]:
         """Probabilities that add up while the run goes on, for pictures: name, times, value at each time."""
         return []
@@ -118,6 +130,14 @@ class Observable(Model):
 
     def misplaced(self, axis: Axis) -> tuple[str, str, str] | None:
         """(key, what is wrong, cure) where it cannot stand on this axis."""
+        return None
+
+    def unfit(self, bench: Bench, psi: Array) -> tuple[str, str, str] | None:
+        """(key, what is wrong, cure) where it cannot be had of the initial state `psi`, shape (points,)."""
+        return None
+
+    def doubtful(self, bench: Bench, psi: Array) -> tuple[str, str, str] | None:
+        """The same where it can be had in part only."""
         return None
 
 
