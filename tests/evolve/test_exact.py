@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from tests.evolve.test_order import AXIS, X, driven, static, tent
-from wavejob.evolve import SPLITTINGS, Stepper, evolve, plan
+from wavejob.evolve import SPLITTINGS, PlanError, Stepper, evolve, plan
 from wavejob.grid import Axis, Grid
 from wavejob.hamiltonian import Hamiltonian, Part
 
@@ -154,3 +154,26 @@ def test_amplitudes_are_those_of_the_waves_written_out(transform, points):
     np.testing.assert_allclose(look.amplitudes[0, 0, few], waves @ psi[0, 0] * axis.spacing, atol=1e-13)
     assert look.momentum_density.sum() == pytest.approx(float(look.norm[0]), rel=1e-13)
     np.testing.assert_array_equal(look.psi, psi)
+
+
+def test_threads_change_nothing_but_time():
+    """Two threads of FFTW against one: equal to rounding."""
+    axes = Axis("x", -16.0, 16.0, 64), Axis("y", -16.0, 16.0, 64, "sine")
+    psi0 = (packet(axes[0].x, -4, 1, 2)[:, None] * packet(axes[1].x, 0, 1, -1))[None, None]
+    ends = []
+    for threads in (1, 2):
+        stepper = plan(Hamiltonian(Grid(axes), (1.0, 2.0)), STRANG, 0.1, psi0, threads=threads)
+        evolve(stepper, steps=10)
+        ends.append(stepper.psi)
+    np.testing.assert_allclose(ends[1], ends[0], rtol=0, atol=1e-14)
+
+
+def test_psi_of_another_grid_is_refused():
+    with pytest.raises(PlanError, match=r"psi has shape \(1, 1, 5\)"):
+        plan(Hamiltonian(Grid((AXIS,)), (1.0,)), STRANG, 0.1, np.ones((1, 1, 5)))
+
+
+def test_changing_parts_in_wave_number_are_refused():
+    part = Part("wave number", lambda _: AXIS.k[None, None], in_time=lambda t: t)
+    with pytest.raises(PlanError, match="wave number must be constant"):
+        plan(Hamiltonian(Grid((AXIS,)), (1.0,), (part,)), STRANG, 0.1, X + 0j)

@@ -100,9 +100,13 @@ class Stepper:
                 row.kick.refresh(self.start + (n + row.at) * self.step, absorbed)
                 row.kick.apply()
 
+    def spectrum(self, psi: Array) -> Array:
+        """Momentum amplitudes of a field of the shape of `psi`, see `transforms.Spectrum`."""
+        return self._spectrum(psi)
+
     @cached_property
-    def spectrum(self) -> Spectrum:
-        """psi -> momentum amplitudes, see `Spectrum`."""
+    def _spectrum(self) -> Spectrum:
+        """Planned when first needed."""
         return Spectrum(self._settings)
 
     def look(self, n: int) -> Look:

@@ -33,9 +33,6 @@ COMPLEX: dict[Precision, type] = {"double": np.complex128, "single": np.complex6
 # to another than in place; above, touching less memory wins. Measured on x86-64 with 48 kB.
 OUT_OF_PLACE_UP_TO = 2048
 
-# Seconds FFTW may spend on trying out one plan; what it has not tried by then it estimates.
-PLANNING_LIMIT = 2.0
-
 
 @dataclass(frozen=True)
 class Settings:
@@ -104,8 +101,11 @@ class Transforms:
             wisdom.save(where, key, pyfftw.export_wisdom())
 
     def _plan(self, settings: Settings, effort: str, threads: int) -> None:
-        """Set `forward` and `backward`. Planning overwrites the arrays."""
-        how = {"flags": (effort,), "threads": threads, "planning_timelimit": PLANNING_LIMIT}
+        """Set `forward` and `backward`. Planning overwrites the arrays.
+
+        There is no time limit: cut short, FFTW falls back to estimates, which in 2D can be 10 times slower.
+        """
+        how = {"flags": (effort,), "threads": threads}
         there: list[Action] = []
         back: list[Action] = []
         if axes := settings.axes("periodic"):
