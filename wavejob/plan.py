@@ -16,8 +16,10 @@ from .evolve.step_choice import choose_step, largest_step
 from .grid import Axis, Grid, fast_size
 from .hamiltonian import Hamiltonian, Layer
 from .job import Job
+from .limits import refuse_grid, refuse_run, refuse_steps
 from .misfits import axis_as_written
 from .observables.base import Bench
+from .packets.base import PacketError
 from .on_grid import on_grid
 from .problems import JobFileError
 from .settings import Absorb
@@ -28,6 +30,7 @@ ACCURACY = 1e-4
 ROWS = 400
 FRAMES = 300
 OVERSAMPLING = 8  # samples per shortest period of what is integrated over time
+SPARSEST = 256  # steps between samples at the most: to sample more often costs nothing then
 TAIL = 1e-10  # probability left out of the range of wave numbers
 
 
@@ -92,6 +95,7 @@ class Plan:
             hamiltonian=self.hamiltonian,
             landscape=job.landscape,
             units=job.units,
+            charge=job.particle.charge,
             start=job.evolve.start,
             stop=job.evolve.until,
             scales=scales(self),
@@ -104,19 +108,33 @@ class Plan:
         return math.pi * self.step / largest_step(self.hamiltonian)
 
 
-def make_plan(job: Job) -> Plan:
-    """The plan of a job. Raises JobFileError where the job cannot be carried out as it is written."""
+def make_plan(job: Job, memory: int | None = None) -> Plan:
+    """The plan of a job. Raises JobFileError where the job cannot be carried out as it is written.
+
+    `memory` is what the run may take, bytes; None stands for what there is. More is refused before it is taken.
+    """
     axis, notes = chosen_axis(job)
-    psi = job.packet.field(axis, job.particle.mass, job.units)
+    refuse_grid(job, axis.points, memory)
+    psi = initial_state(job, axis)
     _refuse_lost(job, axis, psi)
     endings = _endings(job, axis, psi)
     hamiltonian = on_grid(job, axis, layers(axis, endings))
     splitting, longest, notes["step"] = _step(job, hamiltonian, psi)
     shortest = _sampling(job, hamiltonian, psi)
     step, steps, record, sample = _timetable(job, longest, shortest)
+    refuse_steps(job, step, steps)
     plan = Plan(job, axis, psi, hamiltonian, endings, splitting, step, steps, record, sample, notes)
+    refuse_run(job, axis.points, plan.recorded, plan.sampled, plan.frames, step, memory)
     _refuse_unfit(plan)
     return plan
+
+
+def initial_state(job: Job, axis: Axis) -> Array:
+    """The packet at the points of `axis`. Raises JobFileError where it cannot be made on them."""
+    try:
+        return job.packet.field(axis, job.surroundings)
+    except PacketError as error:
+        raise JobFileError([job.problem(("packet", job.keys.packet.kind), error.message, error.fix)]) from None
 
 
 def layers(axis: Axis, endings: tuple[Ending, ...]) -> tuple[Layer, ...]:
@@ -157,12 +175,16 @@ def highest_wavenumber(job: Job, axis: Axis) -> float:
     mass = job.particle.mass
     k = job.packet.widest_wavenumber(mass)
     fine = replace(axis, points=2**14)
-    psi = job.packet.field(fine, mass, job.units)
-    if k is None:
-        k = float(np.max(np.abs(wave_numbers(fine, psi)[0])))
     potential = job.landscape.value(fine.x, job.evolve.start)
-    present = np.abs(psi) ** 2 > TAIL * np.max(np.abs(psi) ** 2)
-    highest = k**2 / (2 * mass) + float(potential[present].max()) - float(potential.min())
+    extent = job.packet.extent()
+    if k is not None and extent and extent[1] - extent[0] < 100 * fine.spacing:  # too narrow for these points
+        here = job.landscape.value(np.linspace(*extent, 101), job.evolve.start)
+    else:
+        psi = initial_state(job, fine)
+        if k is None:
+            k = float(np.max(np.abs(wave_numbers(fine, psi)[0])))
+        here = potential[np.abs(psi) ** 2 > TAIL * np.max(np.abs(psi) ** 2)]
+    highest = k**2 / (2 * mass) + float(here.max()) - float(potential.min())
     return math.sqrt(2 * mass * max(highest, k**2 / (2 * mass)))
 
 
@@ -225,7 +247,7 @@ def _endings(job: Job, axis: Axis, psi: Array) -> tuple[Ending, ...]:
 
 def retuned(plan: Plan, axis: Axis) -> tuple[Ending, ...]:
     """The absorbing ends of a plan on another grid: the same depths, tuned anew."""
-    return _endings(plan.job, axis, plan.job.packet.field(axis, plan.job.particle.mass, plan.job.units))
+    return _endings(plan.job, axis, initial_state(plan.job, axis))
 
 
 def _arriving(job: Job, axis: Axis, k: Array, weight: Array, side: str) -> Momenta:
@@ -277,7 +299,7 @@ def _timetable(job: Job, longest: float, shortest: float) -> tuple[float, int, i
     duration = evolve.until - evolve.start
     if evolve.step is not None:
         steps = round(duration / evolve.step)
-        record = round(evolve.record / evolve.step) if evolve.record else _divisor(steps, max(steps // ROWS, 1))
+        record = round(evolve.record / evolve.step) if evolve.record else _rows_apart(steps)
         return evolve.step, steps, record, _divisor(math.gcd(record, steps), max(int(shortest / evolve.step), 1))
     if evolve.record is not None:
         ratio = Fraction(duration / evolve.record).limit_denominator(1000)
@@ -298,7 +320,7 @@ def _timetable(job: Job, longest: float, shortest: float) -> tuple[float, int, i
     least = math.ceil(duration / longest - 1e-9)
     if least < ROWS:
         return duration / least, least, 1, 1
-    wanted = max(int(shortest / longest), 1)
+    wanted = min(max(int(shortest / longest), 1), SPARSEST)
     best = min(
         (rows * sample * math.ceil(least / (rows * sample)), -sample, rows)
         for rows in range(ROWS - 50, ROWS + 51)
@@ -310,9 +332,15 @@ def _timetable(job: Job, longest: float, shortest: float) -> tuple[float, int, i
     return duration / steps, steps, record, _divisor(record, wanted)
 
 
+def _rows_apart(steps: int) -> int:
+    """Steps between rows, a divisor of `steps` where one is near."""
+    about = max(steps // ROWS, 1)
+    return next((d for d in range(about, max(about // 2, about - 10_000), -1) if steps % d == 0), about)
+
+
 def _divisor(number: int, at_most: int) -> int:
-    """The largest divisor of `number` that is not above `at_most`."""
-    return next(d for d in range(min(at_most, number), 0, -1) if number % d == 0)
+    """The largest divisor of `number` that is above neither `at_most` nor SPARSEST."""
+    return next(d for d in range(min(at_most, number, SPARSEST), 0, -1) if number % d == 0)
 
 
 def scales(plan: Plan) -> dict[str, float]:

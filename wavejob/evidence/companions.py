@@ -8,7 +8,8 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from ..grid import fast_size, fast_size_below
-from ..plan import Plan, on_grid, retuned, wave_numbers
+from ..on_grid import on_grid
+from ..plan import Plan, initial_state, layers, retuned, wave_numbers
 
 COARSER_STEP = 2.0
 COARSER_POINTS = 2**-0.5  # with twice the step the largest kinetic phase a step stays what it was
@@ -59,8 +60,8 @@ def _changed(plan: Plan, record: int, points: int, until: int | None, reason: st
     changed = replace(
         plan,
         axis=axis,
-        psi=plan.job.packet.field(axis, plan.job.particle.mass, plan.job.units),
-        hamiltonian=on_grid(plan.job, axis, endings),
+        psi=initial_state(plan.job, axis),
+        hamiltonian=on_grid(plan.job, axis, layers(axis, endings)),
         endings=endings,
         step=plan.step * whole / steps,
         steps=steps,
