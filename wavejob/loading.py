@@ -58,7 +58,7 @@ def _checked(document: Merged, path: Path, tree: JobTree, trust: bool, text: str
     problems = [problem_at(document, key, *_later(value, key), key=True) for key in later]
     units = _units(document, value, problems)
     names = _names(document, value, units, problems)
-    reader = Reader(units, names, open_path=lambda written: tree.inside(written, path, trust=trust))
+    reader = Reader(units, names, open_path=lambda written: tree.inside(written, path.resolve(), trust=trust))
     skip = [*later, *([("let",)] if _broken(value, names) else [])]
     keys, mistakes = read_as(JobKeys, document, reader, _keys_of(reader), skip)
     problems += [p for p in mistakes if not _echoes(p, value, names)]

@@ -3,25 +3,33 @@
 from __future__ import annotations
 
 import os
+from collections.abc import Mapping
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
 
 from ..problems import JobFileError, Place, Problem
+from ..problems import shown as nicely
 from .tree import JobTree, PathError
 from .yaml_tree import Document, read_document
 
 LONGEST_CHAIN = 8
 
-# Of each group at most one key stands in a mapping: the override's takes the place of the base's.
-EITHER_OR: tuple[frozenset[str], ...] = (
-    frozenset({"points", "spacing"}),
-    frozenset({"step", "accuracy"}),
-    frozenset({"omega", "frequency", "stiffness"}),
-    frozenset({"energy", "wavenumber", "momentum", "velocity"}),
-    frozenset({"by", "to"}),
-    frozenset({"equals", "below", "above", "within"}),
-)
+# Sets of keys of which one at most may stand in a mapping, where the mapping is (`*` for any key): a key of one set
+# in the override takes the place of the others in the base.
+ALTERNATIVES: dict[tuple[str, ...], tuple[frozenset[str], ...]] = {
+    ("grid", "*"): (frozenset({"points"}), frozenset({"spacing"})),
+    ("edges", "*"): (frozenset({"absorb", "energies"}), frozenset({"low", "high"})),
+    ("packet", "gaussian"): (
+        frozenset({"energy", "toward"}),
+        frozenset({"wavenumber"}),
+        frozenset({"momentum"}),
+        frozenset({"velocity"}),
+    ),
+    ("evolve",): (frozenset({"step"}), frozenset({"accuracy"})),
+    ("evolve", "stop_when", "*"): (frozenset({"below"}), frozenset({"above"})),
+}
+KINDS = {("packet",): frozenset({"channel"})}  # mappings of one kind, and the keys that may stand beside it
 PATH_KEYS = ("file", "path")  # keys whose text is a path, relative to the file it stands in
 
 Key = tuple[str | int, ...]
@@ -59,31 +67,43 @@ class _Node:
     places: dict[Key, Place]
     key_places: dict[Key, Place]
 
-    def child(self, key: str | int) -> _Node:
-        def below(table: dict[Key, Place]) -> dict[Key, Place]:
-            return {path[1:]: place for path, place in table.items() if path and path[0] == key}
-
-        return _Node(self.value[key], below(self.places), {k: v for k, v in below(self.key_places).items() if k})
+    def children(self) -> dict[str | int, _Node]:
+        """The values of a mapping or list, by key or place."""
+        inner = self.value.items() if isinstance(self.value, dict) else enumerate(self.value)
+        nodes: dict[str | int, _Node] = {key: _Node(value, {}, {}) for key, value in inner}
+        for path, place in self.places.items():
+            if path:
+                nodes[path[0]].places[path[1:]] = place
+        for path, place in self.key_places.items():
+            if len(path) > 1:
+                nodes[path[0]].key_places[path[1:]] = place
+        return nodes
 
 
 def read_with_bases(path: Path, shown: str, tree: JobTree, trust: bool = False) -> Merged:
     """The document at `path` over all it is `based_on`. Raises JobFileError."""
     document = read_document(path, shown)
     chain = [(path.resolve(), document)]
-    while isinstance(chain[-1][1].value, dict) and "based_on" in chain[-1][1].value:
+    while True:
         here, doc = chain[-1]
+        if not isinstance(doc.value, dict):
+            place = doc.place(())
+            said = "a job file is a mapping of keys"
+            raise JobFileError([Problem(said, "see `wavejob new FILE`", place=place, source=doc.source(place))])
+        if "based_on" not in doc.value:
+            break
         at = doc.place(("based_on",))
         try:
             written = doc.value["based_on"]
             if not isinstance(written, str):
-                raise PathError("is not a path", "write the path of one file")
+                raise PathError(f"{nicely(written)} is no path", "write the path of one file, relative to this one")
             base = tree.inside(written, here, trust=trust)
         except PathError as error:
             raise _at(doc, at, error.message, error.fix) from None
         if base.resolve() in [file for file, _ in chain]:
-            raise _at(doc, at, f"`{written}` is based on this file, in a circle", "break the circle")
+            raise _at(doc, at, f"`{written}` leads back to itself", "take one `based_on` of the circle out")
         if len(chain) > LONGEST_CHAIN:
-            raise _at(doc, at, f"a chain of more than {LONGEST_CHAIN} files", "merge some of them")
+            raise _at(doc, at, f"this is the {LONGEST_CHAIN + 1}th file below one another", f"at most {LONGEST_CHAIN} are followed; merge some of them")
         beside = os.path.relpath(base, path.resolve().parent)
         chain.append((base.resolve(), read_document(base, os.path.join(os.path.dirname(shown), beside))))
     return _folded(chain, path.resolve().parent)
@@ -96,7 +116,7 @@ def _folded(chain: list[tuple[Path, Document]], home: Path) -> Merged:
     for file, doc in reversed(chain):
         value = _rebased(doc.value, file.parent, home)
         node = _Node(value, dict(doc.places), dict(doc.key_places))
-        if merged is not None and isinstance(value, dict) and isinstance(merged.value, dict):
+        if merged is not None:
             mine, theirs = value.get("units"), merged.value.get("units")
             if mine is not None and theirs is not None and mine != theirs:
                 place = doc.place(("units",))
@@ -112,9 +132,8 @@ def _folded(chain: list[tuple[Path, Document]], home: Path) -> Merged:
         merged = node if merged is None else _over(merged, node)
     if problems or merged is None:
         raise JobFileError(problems)
-    if isinstance(merged.value, dict):
-        merged.value.pop("based_on", None)
-    return Merged(merged.value, merged.places, merged.key_places, lines)
+    value = {key: inner for key, inner in merged.value.items() if key != "based_on"}
+    return Merged(value, merged.places, merged.key_places, lines)
 
 
 def _at(doc: Document, place: Place, message: str, fix: str) -> JobFileError:
@@ -131,44 +150,41 @@ def _rebased(value: Any, base: Path, home: Path) -> Any:
         return value
     return {
         key: os.path.relpath(base / item, home)
-        if key in PATH_KEYS and isinstance(item, str) and not os.path.isabs(item)
+        if key in PATH_KEYS and isinstance(item, str) and item and not item.startswith(("~", "/"))
         else _rebased(item, base, home)
         for key, item in value.items()
     }
 
 
-def _over(base: _Node, top: _Node) -> _Node:
+def _over(base: _Node, top: _Node, path: tuple[str, ...] = ()) -> _Node:
     """`top` laid over `base`: maps merge, lists of named items merge by name, all else is replaced."""
     if isinstance(base.value, dict) and isinstance(top.value, dict):
-        children = {}
-        for key in base.value:
-            group = next((g for g in EITHER_OR if key in g), frozenset())
-            if key in top.value:
-                children[key] = _over(base.child(key), top.child(key))
-            elif not (group & top.value.keys() or _other_kind(base.value, top.value, key)):
-                children[key] = base.child(key)
-        for key in top.value:
-            if key not in base.value:
-                children[key] = top.child(key)
-        keys = {k: place for node in (base, top) for k, place in node.key_places.items() if len(k) == 1}
-        return _joined({k: v for k, v in children.items()}, top, keys)
+        displaced = _displaced(base.value, top.value, path)
+        below, above = base.children(), top.children()
+        children = {key: node for key, node in below.items() if key not in displaced}
+        for key, node in above.items():
+            children[key] = _over(below[key], node, (*path, str(key))) if key in children else node
+        return _joined(children, top, {**base.key_places, **top.key_places})
     if isinstance(base.value, list) and isinstance(top.value, list):
-        named = [_name_of(item) for item in top.value]
-        old = [_name_of(item) for item in base.value]
-        if named and all(named) and any(name in old for name in named):
-            items = [base.child(i) for i in range(len(old))]
-            for i, name in enumerate(named):
-                if name in old:
-                    items[old.index(name)] = top.child(i)
-                else:
-                    items.append(top.child(i))
-            return _joined(dict(enumerate(items)), top, {})
+        names, old = [_name_of(item) for item in top.value], [_name_of(item) for item in base.value]
+        if names and all(names) and any(old):
+            items = dict(enumerate(base.children().values()))
+            for name, node in zip(names, top.children().values(), strict=True):
+                # A name given twice keeps both, to be refused where they stand.
+                items[old.index(name) if name in old and names.count(name) == 1 else len(items)] = node
+            return _joined(dict(items), top, {})
     return top
 
 
-def _other_kind(base: dict[str, Any], top: dict[str, Any], key: str) -> bool:
-    """True where `key` is the one kind of the base's mapping and `top` names another kind."""
-    return isinstance(base[key], dict) and len(base) == 1 and len(top) == 1 and key not in top
+def _displaced(base: dict[str, Any], top: dict[str, Any], path: tuple[str, ...]) -> set[str]:
+    """The keys of the base that cannot stand beside those of the override."""
+    if path in KINDS:
+        kinds = top.keys() - KINDS[path]
+        return set() if kinds <= base.keys() else base.keys() - KINDS[path]
+    for pattern, sets in ALTERNATIVES.items():
+        if len(pattern) == len(path) and all(p in ("*", key) for p, key in zip(pattern, path, strict=True)):
+            return {key for keys in sets if any(s & top.keys() for s in sets if s != keys) for key in keys - top.keys()}
+    return set()
 
 
 def _name_of(item: Any) -> str | None:
@@ -181,12 +197,12 @@ def _name_of(item: Any) -> str | None:
     return str(inner[0]) if inner else None
 
 
-def _joined(children: dict[Any, _Node], top: _Node, keys: dict[Key, Place]) -> _Node:
+def _joined(children: Mapping[Any, _Node], top: _Node, keys: dict[Key, Place]) -> _Node:
     value: Any = {key: node.value for key, node in children.items()}
-    if all(isinstance(key, int) for key in children) and children:
-        value = [node.value for node in children.values()]
-    places = {(): top.places[()]} if () in top.places else {}
-    key_places = {k: v for k, v in keys.items() if k[0] in children}
+    if isinstance(top.value, list):
+        value = list(value.values())
+    places: dict[Key, Place] = {(): top.places[()]} if () in top.places else {}
+    key_places: dict[Key, Place] = {k: place for k, place in keys.items() if len(k) == 1 and k[0] in children}
     for key, node in children.items():
         places.update({(key, *path): place for path, place in node.places.items()})
         key_places.update({(key, *path): place for path, place in node.key_places.items()})

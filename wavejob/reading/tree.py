@@ -238,5 +238,5 @@ def _near(file: Path) -> str:
         names = os.listdir(file.parent)
     except OSError:
         names = []
-    near = difflib.get_close_matches(file.name, names, 1)
+    near = difflib.get_close_matches(file.name, names, 1, 0.75)
     return f"did you mean `{near[0]}`?" if near else "check its name and folder"
