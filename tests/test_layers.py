@@ -23,6 +23,7 @@ LAYERS = (
     "shapes",
     "time_shapes",
     "hamiltonian",
+    "levels",
     "potentials",
     "edges",
     "packets",

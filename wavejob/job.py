@@ -12,7 +12,9 @@ from typing import Any
 
 from .models import Item
 from .observables.base import Observable, Outline
-from .packets.base import Packet
+from .observables.levels import StartLevel
+from .packets.base import Packet, Surroundings
+from .packets.eigenstate import EigenstatePacket
 from .potentials.base import Setting
 from .problems import Problem
 from .reading.merging import Key, Merged
@@ -69,9 +71,19 @@ class Job:
         return Landscape(tuple(item.term(self.setting) for item in self.keys.potential))  # type: ignore[attr-defined]
 
     @property
+    def surroundings(self) -> Surroundings:
+        return Surroundings(self.setting, self.landscape, self.evolve.start)
+
+    @property
     def observables(self) -> list[Observable]:
         items = self.keys.observables
         return [] if items is None else [item.body for item in items]
+
+    @property
+    def measured(self) -> list[Observable]:
+        """The observables, and what is always asked about the packet."""
+        packet = self.packet
+        return [*self.observables, *([StartLevel(packet=packet)] if isinstance(packet, EigenstatePacket) else [])]
 
     @cached_property
     def layers(self) -> tuple[str, ...]:
@@ -86,12 +98,12 @@ class Job:
     @cached_property
     def columns(self) -> dict[str, Column]:
         """The columns of the time series, by name."""
-        return {column.name: column for o in self.observables for column in o.columns(self.outline)}
+        return {column.name: column for o in self.measured for column in o.columns(self.outline)}
 
     @cached_property
     def figures(self) -> dict[str, Column]:
         """The results the run will yield, by name."""
-        return {figure.name: figure for o in self.observables for figure in o.figures(self.outline)}
+        return {figure.name: figure for o in self.measured for figure in o.figures(self.outline)}
 
     def problem(self, path: Key, message: str, fix: str = "", severity: str = "error") -> Problem:
         """A problem at a key of the job file."""

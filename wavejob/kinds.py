@@ -9,6 +9,7 @@ from __future__ import annotations
 from .models import Model
 from .observables.base import Observable
 from .observables.densities import Density, MomentumDensity
+from .observables.levels import Levels
 from .observables.moments import Ehrenfest, Energy, Force, Momentum, Norm, Position, Width
 from .observables.overlaps import Autocorrelation, Overlap
 from .observables.places import Crossing, Inside
@@ -26,6 +27,7 @@ OBSERVABLES: dict[str, type[Observable]] = {
     "ehrenfest": Ehrenfest,
     "inside": Inside,
     "crossing": Crossing,
+    "levels": Levels,
     "overlap": Overlap,
     "autocorrelation": Autocorrelation,
     "density": Density,
@@ -63,7 +65,6 @@ NOT_YET: tuple[tuple[str, ...], ...] = (
     ("potential", "*", "*", "axis"),
     ("packet", "channel"),
     ("packet", "*", "axis"),
-    ("packet", "eigenstate"),
     ("observables", "*", "transmission"),
     ("observables", "*", "arrival"),
     ("observables", "*", "dwell"),

@@ -185,6 +185,21 @@ Slope = Annotated[float, Quantity("slope")]
 EnergyLength = Annotated[float, Quantity("energy_length")]
 
 
+def whole(least: int, most: int) -> Any:
+    """A whole number between two bounds."""
+
+    accepted = f"write `{least}`" if least == most else f"write one from {least} to {most}"
+
+    def read(value: Any) -> int:
+        if isinstance(value, bool) or not isinstance(value, int):
+            raise refuse(f"{shown(value)} is no whole number", accepted)
+        if not least <= value <= most:
+            raise refuse(f"{shown(value)} is out of range", accepted)
+        return value
+
+    return [BeforeValidator(read), WithJsonSchema({"type": "integer", "minimum": least, "maximum": most})]
+
+
 def _flag(value: Any) -> bool:
     flags = {"yes": True, "no": False, True: True, False: False}
     if isinstance(value, (bool, str)) and value in flags:

@@ -23,27 +23,13 @@ from .models import (
     Time,
     in_order,
     refuse,
+    whole,
 )
 from .packets.item import PACKETS
 from .potentials.item import POTENTIALS, TermItem
 from .problems import nearest, shown
 
 MAX_POINTS = 2**26
-
-
-def whole(least: int, most: int) -> Any:
-    """A whole number between two bounds."""
-
-    accepted = f"write `{least}`" if least == most else f"write one from {least} to {most}"
-
-    def read(value: Any) -> int:
-        if isinstance(value, bool) or not isinstance(value, int):
-            raise refuse(f"{shown(value)} is no whole number", accepted)
-        if not least <= value <= most:
-            raise refuse(f"{shown(value)} is out of range", accepted)
-        return value
-
-    return [BeforeValidator(read), WithJsonSchema({"type": "integer", "minimum": least, "maximum": most})]
 
 
 def _scalar(value: Any) -> Any:

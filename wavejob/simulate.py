@@ -92,11 +92,11 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
         precision=job.evolve.precision,
         reproducible=job.evolve.reproducible,
     )
-    meters = [observable.meter(bench) for observable in job.observables]
+    meters = [observable.meter(bench) for observable in job.measured]
     rows, watch = Rows(plan.recorded, meters), Watch(plan.recorded, bench)
     frames = Frames(plan.frames or plan.every((job.evolve.until - job.evolve.start) / 300), bench, _view(plan))
     fields = _stored_fields(plan)
-    densities = [_stored_density(plan, o) for o in job.observables if isinstance(o, Density)]
+    densities = [_stored_density(plan, o) for o in job.measured if isinstance(o, Density)]
     outputs: list[Output] = [Sampler(plan.sampled, meters), rows, watch, frames]
     outputs += [stored for stored in [fields, *(d for _, d in densities)] if stored is not None]
     if progress is not None:
@@ -112,7 +112,7 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
     table = [meter.finished(rows.series(index)) for index, meter in enumerate(meters)]
     results = [
         result
-        for observable, meter, series in zip(job.observables, meters, table, strict=True)
+        for observable, meter, series in zip(job.measured, meters, table, strict=True)
         for result in _results(plan, observable, meter, series)
     ]
     thinned = {
@@ -131,7 +131,7 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
         plan=plan,
         steps=outcome.n,
         stopped=outcome.stopped,
-        columns=tuple(column for o in job.observables for column in o.columns(job.outline)),
+        columns=tuple(column for o in job.measured for column in o.columns(job.outline)),
         times=np.array(rows.times),
         series=np.concatenate([series.values for series in table], axis=1) if table else np.empty((len(rows.times), 0)),
         results=tuple(results),
@@ -211,7 +211,7 @@ def _stopper(plan: Plan, rows: Rows) -> Callable[[Look], str | None]:
     """Ends the run at a recorded time at which a bound of `stop_when` is passed."""
     job = plan.job
     recorded = Schedule(plan.record, plan.steps)
-    names = [column.name for o in job.observables for column in o.columns(job.outline)]
+    names = [column.name for o in job.measured for column in o.columns(job.outline)]
     bounds: list[tuple[str, int, float, float]] = []
     for name, bound in job.evolve.stop_when.items():
         side = -1.0 if bound.below is not None else 1.0
@@ -233,7 +233,7 @@ def _stopper(plan: Plan, rows: Rows) -> Callable[[Look], str | None]:
 def _told(plan: Plan, rows: Rows, look: Look) -> Progress:
     job = plan.job
     latest = [value for meter in rows.rows[-1] for value in meter]
-    columns = [column for o in job.observables for column in o.columns(job.outline)]
+    columns = [column for o in job.measured for column in o.columns(job.outline)]
     shares = tuple(
         (column.name, value)
         for column, value in zip(columns, latest, strict=True)

@@ -16,6 +16,8 @@ import numpy as np
 from ..grid import Axis
 from ..hamiltonian import Hamiltonian
 from ..models import Model
+from ..packets.base import Surroundings
+from ..potentials.base import Setting
 from ..reading.quantities import Units
 from ..results import Check, Column, Curve
 from ..shapes import Landscape
@@ -41,6 +43,7 @@ class Bench:
     hamiltonian: Hamiltonian
     landscape: Landscape
     units: Units
+    charge: float  # in units of e
     start: float
     stop: float
     scales: Mapping[str, float]  # by dimension: initial width, initial momentum width, ...
@@ -53,6 +56,11 @@ class Bench:
     @property
     def mass(self) -> float:
         return self.hamiltonian.masses[0]
+
+    @property
+    def surroundings(self) -> Surroundings:
+        """What a packet that is compared with depends on."""
+        return Surroundings(Setting(self.mass, self.charge, self.units), self.landscape, self.start)
 
     def scale(self, dimension: str) -> float:
         return self.scales.get(dimension, 1.0)

@@ -9,10 +9,11 @@ import numpy as np
 from pydantic import Field
 
 from ..models import Choice, Item, Name
+from ..packets.base import PacketError
 from ..packets.item import PACKETS
 from ..results import Column, Curve
 from ..state import Look
-from .base import Bench, Meter, Observable, Outline, Series
+from .base import Array, Bench, Meter, Observable, Outline, Series
 
 
 class Overlap(Observable):
@@ -36,6 +37,13 @@ class Overlap(Observable):
     def meter(self, bench: Bench) -> Meter:
         return OverlapMeter(bench, self)
 
+    def unfit(self, bench: Bench, psi: Array) -> tuple[str, str, str] | None:
+        try:
+            self.meter(bench)
+        except PacketError as error:
+            return "with", error.message, error.fix
+        return None
+
 
 class OverlapMeter(Meter):
     def __init__(self, bench: Bench, overlap: Overlap) -> None:
@@ -43,7 +51,7 @@ class OverlapMeter(Meter):
         self.state: Any = None
         if not isinstance(overlap.with_, str):
             packet = overlap.with_.body
-            self.state = packet.field(bench.axis, bench.mass, bench.units)[None, :].conj()
+            self.state = packet.field(bench.axis, bench.surroundings)[None, :].conj()
 
     def start(self, look: Look) -> None:
         if self.state is None:

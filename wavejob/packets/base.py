@@ -1,17 +1,39 @@
 """What every packet is: parameters that can be read, and a field on the grid.
 
-To add a kind: write the class with `field`, `outside` and `beyond`, add one line to kinds.py and one job in jobs/.
+To add a kind: write the class with `field`, and with `extent` and `widest_wavenumber` where they are known
+beforehand, add one line to item.py and one job in jobs/.
 """
 
 from __future__ import annotations
+
+from dataclasses import dataclass
 
 import numpy as np
 
 from ..grid import Axis
 from ..models import Model
+from ..potentials.base import Setting
 from ..reading.quantities import Units
+from ..shapes import Landscape
 
 Array = np.ndarray
+
+
+@dataclass(frozen=True)
+class Surroundings:
+    """What a packet may depend on beside its own parameters and the grid."""
+
+    setting: Setting
+    landscape: Landscape  # the job's potential
+    start: float  # time of the initial state
+
+    @property
+    def mass(self) -> float:
+        return self.setting.mass
+
+    @property
+    def units(self) -> Units:
+        return self.setting.units
 
 
 class PacketError(ValueError):
@@ -25,8 +47,8 @@ class PacketError(ValueError):
 class Packet(Model):
     """One kind of initial state, on one axis."""
 
-    def field(self, axis: Axis, mass: float, units: Units) -> Array:
-        """psi at the points of `axis`, complex, shape (points,), normalised to 1."""
+    def field(self, axis: Axis, surroundings: Surroundings) -> Array:
+        """psi at the points of `axis`, complex, shape (points,), normalised to 1. Raises PacketError."""
         raise NotImplementedError
 
     def extent(self) -> tuple[float, float] | None:

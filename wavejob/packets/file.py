@@ -14,7 +14,7 @@ from ..grid import Axis
 from ..models import refuse
 from ..reading.quantities import QuantityError, Units
 from ..tabulated import TableError, digest, named_file, read_columns
-from .base import Array, Packet, normalised
+from .base import Array, Packet, Surroundings, normalised
 
 
 @dataclass(frozen=True)
@@ -83,10 +83,10 @@ class FilePacket(Packet):
         except QuantityError as error:
             raise refuse(error.message, error.fix) from None
 
-    def field(self, axis: Axis, mass: float, units: Units) -> Array:
+    def field(self, axis: Axis, surroundings: Surroundings) -> Array:
         from scipy.interpolate import CubicSpline
 
-        x = self.places(units)
+        x = self.places(surroundings.units)
         psi = CubicSpline(x, self.path.psi)(axis.x)
         psi[(axis.x < x[0] - axis.spacing) | (axis.x > x[-1] + axis.spacing)] = 0
         return normalised(psi, axis)

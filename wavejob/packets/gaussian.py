@@ -11,7 +11,7 @@ from ..grid import Axis
 from ..models import Angle, Extent, Length, Model, Momentum, Number, PositiveEnergy, Velocity, Wavenumber, refuse
 from ..potentials.base import Toward, sign
 from ..reading.quantities import Units
-from .base import Array, Packet, PacketError, normalised, waves
+from .base import Array, Packet, PacketError, Surroundings, normalised, waves
 
 LEAST_LEFT = 1e-10  # of the probabilities of a sum's packets, below which they are said to cancel
 ROOM = 6.0  # standard deviations a packet needs on both sides, in place and in wave number: 2e-9 is left outside
@@ -48,8 +48,8 @@ class GaussianPacket(Packet):
             return mass * self.velocity
         return self.wavenumber if self.wavenumber is not None else (self.momentum or 0.0)
 
-    def field(self, axis: Axis, mass: float, units: Units) -> Array:
-        return normalised(waves(axis.x, self.at, self.sigma, self.mean_wavenumber(mass)), axis)
+    def field(self, axis: Axis, surroundings: Surroundings) -> Array:
+        return normalised(waves(axis.x, self.at, self.sigma, self.mean_wavenumber(surroundings.mass)), axis)
 
     def extent(self) -> tuple[float, float]:
         return self.at - ROOM * self.sigma, self.at + ROOM * self.sigma
@@ -96,12 +96,12 @@ class SumPacket(Packet):
             raise refuse("all weights of the sum are 0", "give one packet a weight")
         return self
 
-    def field(self, axis: Axis, mass: float, units: Units) -> Array:
+    def field(self, axis: Axis, surroundings: Surroundings) -> Array:
         total = np.zeros(axis.points, complex)
         for part in self.parts:
             one = part.gaussian
             amplitude = part.weight * np.exp(1j * part.phase)
-            total += amplitude * waves(axis.x, one.at, one.sigma, one.mean_wavenumber(mass))
+            total += amplitude * waves(axis.x, one.at, one.sigma, one.mean_wavenumber(surroundings.mass))
         return normalised(total, axis)
 
     def check(self, mass: float) -> None:

@@ -6,8 +6,14 @@ from typing import Annotated
 
 from ..models import Choice, Item
 from .base import Packet
+from .eigenstate import EigenstatePacket
 from .file import FilePacket
 from .gaussian import GaussianPacket, SumPacket
 
-PACKETS: dict[str, type[Packet]] = {"gaussian": GaussianPacket, "sum": SumPacket, "file": FilePacket}
+PACKETS: dict[str, type[Packet]] = {
+    "gaussian": GaussianPacket,
+    "sum": SumPacket,
+    "eigenstate": EigenstatePacket,
+    "file": FilePacket,
+}
 PacketItem = Annotated[Item, Choice(PACKETS, "packet")]
