@@ -19,8 +19,8 @@ from .job import Job
 from .limits import refuse_grid, refuse_run, refuse_steps
 from .misfits import axis_as_written
 from .observables.base import Bench
-from .packets.base import PacketError
 from .on_grid import on_grid
+from .packets.base import PacketError
 from .problems import JobFileError
 from .settings import Absorb
 
@@ -134,7 +134,8 @@ def initial_state(job: Job, axis: Axis) -> Array:
     try:
         return job.packet.field(axis, job.surroundings)
     except PacketError as error:
-        raise JobFileError([job.problem(("packet", job.keys.packet.kind), error.message, error.fix)]) from None
+        problem = job.problem(("packet", job.keys.packet.kind), error.message, error.fix)
+        raise JobFileError([problem]) from None
 
 
 def layers(axis: Axis, endings: tuple[Ending, ...]) -> tuple[Layer, ...]:
@@ -158,13 +159,16 @@ def choose_points(job: Job, axis: Axis) -> tuple[int, str]:
     """How many points hold the wave numbers of the packet wherever the potential lets it go."""
     accuracy = job.evolve.accuracy or ACCURACY
     needed = highest_wavenumber(job, axis)
+    jumps = np.abs(job.landscape.edges(job.evolve.start)[1])
     sharp = any(term.shape.breaks is not None for term in job.landscape.terms)
-    room = max(2.0, 2.5 * (1e-4 / accuracy) ** 0.25) if sharp else 1.5
+    if jumps.size:  # a wave decays or turns over this length at the highest edge
+        needed = max(needed, math.sqrt(2 * job.particle.mass * float(jumps.max())))
+    room = max(4.0, 12.0 * (1e-4 / accuracy) ** (1 / 3)) if sharp else 1.5
     if job.landscape.depends_on_time:
         room *= 1.25
     points = max(fast_size(math.ceil(room * needed * axis.length / math.pi)), 64)
     why = (
-        f"{room:.3g} times the largest wave number that the packet can reach, "
+        f"{room:.3g} times the largest wave number that matters, "
         f"{job.write(needed, 'wavenumber')}{', for sharp edges' if sharp else ''}"
     )
     return points, why
@@ -191,13 +195,21 @@ def highest_wavenumber(job: Job, axis: Axis) -> float:
 def wave_numbers(axis: Axis, psi: Array) -> tuple[Array, Array]:
     """Signed wave numbers that psi holds and their probabilities, without tails below 1e-10.
 
-    On an axis with walls too, where the packet is far from them.
+    On an axis with walls too, where the packet is far from them or a standing wave.
     """
+    if axis.transform == "sine" and not np.any(psi.imag):
+        from scipy.fft import dst  # here, so that reading a job does not wait for it
+
+        waves = np.abs(dst(psi.real, type=2)) ** 2
+        return _without_tail(np.concatenate([axis.k, -axis.k]), np.concatenate([waves, waves]))
     k = 2 * np.pi * np.fft.fftfreq(axis.points, axis.spacing)
-    weight = np.abs(np.fft.fft(psi)) ** 2
-    weight /= weight.sum()
+    return _without_tail(k, np.abs(np.fft.fft(psi)) ** 2)
+
+
+def _without_tail(k: Array, weight: Array) -> tuple[Array, Array]:
+    weight = weight / weight.sum()
     order = np.argsort(weight)
-    kept = np.ones(axis.points, bool)
+    kept = np.ones(k.size, bool)
     kept[order[np.cumsum(weight[order]) < TAIL]] = False
     return k[kept], weight[kept]
 

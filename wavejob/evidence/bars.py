@@ -2,13 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from ..results import Curve, Result
 from ..simulate import Record
-from .companions import Companion
 
 Array = np.ndarray
 
@@ -16,33 +16,55 @@ SMOOTH = 1.0  # times the difference to a coarser companion; by trial on the cat
 SHARP = 3.0  # the same where the potential has sharp edges: errors then shrink less regularly
 FINER = 1.5  # times the difference to a finer companion, which is itself not free of error
 HOPELESS = 0.5  # of the scale: a difference beyond this is no error bar
+LEFT = 0.5  # probability on the grid at the end, below which mean values of the rest do not count
 NEIGHBOURS = 2  # rows on both sides whose largest difference counts: a difference that changes sign is not small
 
 
-def factor(record: Record, companion: Companion) -> float:
-    """By what the difference to the companion is multiplied."""
-    if not companion.coarser:
+@dataclass(frozen=True)
+class Difference:
+    """Two runs whose difference measures one part of the error, and what it is multiplied by."""
+
+    part: str  # "step", "grid", "step and grid", ...
+    mine: Record
+    theirs: Record
+    weight: float
+
+    def of(self, name: str) -> float | None:
+        """The weighted difference of a result; None where one of the two has no value."""
+        mine, theirs = self.mine.result(name).value, self.theirs.result(name).value
+        return None if mine is None or theirs is None else self.weight * abs(mine - theirs)
+
+    def of_series(self) -> Array:
+        """The weighted difference of all columns at the recorded times, (rows, columns)."""
+        return self.weight * _envelope(np.abs(self.mine.series - self.theirs.series))
+
+    def of_curve(self, curve: Curve, index: int) -> Array:
+        """The weighted difference of one column of a curve, at the places of `curve`."""
+        mine, theirs = (
+            _at_places(next(c for c in record.curves if c.name == curve.name), index, curve.rows[:, 0])
+            for record in (self.mine, self.theirs)
+        )
+        return self.weight * _envelope(np.abs(mine - theirs)[:, None])[:, 0]
+
+
+def weight(record: Record, *, coarser: bool = True) -> float:
+    """By what the difference of `record` to its companion is multiplied."""
+    if not coarser:
         return FINER
     sharp = any(term.shape.breaks is not None for term in record.plan.job.landscape.terms)
     return SHARP if sharp else SMOOTH
 
 
-def with_bars(record: Record, companion: Companion, other: Record) -> Record:
-    """`record` with the error of every result, column and curve from the run of its companion."""
-    weight = factor(record, companion)
-    part = _named(companion)
-    theirs = {result.name: result for result in other.results}
-    results = tuple(_barred(record, r, theirs[r.name], weight, part) for r in record.results)
-    rows = min(len(record.times), len(other.times))
-    difference = np.abs(record.series[:rows] - other.series[:rows])
-    floor = rounding(record) * np.maximum(np.abs(record.series), _scales(record))
-    errors = floor.copy()
-    errors[:rows] += weight * _envelope(difference)
-    curves = {
-        mine.name: _curve_errors(mine, their, weight, rounding(record))
-        for mine, their in zip(record.curves, other.curves, strict=True)
-    }
-    return replace(record, results=results, series_errors=errors, curve_errors=curves)
+def with_bars(record: Record, differences: Sequence[Difference]) -> Record:
+    """`record` with the error of every result, column and curve: the sum of all parts."""
+    floor = rounding(record)
+    series = floor * np.maximum(np.abs(record.series), _scales(record))
+    return replace(
+        record,
+        results=tuple(_barred(record, result, differences) for result in record.results),
+        series_errors=series + sum(d.of_series() for d in differences),
+        curve_errors={curve.name: _curve_errors(curve, differences, floor) for curve in record.curves},
+    )
 
 
 def rounding(record: Record) -> float:
@@ -51,27 +73,47 @@ def rounding(record: Record) -> float:
 
 
 def worst(record: Record) -> float:
-    """The largest error over its scale."""
-    ratios = [r.error / r.scale for r in record.results if r.error is not None and r.scale]
+    """The largest error over its scale, of the results that count."""
+    ratios = [r.error / r.scale for r in counted(record) if r.error is not None and r.scale]
     return max(ratios, default=0.0)
 
 
-def _named(companion: Companion) -> str:
-    parts = [n for n, ratio in (("step", companion.step), ("grid", companion.points)) if abs(ratio - 1) > 1e-9]
-    return " and ".join(parts)
+def counted(record: Record) -> list[Result]:
+    """The results that the accuracy wanted is for: those with expectations, or without any all of them.
+
+    Mean values of what is left on the grid do not count once less than half is left: their errors grow as
+    it goes, and say nothing about the rest of the run.
+    """
+    expected = {expect.result for expect in record.plan.job.keys.expect}
+    if expected:
+        return [result for result in record.results if result.name in expected]
+    left = record.left
+    return [
+        result
+        for result in record.results
+        if left >= LEFT or result.dimension not in ("length", "momentum", "energy", "force")
+    ]
 
 
-def _barred(record: Record, mine: Result, theirs: Result, weight: float, part: str) -> Result:
-    if mine.value is None or theirs.value is None:
-        return replace(mine, error_status="not_converging" if mine.value is not None else "off")
-    difference = abs(mine.value - theirs.value)
-    scale = mine.scale or 1.0
-    parts = {**mine.error_parts, part: weight * difference, "rounding": rounding(record) * max(abs(mine.value), scale)}
-    thinned = record.thinned.get(mine.name)
-    if thinned is not None and thinned != mine.value:
-        parts["recording"] = abs(thinned - mine.value)
-    status = "not_converging" if difference > HOPELESS * scale else "estimated"
-    return replace(mine, error=sum(parts.values()), error_parts=parts, error_status=status)
+def _barred(record: Record, result: Result, differences: Sequence[Difference]) -> Result:
+    if result.value is None:
+        return result
+    found = {d.part: d.of(result.name) for d in differences}
+    parts = {part: value for part, value in found.items() if value is not None}
+    if len(parts) < len(found):
+        return replace(result, error_status="not_converging", note="a companion run has no such value")
+    scale = result.scale or 1.0
+    hopeless = any(value > HOPELESS * scale for value in parts.values())
+    parts = {**result.error_parts, **parts, "rounding": rounding(record) * max(abs(result.value), scale)}
+    thinned = record.thinned.get(result.name)
+    if thinned is not None and thinned != result.value:
+        parts["recording"] = abs(thinned - result.value)
+    return replace(
+        result,
+        error=sum(parts.values()),
+        error_parts=parts,
+        error_status="not_converging" if hopeless else "estimated",
+    )
 
 
 def _scales(record: Record) -> Array:
@@ -85,13 +127,12 @@ def _envelope(values: Array) -> Array:
     return np.asarray(np.fmax.reduce(windows))
 
 
-def _curve_errors(mine: Curve, theirs: Curve, weight: float, floor: float) -> dict[str, Array]:
+def _curve_errors(curve: Curve, differences: Sequence[Difference], floor: float) -> dict[str, Array]:
     """Errors of all columns but the first: nan where there is no value, or none to compare it with."""
     errors = {}
-    for index, column in enumerate(mine.columns[1:], 1):
-        difference = np.abs(mine.rows[:, index] - _at_places(theirs, index, mine.rows[:, 0]))[:, None]
-        total = weight * _envelope(difference)[:, 0] + floor + mine.errors.get(column.name, 0.0)
-        errors[column.name] = np.where(np.isnan(mine.rows[:, index]), np.nan, total)
+    for index, column in enumerate(curve.columns[1:], 1):
+        total = floor + curve.errors.get(column.name, 0.0) + sum(d.of_curve(curve, index) for d in differences)
+        errors[column.name] = np.where(np.isnan(curve.rows[:, index]), np.nan, total)
     return errors
 
 

@@ -39,15 +39,23 @@ def coarser(plan: Plan, *, step: bool = True, points: bool = True, until: int | 
     grid = fast_size_below(int(plan.axis.points * COARSER_POINTS)) if points else plan.axis.points
     reach = float(np.max(np.abs(wave_numbers(plan.axis, plan.psi)[0])))
     if (step and plan.record == 1) or (points and reach > HOLDS * math.pi * grid / plan.axis.length):
-        return finer(plan, step=step, points=points, until=until)
-    return _changed(plan, rows, grid, until, "coarser: it costs about a third of the run")
+        return finer(plan, step=2.0 if step else 1.0, points=2**0.5 if points else 1.0, until=until)
+    return _changed(plan, rows, grid, until, "coarser")
 
 
-def finer(plan: Plan, *, step: bool = True, points: bool = True, until: int | None = None) -> Companion:
-    """Half the step and 1.4 times the points."""
-    rows = plan.record * 2 if step else plan.record
-    grid = fast_size(math.ceil(plan.axis.points / COARSER_POINTS)) if points else plan.axis.points
-    return _changed(plan, rows, grid, until, "finer: a coarser one would not tell")
+def finer(plan: Plan, *, step: float = 2.0, points: float = 2**0.5, until: int | None = None) -> Companion:
+    """A step shorter by `step` and points more by `points`, within bounds; 1.0 leaves one of them as it is.
+
+    More points shorten the step too where the kinetic phase a step would exceed pi.
+    """
+    grid, record = plan.axis.points, plan.record
+    if points > 1:
+        grid = fast_size(math.ceil(plan.axis.points * min(max(points, 2**0.5), 3.0)))
+    if step > 1:
+        record = math.ceil(plan.record * min(max(step, 2.0), 8.0))
+    phase = plan.kinetic_phase * (grid / plan.axis.points) ** 2
+    record = max(record, math.ceil(plan.record * phase / math.pi - 1e-9))
+    return _changed(plan, record, grid, until, "finer")
 
 
 def _changed(plan: Plan, record: int, points: int, until: int | None, reason: str) -> Companion:
