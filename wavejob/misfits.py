@@ -93,7 +93,12 @@ def _grid(job: Job) -> Iterator[Problem]:
 
 def _potential(job: Job) -> Iterator[Problem]:
     axis = axis_as_written(job)
+    names: set[str] = set()
     for index, item in enumerate(job.keys.potential):
+        if item.name in names:
+            said = f"another term is called `{item.name}`"
+            yield job.problem(("potential", index, "name"), said, "choose another name, or leave it out")
+        names |= {item.name} - {None}
         where: Key = ("potential", index, item.kind)
         wrong = item.body.misfit(job.setting, axis.low, axis.high)
         shapes: list[tuple[Key, TimeShape | None]] = [
@@ -237,7 +242,7 @@ def _evolution(job: Job) -> Iterator[Problem]:
             yield job.problem(
                 ("evolve", "step"),
                 f"the run is {steps:.6g} steps long, not a whole number of them",
-                f"a step of {_exact(job, duration / round(steps))} makes {round(steps)}",
+                f"a step of {exact_time(job, duration / round(steps))} makes {round(steps)}",
             )
         if evolve.record is not None:
             per = evolve.record / evolve.step
@@ -245,12 +250,12 @@ def _evolution(job: Job) -> Iterator[Problem]:
                 yield job.problem(
                     ("evolve", "record"),
                     f"`record` is {per:.6g} steps long, not a whole number of them",
-                    f"write {_exact(job, max(round(per), 1) * evolve.step)}",
+                    f"write {exact_time(job, max(round(per), 1) * evolve.step)}",
                 )
     yield from _spaced(job, evolve.record, ("evolve", "record"))
 
 
-def _exact(job: Job, time: float) -> str:
+def exact_time(job: Job, time: float) -> str:
     """A time to as many digits as make a whole number of steps."""
     return f"{job.units.to_file(time, 'time'):.10g} {job.units.label('time')}".rstrip()
 

@@ -222,11 +222,17 @@ def _name(value: Any) -> str:
 
 Name = Annotated[str, BeforeValidator(_name), WithJsonSchema({"type": "string", "pattern": f"^{NAME.pattern}$"})]
 
-def one_of(value: Any, table: Mapping[str, Any], what: str, beside: tuple[str, ...] = ()) -> str:
-    """The one key of `value` that names a kind of `table`; other keys may only be those of `beside`."""
+def one_of(
+    value: Any, table: Mapping[str, Any], what: str, beside: tuple[str, ...] = (), words: tuple[str, ...] = ()
+) -> str:
+    """The one key of `value` that names a kind of `table`; other keys may only be those of `beside`.
+
+    `words` may stand instead of a kind, and are only named here.
+    """
     names = ", ".join(f"`{name}`" for name in table)
     if not isinstance(value, dict):
-        raise refuse(f"{shown(value)} is no {what}", f"write one kind with its parameters: {names}")
+        instead = "".join(f"`{word}` or " for word in words)
+        raise refuse(f"{shown(value)} is no {what}", f"write {instead}one kind with its parameters: {names}")
     kinds = [key for key in value if key in table]
     if len(kinds) == 1:
         return kinds[0]
@@ -323,7 +329,7 @@ class Choice:
             return value
         if self.bare and isinstance(value, str):
             value = {value: {}}
-        name = one_of(value, self.table, self.what, tuple(self.beside.keys()))
+        name = one_of(value, self.table, self.what, tuple(self.beside.keys()), self.words)
         return handler({**value, name: {}} if value[name] is None else value)
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> core_schema.CoreSchema:

@@ -17,7 +17,7 @@ from .grid import Axis, Grid, fast_size
 from .hamiltonian import Hamiltonian, Layer
 from .job import Job
 from .limits import refuse_grid, refuse_run, refuse_steps
-from .misfits import axis_as_written
+from .misfits import axis_as_written, exact_time
 from .observables.base import Bench
 from .on_grid import on_grid
 from .packets.base import PacketError
@@ -321,7 +321,7 @@ def _timetable(job: Job, longest: float, shortest: float) -> tuple[float, int, i
                     job.problem(
                         ("evolve", "record"),
                         "`until` and `record` have no common step",
-                        f"write {job.units.write(duration / max(round(duration / evolve.record), 1), 'time')}",
+                        f"write {exact_time(job, duration / max(round(duration / evolve.record), 1))}",
                     )
                 ]
             )

@@ -330,7 +330,7 @@ class JobKeys(Model):
         None, description="electron, proton, neutron, muon, an isotope such as Rb-87, or {mass:, charge:}"
     )
     grid: GridKeys = Field(description="the axes")
-    potential: list[Annotated[Item, Choice(POTENTIALS, "potential", TermItem)]] = Field(
+    potential: list[Annotated[TermItem, Choice(POTENTIALS, "potential", TermItem)]] = Field(
         default_factory=list, description="terms, summed", max_length=200
     )
     edges: EdgesKeys = Field(default_factory=EdgesKeys, description="what happens at the ends of an axis")

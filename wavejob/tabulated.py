@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import csv
 import hashlib
 from dataclasses import dataclass
 from pathlib import Path
@@ -17,7 +16,8 @@ from .problems import shown
 from .reading.tree import PathError
 
 Array = np.ndarray
-MAX_BYTES = 64 * 2**20
+MAX_BYTES = 16 * 2**20
+FEWEST_ROWS = 4
 
 
 class TableError(ValueError):
@@ -28,53 +28,64 @@ class TableError(ValueError):
         super().__init__(message, fix)
 
 
-def read_columns(path: Path, wanted: int) -> Array:
-    """The first `wanted` columns of a comma- or blank-separated file, shape (rows, wanted).
+def read_columns(path: Path, written: str, wanted: int) -> Array:
+    """The first `wanted` columns of the comma- or blank-separated file that a job names as `written`.
 
-    Lines that begin with `#` and one header line are passed over. A gap, a word or a value that is
-    not finite is refused with its line.
+    Shape (rows, wanted). Lines that begin with `#` and one header line, without any number, are passed over. A gap,
+    a word or a value that is not finite is refused with its line.
     """
-    if path.stat().st_size > MAX_BYTES:
-        raise TableError(f"`{path.name}` is larger than {MAX_BYTES // 2**20} MiB", "thin the table out")
+    size = path.stat().st_size
+    if size > MAX_BYTES:
+        said = f"`{written}` has {size / 2**20:.3g} MiB, at most {MAX_BYTES // 2**20} are read"
+        raise TableError(said, "thin the table out")
     try:
         text = path.read_text(encoding="utf-8-sig")
     except UnicodeDecodeError as error:
-        raise TableError(f"`{path.name}` is not a UTF-8 text file (byte {error.start})", "save it as UTF-8") from None
+        raise TableError(f"`{written}` is no UTF-8 text (byte {error.start})", "name a text file with columns") from None
     rows: list[list[float]] = []
     header = True
     for number, line in enumerate(text.split("\n"), 1):
         line = line.strip()
         if not line or line.startswith("#"):
             continue
-        cells = next(csv.reader([line])) if "," in line else line.split()
-        try:
-            values = [float(cell) for cell in cells[:wanted]]
-        except ValueError:
-            if header and not rows:
-                header = False
-                continue
-            bad = next(cell for cell in cells if not _is_number(cell))
-            raise TableError(
-                f"`{path.name}` line {number}: `{bad.strip() or 'an empty cell'}` is no number",
-                "fill the gap; decimal points only",
-            ) from None
+        cells = [cell.strip().strip('"') for cell in line.split(",")] if "," in line else line.split()
+        values = [_number(cell) for cell in cells[:wanted]]
+        if header and all(value is None for value in values):
+            header = False
+            continue
         header = False
-        if len(values) < wanted:
-            raise TableError(f"`{path.name}` line {number} has {len(values)} of {wanted} columns", "complete the line")
-        if not np.all(np.isfinite(values)):
-            raise TableError(f"`{path.name}` line {number} holds a value that is not finite", "every value must be finite")
-        rows.append(values)
-    if len(rows) < 4:
-        raise TableError(f"`{path.name}` has {len(rows)} rows of numbers", "at least 4 are needed for a smooth curve")
+        known = [value for value in values if value is not None]
+        if len(known) < wanted:
+            raise TableError(*_faulty(f"`{written}`, line {number}", cells[:wanted], wanted))
+        if not np.all(np.isfinite(known)):
+            raise TableError(f"`{written}`, line {number}: a value is not finite", "every value must be finite")
+        rows.append(known)
+    if len(rows) < FEWEST_ROWS:
+        said = f"`{written}` has {len(rows)} rows of numbers"
+        raise TableError(said, f"at least {FEWEST_ROWS} are needed for a smooth curve")
     return np.array(rows)
 
 
-def _is_number(cell: str) -> bool:
+def _number(cell: str) -> float | None:
+    """The number in a cell, or None: digits of other scripts and `1_000` are no numbers here."""
+    if not cell.isascii() or "_" in cell:
+        return None
     try:
-        float(cell)
+        return float(cell)
     except ValueError:
-        return False
-    return True
+        return None
+
+
+def _faulty(where: str, cells: list[str], wanted: int) -> tuple[str, str]:
+    """Message and cure for a line whose first cells are not all numbers."""
+    bad = next((cell for cell in cells if _number(cell) is None), None)
+    if bad == "":
+        return f"{where}: a cell is empty", "fill the gap or drop the line"
+    if bad is not None and ";" in bad:
+        return f"{where}: {shown(bad)} is no number", "separate columns with commas or blanks, write decimal points"
+    if bad is not None:
+        return f"{where}: {shown(bad)} is no number", "write plain numbers with decimal points"
+    return f"{where}: {len(cells)} of {wanted} columns", "complete the line; columns stand between commas or blanks"
 
 
 @dataclass(frozen=True)
@@ -109,15 +120,13 @@ class TableFile:
             return written
         path = named_file(written, info)
         try:
-            rows = read_columns(path, 2)
+            rows = read_columns(path, str(written), 2)
         except TableError as error:
             raise refuse(error.message, error.fix) from None
         falls = np.flatnonzero(np.diff(rows[:, 0]) <= 0)
         if falls.size:
-            raise refuse(
-                f"the first column of `{written}` does not rise after {rows[falls[0], 0]:g}",
-                "sort the rows and drop doubled ones",
-            )
+            said = f"the first column of `{written}` does not rise after {rows[falls[0], 0]:g}"
+            raise refuse(said, "sort the rows and drop doubled ones")
         return cls(str(written), rows, digest(path))
 
     def curve(self, at_scale: float, value_scale: float) -> Curve:

@@ -11,9 +11,9 @@ from pydantic import Field, ValidationInfo, WithJsonSchema
 from pydantic.functional_validators import BeforeValidator
 
 from ..grid import Axis
-from ..models import refuse
+from ..models import LARGEST, Reader, refuse
 from ..reading.quantities import QuantityError, Units
-from ..tabulated import TableError, digest, named_file, read_columns
+from ..tabulated import FEWEST_ROWS, TableError, digest, named_file, read_columns
 from .base import Array, Packet, Surroundings, normalised
 
 
@@ -33,37 +33,48 @@ class StoredField:
             return written
         path = named_file(written, info)
         if path.suffix == ".nc":
-            x, psi, unit = _final_state(path)
+            x, psi, unit = _final_state(path, str(written))
+            _known_unit(unit, info.context)
         else:
             try:
-                rows = read_columns(path, 3)
+                rows = read_columns(path, str(written), 3)
             except TableError as error:
                 raise refuse(error.message, error.fix) from None
             x, psi, unit = rows[:, 0], rows[:, 1] + 1j * rows[:, 2], None
         if np.any(np.diff(x) <= 0):
             raise refuse(f"the places in `{written}` do not rise", "sort the rows and drop doubled ones")
-        if not np.any(psi):
+        if not (np.all(np.isfinite(x)) and np.all(np.abs(psi) < LARGEST)):
+            raise refuse(f"the field in `{written}` is not finite everywhere", "every value must be finite")
+        if not np.any(np.abs(psi) > 1 / LARGEST):
             raise refuse(f"the field in `{written}` is 0 everywhere", "store a field with some probability")
         return cls(str(written), x, psi, unit, digest(path))
 
 
-def _final_state(path: Path) -> tuple[Array, Array, str]:
+def _known_unit(unit: str, reader: Reader) -> None:
+    """Refuses a unit of stored places that the job file's units do not go with."""
+    try:
+        reader.units.read(f"1 {unit}".strip(), "length")
+    except QuantityError as error:
+        raise refuse(f"the stored places are in `{unit}`: {error.message}", error.fix) from None
+
+
+def _final_state(path: Path, written: str) -> tuple[Array, Array, str]:
     """x, psi and the unit of x of the last stored time of a fields.nc with one axis."""
     import h5py
 
     try:
         with h5py.File(path, "r") as file:
-            psi = np.asarray(file["psi"])
-            x = np.asarray(file["x"], dtype=float)
-            unit = file["x"].attrs.get("units", "")
-    except (OSError, KeyError):
+            x, psi = file["x"], file["psi"]
+            if x.ndim != 1 or psi.ndim not in (2, 3) or psi.shape[-2:] != (x.size, 2) or x.size < FEWEST_ROWS:
+                raise refuse(f"`{written}` does not hold a field on one axis", "name the fields.nc of a run with one axis")
+            last = np.asarray(psi[-1] if psi.ndim == 3 else psi, dtype=float)
+            unit = x.attrs.get("units", "")
+            places = np.asarray(x, dtype=float)
+    except (OSError, KeyError, AttributeError, TypeError, ValueError, RuntimeError):
         raise refuse(
-            f"`{path.name}` is no fields file with `psi` on an axis `x`", "name the fields.nc of a finished run"
+            f"`{written}` is no fields file with `psi` on an axis `x`", "name the fields.nc of a finished run"
         ) from None
-    last = psi[-1] if psi.ndim == 3 else psi
-    if last.ndim != 2 or last.shape[-1] != 2 or last.shape[0] != x.size:
-        raise refuse(f"the field in `{path.name}` has more than one axis", "name the fields.nc of a run with one axis")
-    return x, last[:, 0] + 1j * last[:, 1], unit.decode() if isinstance(unit, bytes) else str(unit)
+    return places, last[:, 0] + 1j * last[:, 1], unit.decode() if isinstance(unit, bytes) else str(unit)
 
 
 StoredPath = Annotated[StoredField, BeforeValidator(StoredField.read), WithJsonSchema({"type": "string"})]
@@ -76,12 +87,8 @@ class FilePacket(Packet):
 
     def places(self, units: Units) -> Array:
         """The stored places in scaled units."""
-        if not self.path.unit:
-            return self.path.x * units.scale("length")
-        try:
-            return self.path.x * units.read(f"1 {self.path.unit}", "length")
-        except QuantityError as error:
-            raise refuse(error.message, error.fix) from None
+        scale = units.read(f"1 {self.path.unit}", "length") if self.path.unit else units.scale("length")
+        return self.path.x * scale
 
     def field(self, axis: Axis, surroundings: Surroundings) -> Array:
         from scipy.interpolate import CubicSpline

@@ -66,6 +66,8 @@ def terms(value: str | int | float) -> list[Term]:
         raise QuantityError(
             f"the quantity is longer than {MAX_LENGTH} characters", "write a number and a unit"
         )
+    if re.search("[0-9]_[0-9]", value):
+        raise QuantityError(f"`{value}` has a `_` between digits", "write the digits without it")
     return list(_read(value.strip()))
 
 

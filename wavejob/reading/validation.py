@@ -82,7 +82,7 @@ def _problem(document: Merged, detail: Any, known: Callable[[Any], list[str]]) -
     last = str(detail["loc"][-1]) if detail["loc"] else ""
     if kind == "extra_forbidden":
         fix = _meant(last, known(_value(document, path[:-1])))
-        return problem_at(document, path, f"unknown key `{last}`", fix, key=True), path
+        return problem_at(document, path, f"unknown key {shown(last)}", fix, key=True), path
     if kind == "missing":
         around = problem_at(document, path, f"`{last}` is missing", "add it", key=True)
         return replace(around, key=dotted((*path, last))), (*path, last)
