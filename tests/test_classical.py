@@ -200,7 +200,7 @@ def test_pressed_against_a_floor_stays_on_it(velocity: float) -> None:
 
 def test_absorbing_layers_lower_the_weight() -> None:
     """exp(-2 W t) in a uniform W, hbar = 1."""
-    motion = Motion(Landscape(), 1.0, -50, 50, absorption=lambda x: np.where(x > 5, 0.3, 0.0))
+    motion = Motion(Landscape(), 1.0, -50, 50, absorption=lambda x, _: np.where(x > 5, 0.3, 0.0))
     end = motion.advance(Trajectories.start(np.array([6.0, -6.0]), 1.0, 0.5), 0.0, 2.0, 4)
     np.testing.assert_allclose(end.weight, [0.5 * math.exp(-1.2), 0.5], rtol=1e-12)
 

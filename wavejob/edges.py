@@ -100,6 +100,12 @@ class LayerShape:
         z = np.clip(s, 0, self.depth) * C / self.pole
         return np.asarray(_squared(self.k_min, z) / (2 * self.mass))
 
+    def integral(self, s: Array) -> Array:
+        """Integral of W from the start of the layer to distance `s` into it."""
+        z = np.clip(s, 0, self.depth) * C / self.pole
+        total = A * z**2 / 2 - B * z**4 / 4 + 4 / (C - z) + 4 / (C + z) - 8 / C
+        return np.asarray(self.k_min**2 / (2 * self.mass) * self.pole / C * total)
+
     def slope(self, s: Array) -> Array:
         """dW/ds at distance `s` into the layer."""
         z = np.clip(s, 0, self.depth) * C / self.pole

@@ -29,6 +29,7 @@ KICKS = (*_B, 0.5 - sum(_B), 0.5 - sum(_B), *_B[::-1], 0.0)
 NUDGE = 1e-12  # of the length of the axis: how far beside an edge a trajectory stands after meeting it
 MOST_EVENTS = 1000  # edges met in one step
 MOST_BISECTIONS = 80
+STRAIGHT = (1.0,), (0.0,)  # drift and kick where there is no force between edges
 VELOCITY_STEP = 1e-4  # of a step: difference that gives the velocity of a moving edge
 
 
@@ -65,12 +66,32 @@ class Trajectories:
 
 
 @dataclass(frozen=True)
+class Passages:
+    """Edges that trajectories crossed, every field of shape (passages,).
+
+    `who` counts trajectories, `toward` is 1 for a passage towards larger x and -1 for the other, `weight` is
+    that of the trajectory at the time `t`.
+    """
+
+    who: Array
+    t: Array
+    place: Array
+    toward: Array
+    weight: Array
+
+    def at(self, chosen: Array) -> Passages:
+        """Those of an index or a mask."""
+        return Passages(*(getattr(self, f.name)[chosen] for f in fields(self)))
+
+
+@dataclass(frozen=True)
 class Motion:
     """Newton's equation on one axis from `low` to `high`.
 
     On a "periodic" axis what leaves at one end enters at the other, where a difference in potential counts
-    as an edge; on a "sine" axis both ends are walls. `absorption` is W(x) >= 0 of absorbing layers and
-    lowers the weight by exp(-2 W dt).
+    as an edge; on a "sine" axis both ends are walls. `absorption` is the mean of W >= 0 of absorbing layers
+    between two places and lowers the weight by exp(-2 W dt). `passed` is told of every edge crossed, those of
+    height 0 included. Without `actions` these stay 0, which saves time.
     """
 
     landscape: Landscape
@@ -78,7 +99,9 @@ class Motion:
     low: float
     high: float
     ends: Transform = "periodic"
-    absorption: Callable[[Array], Array] | None = None
+    absorption: Callable[[Array, Array], Array] | None = None
+    passed: Callable[[Passages], None] | None = None
+    actions: bool = True
 
     def advance(self, now: Trajectories, t: float, duration: float, steps: int = 1) -> Trajectories:
         """The trajectories, all inside [low, high] at `t`, `duration` later.
@@ -97,6 +120,16 @@ class Motion:
     @property
     def nudge(self) -> float:
         return NUDGE * (self.high - self.low)
+
+    @cached_property
+    def straight(self) -> bool:
+        """Whether there is no force between edges."""
+        edges = [term.shape.breaks for term in self.landscape.terms]
+        return all(breaks is not None and not np.any(breaks.kinks) for breaks in edges)
+
+    @cached_property
+    def _scheme(self) -> tuple[tuple[float, ...], tuple[float, ...]]:
+        return STRAIGHT if self.straight and not self.actions else (DRIFTS, KICKS)
 
     def _step(self, now: Trajectories, t: float, step: float) -> Trajectories:
         """One step; those that meet an edge go on from there with the time they have left."""
@@ -117,7 +150,10 @@ class Motion:
             times = times + taken
             if reached.any():
                 t_met, edge, toward = times[reached], edge[reached], toward[reached]
-                met, held = self._meet(end.at(reached), t_met, edge, toward, end_time, step)
+                met, held, crosses = self._meet(end.at(reached), t_met, edge, toward, end_time, step)
+                if self.passed is not None and crosses.any():
+                    place, who = self._places(t_met, edge), moving[reached]
+                    self.passed(Passages(who, t_met, place, toward, met.weight).at(crosses))
                 end.put(reached, met)
                 times[reached] = np.where(held, end_time, t_met)
             result.put(moving, end)
@@ -133,26 +169,28 @@ class Motion:
         """Motion under the smooth force from `t` for the times `tau`, and the positions after each drift."""
         x, p, action, lagrangian = now.x, now.p, now.action, now.lagrangian_action
         moment, trail = 0.0, []
-        for drift, kick in zip(DRIFTS, KICKS, strict=True):
+        for drift, kick in zip(*self._scheme, strict=True):
             span, moment = drift * tau, moment + drift
             x = x + span * p / self.mass
-            action = action + span * p**2 / self.mass
-            lagrangian = lagrangian + span * p**2 / (2 * self.mass)
             trail.append(x)
+            if self.actions:
+                action = action + span * p**2 / self.mass
+                lagrangian = lagrangian + span * p**2 / (2 * self.mass)
             if kick:
                 at = t + moment * tau
                 p = p - kick * tau * self._field(self.landscape.slope, x, at)
-                lagrangian = lagrangian - kick * tau * self._field(self.landscape.value, x, at)
+                if self.actions:
+                    lagrangian = lagrangian - kick * tau * self._field(self.landscape.value, x, at)
         weight = now.weight
         if self.absorption is not None:
-            weight = weight * np.exp(-tau * (self.absorption(now.x) + self.absorption(x)))
+            weight = weight * np.exp(-2 * tau * self.absorption(now.x, x))
         return Trajectories(x, p, weight, action, lagrangian), trail
 
     def _first_passed(self, x: Array, trail: list[Array], t: Array, tau: Array) -> tuple[Array, Array]:
         """Number of the first edge passed on the way (-1 for none) and a time from `t` by which it was."""
         edge, latest = np.full(len(x), -1), np.zeros(len(x))
         before = x[:, None] - self._edges(t)[0]
-        for moment, place in zip(np.cumsum(DRIFTS), trail, strict=True):
+        for moment, place in zip(np.cumsum(self._scheme[0]), trail, strict=True):
             after = place[:, None] - self._edges(t + moment * tau)[0]
             passed = ((before > 0) != (after > 0)) & (edge < 0)[:, None]
             if passed.any():
@@ -189,8 +227,8 @@ class Motion:
 
     def _meet(
         self, now: Trajectories, t: Array, edge: Array, toward: Array, end_time: float, step: float
-    ) -> tuple[Trajectories, Array]:
-        """Cross the edge or turn back; also which trajectories are pressed against it.
+    ) -> tuple[Trajectories, Array, Array]:
+        """Cross the edge or turn back; also which trajectories are pressed against it, and which cross.
 
         One that would bounce lower than the nudge, and so without end, is held there until `end_time`.
         """
@@ -215,7 +253,7 @@ class Motion:
             x = np.where(held, self._places(until, edge) + side * self.nudge, x)
             velocity = np.where(held, self._velocities(until, edge, delta), velocity)
             relative = np.where(held, 0.0, relative)
-        return replace(now, x=x, p=self.mass * (velocity + relative)), held
+        return replace(now, x=x, p=self.mass * (velocity + relative)), held, crosses
 
     def _field(self, field: Callable[[Array, float], Array], x: Array, t: Array) -> Array:
         """Value or slope at every x at its own time."""

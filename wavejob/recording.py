@@ -9,7 +9,7 @@ import numpy as np
 
 from .evolve.schedule import Schedule
 from .observables.base import Bench, Meter, Series
-from .observables.moments import kinetic_energy, norm, potential_energy
+from .observables.moments import kinetic_energy, mean_place, norm, place_width, potential_energy
 from .state import Look
 
 Array = np.ndarray
@@ -56,9 +56,13 @@ class Watch:
     norm_drift: float = 0.0
     edge: float = 0.0
     head_room: float = 0.0
+    places: list[float] = field(default_factory=list)  # mean place at each row
+    widths: list[float] = field(default_factory=list)
 
     def see(self, look: Look) -> None:
         axis = self.bench.axis
+        self.places.append(mean_place(look, self.bench))
+        self.widths.append(place_width(look, self.bench))
         absorbed = sum(float(taken[0]) for taken in look.absorbed.values())
         self.norm_drift = max(self.norm_drift, abs(norm(look) + absorbed - 1))
         rim = max(axis.points // 100, 1)

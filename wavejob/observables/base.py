@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from typing import Literal
+from typing import TYPE_CHECKING, Literal
 
 import numpy as np
 
@@ -23,6 +23,9 @@ from ..results import Check, Column, Curve
 from ..shapes import Landscape
 from ..state import Look
 from .integrals import every
+
+if TYPE_CHECKING:
+    from .swarm import ClassicalMeter
 
 Array = np.ndarray
 Toward = Literal["+x", "-x"]
@@ -135,6 +138,14 @@ class Observable(Model):
 
     def meter(self, bench: Bench) -> Meter:
         raise NotImplementedError
+
+    def classical_figures(self, outline: Outline) -> tuple[Column, ...]:
+        """Those of its figures that F = m a gives too."""
+        return ()
+
+    def classical(self, bench: Bench) -> ClassicalMeter | None:
+        """The meter for trajectories that follow F = m a; None where there is no counterpart."""
+        return None
 
     def misplaced(self, axis: Axis) -> tuple[str, str, str] | None:
         """(key, what is wrong, cure) where it cannot stand on this axis."""

@@ -12,6 +12,7 @@ from ..state import Look
 from .base import Bench, Meter, Observable, Outline, Series, over_time, summary
 from .integrals import Samples, running
 from .interpolant import gradient
+from .swarm import ClassicalMeter, History, Swarm
 
 Array = np.ndarray
 ABSORBED_TOO_MUCH = 1e-8  # beyond this, Ehrenfest's theorem does not hold for what is left
@@ -64,6 +65,24 @@ def mean_force(look: Look, bench: Bench) -> float:
     return float(2 * push.imag * bench.axis.spacing) / norm(look)
 
 
+def swarm_place(swarm: Swarm) -> Array:
+    return swarm.mean(swarm.x)
+
+
+def swarm_width(swarm: Swarm) -> Array:
+    return swarm.deviation(swarm.x)
+
+
+def swarm_momentum(swarm: Swarm) -> Array:
+    return swarm.mean(swarm.p)
+
+
+def swarm_force(swarm: Swarm) -> Array:
+    """Not a number where there are sharp edges: a trajectory feels them for no time at all."""
+    sharp = swarm.landscape.edges(swarm.t)[0].size > 0
+    return swarm.mean(swarm.force) * (np.nan if sharp else 1.0)
+
+
 class Norm(Observable):
     """The norm, what each absorbing end took, and whether the two add up to 1."""
 
@@ -78,6 +97,21 @@ class Norm(Observable):
             Column("norm.final", meaning="probability on the grid at the end"),
             Column("norm.drift", meaning="largest abs(norm + absorbed - 1)"),
             *(Column(f"absorbed.{name}", meaning=f"probability absorbed at {name}") for name in outline.layers),
+        )
+
+    def classical_figures(self, outline: Outline) -> tuple[Column, ...]:
+        return tuple(figure for figure in self.figures(outline) if figure.name != "norm.drift")
+
+    def classical(self, bench: Bench) -> ClassicalMeter:
+        absorbed = [layer.name for layer in bench.hamiltonian.layers]
+
+        def figures(history: History) -> dict[str, float | None]:
+            taken = {f"absorbed.{name}": history.last(f"absorbed.{name}") for name in absorbed}
+            return {"norm.final": history.last("norm"), **taken}
+
+        return ClassicalMeter(
+            lambda swarm: {"norm": swarm.norm, **{f"absorbed.{name}": swarm.absorbed[name] for name in absorbed}},
+            figures,
         )
 
     def meter(self, bench: Bench) -> Meter:
@@ -106,6 +140,7 @@ class Moment(Observable):
     dimension: ClassVar[str]
     what: ClassVar[str]
     measure: ClassVar[Callable[[Look, Bench], float]]
+    of_swarm: ClassVar[Callable[[Swarm], Array]]
 
     def columns(self, outline: Outline) -> tuple[Column, ...]:
         return tuple(Column(f"{self.title}.{axis}", self.dimension, self.what) for axis in outline.axes)
@@ -115,6 +150,15 @@ class Moment(Observable):
             figure
             for axis in outline.axes
             for figure in over_time(f"{self.title}.{axis}", self.dimension, f"{self.what} along {axis}")
+        )
+
+    def classical_figures(self, outline: Outline) -> tuple[Column, ...]:
+        return self.figures(outline)
+
+    def classical(self, bench: Bench) -> ClassicalMeter:
+        name, of_swarm = f"{self.title}.{bench.axis.name}", type(self).of_swarm
+        return ClassicalMeter(
+            lambda swarm: {name: of_swarm(swarm)}, lambda history: summary(name, history.series(name))
         )
 
     def meter(self, bench: Bench) -> Meter:
@@ -135,25 +179,29 @@ class MomentMeter(Meter):
 class Position(Moment):
     """Mean position along each axis."""
 
-    title, dimension, what, measure = "position", "length", "mean position", mean_place
+    title, dimension, what = "position", "length", "mean position"
+    measure, of_swarm = mean_place, swarm_place
 
 
 class Momentum(Moment):
     """Mean momentum along each axis."""
 
-    title, dimension, what, measure = "momentum", "momentum", "mean momentum", mean_momentum
+    title, dimension, what = "momentum", "momentum", "mean momentum"
+    measure, of_swarm = mean_momentum, swarm_momentum
 
 
 class Force(Moment):
     """Mean force along each axis, (2 / hbar) Im <p psi, V psi>: right for sharp edges too."""
 
-    title, dimension, what, measure = "force", "force", "mean force", mean_force
+    title, dimension, what = "force", "force", "mean force"
+    measure, of_swarm = mean_force, swarm_force
 
 
 class Width(Moment):
     """Standard deviation of position along each axis."""
 
-    title, dimension, what, measure = "width", "length", "standard deviation of position", place_width
+    title, dimension, what = "width", "length", "standard deviation of position"
+    measure, of_swarm = place_width, swarm_width
 
 
 class Energy(Observable):
@@ -169,6 +217,20 @@ class Energy(Observable):
     def figures(self, outline: Outline) -> tuple[Column, ...]:
         drift = "largest abs(change - work done + energy absorbed) over the largest mean kinetic energy"
         return (Column("energy.final", "energy", "mean energy at the end"), Column("energy.drift", meaning=drift))
+
+    def classical_figures(self, outline: Outline) -> tuple[Column, ...]:
+        return self.figures(outline)[:1]
+
+    def classical(self, bench: Bench) -> ClassicalMeter:
+        def row(swarm: Swarm) -> dict[str, Array]:
+            kinetic, potential = swarm.mean(swarm.p**2) / (2 * swarm.mass), swarm.mean(swarm.potential)
+            return {
+                "energy.total": kinetic + potential,
+                "energy.kinetic": kinetic,
+                "energy.potential": potential,
+            }
+
+        return ClassicalMeter(row, lambda history: {"energy.final": history.last("energy.total")})
 
     def meter(self, bench: Bench) -> Meter:
         return EnergyMeter(bench)

@@ -14,6 +14,7 @@ from ..state import Look
 from .base import Bench, Meter, Observable, Outline, Series, Toward, time_average
 from .integrals import Samples, positive_part, running
 from .interpolant import at_point, fine_density, region_weights
+from .swarm import ClassicalMeter, History, Swarm
 
 Array = np.ndarray
 NOTHING = 1e-12  # a crossed probability below this has no meaningful mean time
@@ -48,6 +49,16 @@ class Inside(Observable):
             Column(f"{self.name}.mean", "number", "probability in the region averaged over time"),
         )
 
+    def classical_figures(self, outline: Outline) -> tuple[Column, ...]:
+        return self.figures(outline)
+
+    def classical(self, bench: Bench) -> ClassicalMeter:
+        return ClassicalMeter(
+            lambda swarm: {self.name: swarm.between(self.start, self.stop)},
+            lambda history: region_figures(self.name, history.series(self.name)),
+            counts=True,
+        )
+
     def meter(self, bench: Bench) -> Meter:
         return InsideMeter(bench, self)
 
@@ -66,14 +77,19 @@ class InsideMeter(Meter):
         return [probability(look, self.bench.axis, self.weights)]
 
     def results(self, series: Series, stride: int = 1) -> dict[str, float | None]:
-        values = series.values[:, 0]
-        top = int(np.argmax(values))
-        return {
-            f"{self.name}.final": float(values[-1]),
-            f"{self.name}.peak": float(values[top]),
-            f"{self.name}.peak_time": float(series.times[top]),
-            f"{self.name}.mean": time_average(series),
-        }
+        return region_figures(self.name, series)
+
+
+def region_figures(name: str, series: Series) -> dict[str, float | None]:
+    """What the probability in a region comes to."""
+    values = series.values[:, 0]
+    top = int(np.argmax(values))
+    return {
+        f"{name}.final": float(values[-1]),
+        f"{name}.peak": float(values[top]),
+        f"{name}.peak_time": float(series.times[top]),
+        f"{name}.mean": time_average(series),
+    }
 
 
 class Crossing(Observable):
@@ -95,6 +111,36 @@ class Crossing(Observable):
             Column(f"{self.name}.undecided", "number", before),
         )
 
+    @property
+    def forward(self) -> float:
+        return 1.0 if self.toward == "+x" else -1.0
+
+    def ahead(self, axis: Axis) -> tuple[float, float]:
+        """The part of the axis before the detector."""
+        return (axis.low, self.x) if self.forward > 0 else (self.x, axis.high)
+
+    def classical_figures(self, outline: Outline) -> tuple[Column, ...]:
+        return self.figures(outline)
+
+    def classical(self, bench: Bench) -> ClassicalMeter:
+        waiting = f"{self.name}.undecided"
+
+        def figures(history: History) -> dict[str, float | None]:
+            passing = history.passing(self.x)
+            flow = passing.toward * self.forward * passing.weight
+            total = float(flow.sum())
+            return {
+                f"{self.name}.total": total,
+                f"{self.name}.backward": float(passing.weight[passing.toward != self.forward].sum()),
+                f"{self.name}.mean_time": float(flow @ passing.t) / total if abs(total) > NOTHING else None,
+                waiting: history.last(waiting),
+            }
+
+        def row(swarm: Swarm) -> dict[str, Array]:
+            return {waiting: swarm.between(*self.ahead(bench.axis))}
+
+        return ClassicalMeter(row, figures, place=self.x, counts=True)
+
     def meter(self, bench: Bench) -> Meter:
         return CrossingMeter(bench, self)
 
@@ -110,10 +156,9 @@ class CrossingMeter(Meter):
     def __init__(self, bench: Bench, crossing: Crossing) -> None:
         axis = bench.axis
         self.bench, self.name, self.x = bench, crossing.name, crossing.x
-        self.forward = 1.0 if crossing.toward == "+x" else -1.0
+        self.forward = crossing.forward
         self.point = at_point(axis, crossing.x)
-        ahead = (axis.low, crossing.x) if self.forward > 0 else (crossing.x, axis.high)
-        self.before = region_weights(axis, *ahead)
+        self.before = region_weights(axis, *crossing.ahead(axis))
         self.flux = Samples()
         self.undecided = 0.0
 
