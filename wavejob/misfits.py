@@ -98,7 +98,7 @@ def _potential(job: Job) -> Iterator[Problem]:
         if item.name in names:
             said = f"another term is called `{item.name}`"
             yield job.problem(("potential", index, "name"), said, "choose another name, or leave it out")
-        names |= {item.name} - {None}
+        names |= {item.name} if item.name else set()
         where: Key = ("potential", index, item.kind)
         wrong = item.body.misfit(job.setting, axis.low, axis.high)
         shapes: list[tuple[Key, TimeShape | None]] = [

@@ -45,6 +45,13 @@ class Reader:
     read_as: dict[int, type[BaseModel]] = field(default_factory=dict)  # id of a mapping -> the model it was read as
 
 
+def reader_of(info: ValidationInfo) -> Reader:
+    """The reader that a job file is read with."""
+    if not isinstance(info.context, Reader):
+        raise TypeError("job files are read with a Reader as context")
+    return info.context
+
+
 def refuse(message: str, fix: str = "", at: str | int | None = None, column: int = 0) -> PydanticCustomError:
     """The error a validator raises; the texts reach the user as they are.
 
@@ -154,7 +161,7 @@ def unit_of(dimension: str) -> BeforeValidator:
         if not isinstance(value, str):
             raise refuse(f"{shown(value)} is no unit", f"write one, as in `{example(dimension)}`")
         try:
-            info.context.units.read(f"1 {value}", dimension)
+            reader_of(info).units.read(f"1 {value}", dimension)
         except QuantityError as error:
             raise refuse(error.message, error.fix) from None
         return value
@@ -216,7 +223,7 @@ def _name(value: Any) -> str:
     if isinstance(value, str) and NAME.fullmatch(value):
         return value
     raise refuse(
-        f"{shown(value)} cannot be a name", "use a letter, then letters, digits, `_` or `-`, at most 41 characters"
+        f"{shown(value)} is no name", "use a letter, then letters, digits, `_` or `-`, at most 41 characters"
     )
 
 
@@ -233,7 +240,7 @@ def one_of(
     if not isinstance(value, dict):
         instead = "".join(f"`{word}` or " for word in words)
         raise refuse(f"{shown(value)} is no {what}", f"write {instead}one kind with its parameters: {names}")
-    kinds = [key for key in value if key in table]
+    kinds = [str(key) for key in value if key in table]
     if len(kinds) == 1:
         return kinds[0]
     if kinds:
@@ -283,7 +290,7 @@ class NamedQuantity:
 
     @staticmethod
     def _read(value: Any, info: ValidationInfo) -> Named:
-        reader: Reader = info.context
+        reader = reader_of(info)
         if isinstance(value, bool) or not isinstance(value, (int, float, str)):
             raise refuse(f"{shown(value)} is no quantity", "write a number with its unit")
         if isinstance(value, str) and value in reader.names:

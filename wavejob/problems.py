@@ -38,7 +38,7 @@ class Problem:
         if self.key:
             parts.append(self.key)
         said = f"{self.message}; {self.fix}" if self.fix else self.message
-        return ": ".join([*parts, said])
+        return " ".join(": ".join([*parts, said]).splitlines())  # what the user wrote may have several
 
     def text(self) -> str:
         """The headline, then the offending line with a caret under the column."""

@@ -102,10 +102,11 @@ def word_or(words: tuple[str, ...], model: type[Model], what: str) -> Any:
         fix = f"did you mean `{near}`?" if near else f"write {listed} or {{{keys}}}"
         raise refuse(f"{shown(value)} is no {what}", fix)
 
-    word = Annotated[Literal[words], Tag("word")]
-    mapping = Annotated[model, Tag("mapping")]
+    literal: Any = Literal
+    word = Annotated[literal[words], Tag("word")]
+    mapping: Any = Annotated[model, Tag("mapping")]
     return Annotated[
-        word | mapping,  # type: ignore[valid-type]
+        word | mapping,
         Discriminator(lambda value: "word" if isinstance(value, str) else "mapping"),
         BeforeValidator(known),
     ]
@@ -193,16 +194,37 @@ def _accuracy(value: Any) -> float:
     return float(value)
 
 
+Tolerance = Annotated[
+    float, BeforeValidator(_accuracy), WithJsonSchema({"type": "number", "minimum": 1e-12, "maximum": 0.1})
+]
+
+
+class RelativeAccuracy(Model):
+    """An error relative to the value of each result, for small probabilities."""
+
+    relative: Tolerance = Field(description="error over value")
+    down_to: Tolerance = Field(1e-12, description="values below this (of the scale) need no better error than this")
+
+
+if TYPE_CHECKING:
+    AccuracyChoice = float | RelativeAccuracy
+else:
+    AccuracyChoice = Annotated[
+        Annotated[Tolerance, Tag("number")] | Annotated[RelativeAccuracy, Tag("mapping")],
+        Discriminator(lambda value: "mapping" if isinstance(value, dict | RelativeAccuracy) else "number"),
+    ]
+
+
 class EvolveKeys(Model):
     """How long, how accurately, how often recorded."""
 
     start: Time = Field(0.0, description="time of the initial state")
     until: Time = Field(description="time at which the run ends")
-    accuracy: Annotated[
-        float | None,
-        BeforeValidator(_accuracy),
-        WithJsonSchema({"type": "number", "minimum": 1e-12, "maximum": 0.1}),
-    ] = Field(None, description="the numerical error wanted in the results; 1e-4 if left out")
+    accuracy: AccuracyChoice | None = Field(
+        None,
+        description="the numerical error wanted in the results, of the scale of each, or "
+        "{relative:, down_to:} of its value; 1e-4 if left out",
+    )
     step: Duration | None = Field(None, description="fixes the time step")
     order: Literal[2, 4] | None = Field(None, description="order of the splitting: 2 or 4; left out: chosen")
     record: Duration | None = Field(None, description="spacing of the time series; left out: about 400 rows")
@@ -301,6 +323,30 @@ def _only_none(what: str) -> BeforeValidator:
     return BeforeValidator(read)
 
 
+def _box(value: Any) -> Any:
+    words = {"yes": "yes", "no": "no", True: "yes", False: "no", "auto": "auto"}
+    if isinstance(value, (bool, str)) and value in words:
+        return words[value]
+    raise refuse(f"{shown(value)} is no choice for `box`", "write `yes`, `no` or `auto`")
+
+
+class ErrorBarsKeys(Model):
+    """Which companion runs the error bars are made from."""
+
+    step: Flag = Field(True, description="another time step")
+    grid: Flag = Field(True, description="another number of points")
+    record: Flag = Field(True, description="every second row and sample")
+    box: Annotated[
+        Literal["yes", "no", "auto"], BeforeValidator(_box), WithJsonSchema({"enum": ["yes", "no", "auto", True, False]})
+    ] = Field("auto", description="a larger grid with deeper layers; auto: where the edges matter")
+
+
+if TYPE_CHECKING:
+    ErrorBarsChoice = ErrorBarsKeys | Literal["none"]
+else:
+    ErrorBarsChoice = word_or(("none",), ErrorBarsKeys, "choice of error bars")
+
+
 UNITS_SCHEMA = {
     "oneOf": [
         {"enum": ["natural", "atomic"]},
@@ -342,8 +388,8 @@ class JobKeys(Model):
     classical: Annotated[Literal["none"] | None, _only_none("the classical companion is")] = Field(
         None, description="the F = m a companion; `none` to skip"
     )
-    error_bars: Annotated[Literal["none"] | None, _only_none("error bars are")] = Field(
-        None, description="numerical error bars; `none` to skip"
+    error_bars: ErrorBarsChoice = Field(
+        default_factory=ErrorBarsKeys, description="what the error bars are made from; `none` to skip"
     )
     film: FilmChoice = Field(default_factory=FilmKeys, description="the animation; `none` to skip")
     snapshots: SnapshotKeys | None = Field(None, description="store the field; left out: the final state only")

@@ -11,7 +11,7 @@ import numpy as np
 from pydantic import Field, ValidationInfo, WithJsonSchema
 from pydantic.functional_validators import BeforeValidator
 
-from .models import Reader, refuse
+from .models import reader_of, refuse
 from .problems import shown
 from .reading.tree import PathError
 
@@ -136,7 +136,7 @@ class TableFile:
 
 def named_file(written: Any, info: ValidationInfo) -> Path:
     """The file that `written` names, inside the job tree."""
-    reader: Reader = info.context
+    reader = reader_of(info)
     if not isinstance(written, str) or not written:
         raise refuse(f"{shown(written)} is no path", "write a path relative to this file")
     if reader.open_path is None:

@@ -11,7 +11,7 @@ from pydantic import Field, ValidationInfo, WithJsonSchema
 from pydantic.functional_validators import BeforeValidator
 
 from ..grid import Axis
-from ..models import LARGEST, Reader, refuse
+from ..models import LARGEST, Reader, reader_of, refuse
 from ..reading.quantities import QuantityError, Units
 from ..tabulated import FEWEST_ROWS, TableError, digest, named_file, read_columns
 from .base import Array, Packet, Surroundings, normalised
@@ -34,7 +34,7 @@ class StoredField:
         path = named_file(written, info)
         if path.suffix == ".nc":
             x, psi, unit = _final_state(path, str(written))
-            _known_unit(unit, info.context)
+            _known_unit(unit, reader_of(info))
         else:
             try:
                 rows = read_columns(path, str(written), 3)

@@ -10,7 +10,6 @@ from pydantic import Field, model_validator
 from ..grid import Axis
 from ..models import Angle, Extent, Length, Model, Momentum, Number, PositiveEnergy, Velocity, Wavenumber, refuse
 from ..potentials.base import Toward, sign
-from ..reading.quantities import Units
 from .base import Array, Packet, PacketError, Surroundings, normalised, waves
 
 LEAST_LEFT = 1e-10  # of the probabilities of a sum's packets, below which they are said to cancel
@@ -35,7 +34,7 @@ class GaussianPacket(Packet):
         ]
         if len(given) > 1:
             listed = " and ".join(f"`{name}`" for name in given)
-            raise refuse(f"{listed} all set the motion of the packet", "keep one of them", at=given[1])
+            raise refuse(f"{listed} each set the motion of the packet", "keep one of them", at=given[1])
         if (self.energy is None) != (self.toward is None):
             missing = "toward" if self.toward is None else "energy"
             raise refuse(f"`{missing}` is missing", "`energy` and `toward: +x` or `-x` go together")

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Collection
 from dataclasses import replace
 from typing import Any, TypeVar
 
@@ -22,7 +22,7 @@ def problem_at(document: Merged, path: Key, message: str, fix: str = "", *, key:
 
 
 def read_as(
-    model: type[M], document: Merged, context: Any, known: Callable[[Any], list[str]], skip: Iterable[Key] = ()
+    model: type[M], document: Merged, context: Any, known: Callable[[Any], list[str]], skip: Collection[Key] = ()
 ) -> tuple[M | None, dict[Problem, Key]]:
     """The document's value as `model`, and all that is wrong with it, each with the path it is about.
 
@@ -40,9 +40,11 @@ def read_as(
         problems = dict(_problem(replace(document, value=value), detail, known) for detail in details)
         meant = {(path[:-1], p.fix) for p, path in problems.items() if p.message.startswith("unknown key")}
         for problem, path in problems.items():
-            # What is missing may be misspelt, and what holds something left out may miss just that.
+            # What is missing may be misspelt, or stand there as a key that is left out, and what holds a key that
+            # is left out may miss just that.
             misspelt = (path[:-1], f"did you mean `{path[-1]}`?") in meant if path else False
-            if not misspelt and not any(related(path, gone) for gone in dropped):
+            replaced = problem.message.endswith("is missing") and any(gone[:-1] == path[:-1] for gone in skip)
+            if not misspelt and not replaced and not any(related(path, gone) for gone in dropped):
                 found[problem] = path
         # A list is left out as a whole: its items keep their places.
         blamed = {_before_list(path) for path in problems.values()} - dropped
@@ -132,8 +134,9 @@ def _plain(kind: str, detail: Any) -> tuple[str, str]:
         return f"{given} is not accepted", f"there are: {limits.get('expected', '').replace(chr(39), '`')}"
     if kind in ("too_short", "too_long"):
         count, least, most = limits.get("actual_length"), limits.get("min_length"), limits.get("max_length")
-        wanted = f"at least {least}" if kind == "too_short" else f"at most {most}"
-        return f"the list is too {'short' if kind == 'too_short' else 'long'} ({count})", f"{wanted} items are accepted"
+        if kind == "too_long":
+            return f"the list has {count} items", f"at most {most} are accepted"
+        return f"the list has {count or 'no'} item{'s' if count != 1 else ''}", f"at least {least} needed"
     return f"{given} is not accepted", "see `wavejob explain` for what is"
 
 
@@ -151,9 +154,9 @@ def _present(document: Merged, loc: tuple[str | int, ...]) -> Key:
 
 def _value(document: Merged, path: Key) -> Any:
     """The value at `path`; None below a bare name, which has no parts."""
-    value = document.value
+    value: Any = document.value
     for part in path:
         if not isinstance(value, (dict, list)):
             return None
-        value = value[part]
+        value = value[part]  # type: ignore[index]
     return value
