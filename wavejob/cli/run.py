@@ -1,0 +1,210 @@
+"""Run job files, or all job files of folders, one after another; what is there already is not computed again."""
+
+from __future__ import annotations
+
+import time
+from argparse import ArgumentParser, Namespace
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from ..forecast import Forecast
+from ..job import Job
+from ..outputs.folder import RunFolder
+from ..plan import Plan
+from ..problems import JobFileError, Problem, RunError, in_order
+from ..reading.tree import shown
+from . import terminal
+from .arguments import add_not_yet, add_paths, add_reading
+from .gathering import Gathered, doubled, gather, tally
+from .json_report import job_entry, show_json
+from .preparing import prepare
+from .progress import log_line, watched
+from .sizes import counted, duration
+
+if TYPE_CHECKING:
+    from ..run import Finished
+
+
+@dataclass
+class Task:
+    """A job that is to be run, and how it ended. One that is up to date needs no plan."""
+
+    job: Job
+    runs: Path
+    plan: Plan | None = None
+    forecast: Forecast | None = None
+    status: str = "not started"
+    verdict: str | None = None
+
+    @property
+    def folder(self) -> RunFolder:
+        return RunFolder(self.runs, self.job.id, self.job.fingerprint)
+
+    @property
+    def entry(self) -> dict[str, Any]:
+        job, folder = self.job, shown(self.folder.path)
+        return job_entry(
+            job.id, job.fingerprint, self.status, folder=folder, verdict=self.verdict, forecast=self.forecast
+        )
+
+
+def add_arguments(parser: ArgumentParser) -> None:
+    add_paths(parser)
+    parser.add_argument("--runs", type=Path, metavar="DIR", help="where runs are kept, instead of runs/ in the job tree")
+    parser.add_argument("--again", action="store_true", help="compute again what is there already")
+    parser.add_argument("--quick", action="store_true", help="no error bars")
+    parser.add_argument("--no-film", action="store_true", help="draw no film")
+    add_reading(parser)
+    add_not_yet(parser, "--workers", "--by", "--checkpoint", "--on", "--junit")
+
+
+def run(options: Namespace) -> int:
+    found = gather(options)
+    if options.runs:
+        found.problems += doubled(found.jobs)
+    tasks, warnings = _tasks(found, options)
+    if found.problems:
+        return _refused(found, options)
+    if not options.quiet:
+        for warning in warnings:
+            terminal.say(warning.text())
+    try:
+        for task in tasks:
+            _carry_out(task, options)
+    except KeyboardInterrupt:
+        _say_what_is_kept(tasks)
+        if options.format == "json":
+            show_json("run", warnings, [task.entry for task in tasks])
+        raise
+    if options.format == "json":
+        show_json("run", warnings, [task.entry for task in tasks])
+    if len(tasks) > 1 and not options.quiet:
+        terminal.say(_summary(tasks))
+    return _exit_code(tasks, strict=options.strict, warned=bool(warnings))
+
+
+def _tasks(found: Gathered, options: Namespace) -> tuple[list[Task], list[Problem]]:
+    """What is to be run, the most urgent first, with the doubts about it; mistakes are added to those found."""
+    tasks = [Task(job, options.runs or job.tree.root / "runs") for job in found.jobs]
+    by_job = {id(task.job): task for task in tasks}
+    fresh = [task.job for task in tasks if options.again or task.folder.finished() is None]
+    ready, refused = prepare(fresh, options.memory, bars=not options.quick, film=not options.no_film)
+    found.problems += refused
+    for one in ready:
+        task = by_job[id(one.job)]
+        task.plan, task.forecast = one.plan, one.forecast
+    if not found.problems:
+        try:
+            for tree in {task.job.tree for task in tasks}:
+                tree.runs_folder(options.runs)
+        except JobFileError as error:
+            found.problems += error.problems
+    warnings = in_order(warning for one in ready for warning in one.warnings)
+    return sorted(tasks, key=lambda task: -task.job.keys.priority), warnings
+
+
+def _refused(found: Gathered, options: Namespace) -> int:
+    problems = in_order(found.problems)
+    if options.format == "json":
+        show_json("run", problems, [])
+        return 2
+    for problem in problems:
+        terminal.say(problem.text())
+    if not options.quiet:
+        terminal.say(f"{counted(found.files, 'job file')} read: {tally(problems)}; nothing was started")
+    return 2
+
+
+def _carry_out(task: Task, options: Namespace) -> None:
+    """Runs one job; its failure is told and noted, and does not stop the others."""
+    begun = time.monotonic()
+    if task.forecast and not options.quiet and not terminal.is_live():
+        log_line(f"{task.job.id}: started, about {duration(task.forecast.seconds)}")
+    task.status = "stopped"  # unless it ends below
+    try:
+        finished = _run(task, options)
+    except (RunError, JobFileError) as error:
+        task.status, task.verdict = "failed", "failed"
+        terminal.say(f"{task.job.id}: {error}")
+        return
+    except MemoryError:
+        task.status, task.verdict = "failed", "failed"
+        terminal.say(f"{task.job.id}: the memory is used up; take fewer points, or stop other programs")
+        return
+    except Exception as error:
+        from .bugs import report
+
+        task.status, task.verdict = "failed", "failed"
+        report(error, verbose=options.verbose, doing=task.job.id)
+        return
+    task.status, task.verdict, task.plan = finished.status, finished.verdict, None
+    if not options.quiet:
+        _say_ended(task, time.monotonic() - begun)
+    if options.format == "text":
+        _show(task)
+
+
+def _run(task: Task, options: Namespace) -> Finished:
+    from ..run import run_job  # here, because it loads the transforms, which a refused job never needs
+
+    with watched(task.job, quiet=options.quiet) as watcher:
+        return run_job(
+            task.job,
+            task.runs,
+            again=options.again,
+            bars=not options.quick,
+            film=not options.no_film,
+            plan=task.plan,
+            progress=watcher.step,
+            film_progress=watcher.frame,
+        )
+
+
+def _show(task: Task) -> None:
+    from ..reader import Run
+    from .results import result_table
+
+    job = task.job
+    title = f"{job.id}: {job.title}" if job.title != job.id else job.id
+    terminal.show(result_table(title, shown(task.folder.path), Run(task.folder.path)))
+
+
+def _say_ended(task: Task, seconds: float) -> None:
+    said = f"{task.job.id}: {task.status}, {task.verdict}"
+    if task.status == "done":
+        said += f", {duration(seconds)}"
+    if terminal.is_live():
+        terminal.say(said)
+    else:
+        log_line(said)
+
+
+def _say_what_is_kept(tasks: list[Task]) -> None:
+    kept = sum(task.status in ("done", "up to date") for task in tasks)
+    cut = next((task for task in tasks if task.status == "stopped"), None)
+    said = f"stopped: {counted(kept, 'job')} of {len(tasks)} finished and kept"
+    if cut is not None:
+        said += f"; {cut.job.id} was cut short and starts anew next time"
+    terminal.say(said)
+
+
+def _summary(tasks: list[Task]) -> str:
+    verdicts = [task.verdict for task in tasks]
+    listed = [f"{verdicts.count(v)} {v}" for v in ("trusted", "doubtful", "failed") if v in verdicts]
+    return f"{counted(len(tasks), 'job')}: {', '.join(listed)}"
+
+
+def _exit_code(tasks: list[Task], *, strict: bool, warned: bool) -> int:
+    """1 where a job failed, an expectation was missed or is undecided; with `strict` for any doubt."""
+    if any(task.verdict == "failed" or _undecided(task) for task in tasks):
+        return 1
+    return 1 if strict and (warned or any(task.verdict == "doubtful" for task in tasks)) else 0
+
+
+def _undecided(task: Task) -> bool:
+    from ..reader import Run
+
+    if task.verdict != "doubtful":
+        return False
+    return any(entry["outcome"] == "undecided" for entry in Run(task.folder.path).document["expectations"])
