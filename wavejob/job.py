@@ -21,10 +21,13 @@ from .reading.merging import Key, Merged
 from .reading.quantities import Named, Units
 from .reading.tree import JobTree
 from .reading.validation import problem_at
-from .results import Column
+from .results import Accuracy, Column
 from .settings import EvolveKeys, JobKeys
 from .shapes import Landscape
 from .version import NUMERICS
+
+
+DEFAULT_ACCURACY = 1e-4
 
 
 @dataclass(frozen=True)
@@ -60,6 +63,14 @@ class Job:
     def packet(self) -> Packet:
         packet: Packet = self.keys.packet.body
         return packet
+
+    @property
+    def accuracy(self) -> Accuracy:
+        """The numerical error wanted in the results."""
+        given = self.evolve.accuracy
+        if given is None:
+            return Accuracy(DEFAULT_ACCURACY)
+        return Accuracy(given) if isinstance(given, float) else Accuracy(given.down_to, given.relative)
 
     @property
     def setting(self) -> Setting:

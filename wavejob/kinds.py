@@ -13,6 +13,9 @@ from .observables.levels import Levels
 from .observables.moments import Ehrenfest, Energy, Force, Momentum, Norm, Position, Width
 from .observables.overlaps import Autocorrelation, Overlap
 from .observables.places import Crossing, Inside
+from .observables.spectrum import Spectrum
+from .observables.timing import Arrival, Dwell
+from .observables.transmission import Transmission
 from .packets.item import PACKETS
 from .potentials.item import POTENTIALS
 from .time_shapes import FACTORS, PATHS
@@ -27,9 +30,13 @@ OBSERVABLES: dict[str, type[Observable]] = {
     "ehrenfest": Ehrenfest,
     "inside": Inside,
     "crossing": Crossing,
+    "arrival": Arrival,
+    "dwell": Dwell,
+    "transmission": Transmission,
     "levels": Levels,
     "overlap": Overlap,
     "autocorrelation": Autocorrelation,
+    "spectrum": Spectrum,
     "density": Density,
     "momentum_density": MomentumDensity,
 }
@@ -63,15 +70,11 @@ NOT_YET: tuple[tuple[str, ...], ...] = (
     ("potential", "*", "image"),
     ("potential", "*", "channel"),
     ("potential", "*", "*", "axis"),
+    ("potential", "*", "path", "y"),
+    ("potential", "*", "path", "z"),
     ("packet", "channel"),
     ("packet", "*", "axis"),
-    ("observables", "*", "transmission"),
-    ("observables", "*", "arrival"),
-    ("observables", "*", "dwell"),
-    ("observables", "*", "spectrum"),
     ("observables", "*", "populations"),
     ("expect", "*", "equals_result"),
     ("expect", "*", "when"),
-    ("evolve", "accuracy", "relative"),
-    ("evolve", "accuracy", "down_to"),
 )

@@ -26,7 +26,6 @@ from .settings import Absorb
 
 Array = np.ndarray
 
-ACCURACY = 1e-4
 ROWS = 400
 FRAMES = 300
 OVERSAMPLING = 8  # samples per shortest period of what is integrated over time
@@ -47,6 +46,11 @@ class Ending:
     def recommended(self) -> float:
         """The depth that would do; found when first asked for, because it takes a while."""
         return recommended_depth(self.shape.mass, self.momenta, self.spacing)
+
+    def deeper(self, by: float) -> Ending:
+        """The same end with its layer deeper, tuned anew."""
+        shape = tuned(self.shape.depth + by, self.shape.mass, self.momenta, self.spacing)
+        return Ending(self.side, shape, self.momenta, self.spacing)
 
 
 @dataclass(frozen=True)
@@ -157,7 +161,7 @@ def chosen_axis(job: Job) -> tuple[Axis, dict[str, str]]:
 
 def choose_points(job: Job, axis: Axis) -> tuple[int, str]:
     """How many points hold the wave numbers of the packet wherever the potential lets it go."""
-    accuracy = job.evolve.accuracy or ACCURACY
+    accuracy = job.accuracy.first
     needed = highest_wavenumber(job, axis)
     jumps = np.abs(job.landscape.edges(job.evolve.start)[1])
     sharp = any(term.shape.breaks is not None for term in job.landscape.terms)
@@ -284,7 +288,7 @@ def _step(job: Job, hamiltonian: Hamiltonian, psi: Array) -> tuple[Splitting, fl
     if evolve.step is not None:
         return by_order[evolve.order or 4], evolve.step, "as written"
     orders = (evolve.order,) if evolve.order else (2, 4)
-    accuracy = evolve.accuracy or ACCURACY
+    accuracy = job.accuracy.first
     duration = evolve.until - evolve.start
     choice = choose_step(hamiltonian, psi, evolve.start, duration, accuracy, orders)
     return choice.splitting, choice.step, choice.reason

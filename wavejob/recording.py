@@ -84,6 +84,7 @@ class Frames:
     density: list[Array] = field(default_factory=list)
     phase: list[Array] = field(default_factory=list)
     energy: list[float] = field(default_factory=list)
+    norm: list[float] = field(default_factory=list)
 
     def __post_init__(self) -> None:
         x = self.bench.axis.x
@@ -101,6 +102,7 @@ class Frames:
         self.density.append(density[rows, top].astype(np.float32))
         self.phase.append(np.angle(psi[rows, top]).astype(np.float32))
         total = norm(look)
+        self.norm.append(total)
         energy = kinetic_energy(look, self.bench) + potential_energy(look, self.bench)
         self.energy.append(energy / total if total > 1e-6 else np.nan)
 

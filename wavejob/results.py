@@ -68,4 +68,24 @@ class Judgement:
     text: str
 
 
+@dataclass(frozen=True)
+class Accuracy:
+    """The error wanted: `absolute` times the scale of a result, or `relative` times its value where that is more."""
+
+    absolute: float
+    relative: float = 0.0
+
+    def limit(self, result: Result) -> float:
+        """The largest error accepted for a result."""
+        return max(self.absolute * (result.scale or 1.0), self.relative * abs(result.value or 0.0))
+
+    @property
+    def first(self) -> float:
+        """What to begin with, where values are not known yet."""
+        return max(self.absolute, self.relative / 10)
+
+    def __str__(self) -> str:
+        return f"{self.relative:g} of the value, down to {self.absolute:g}" if self.relative else f"{self.absolute:g}"
+
+
 Verdict = Literal["trusted", "doubtful", "failed"]

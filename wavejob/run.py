@@ -71,7 +71,7 @@ def run_job(
         for key, why in plan.notes.items():
             log.info("%s: %s", key, why)
         planned = time.perf_counter()
-        wanted_bars = bars and job.keys.error_bars is None
+        wanted_bars = bars and not isinstance(job.keys.error_bars, str)
         record = assess(plan, progress).record if wanted_bars else simulate(plan, progress)
         log.info("%d steps in %.2f s%s", record.steps, record.seconds, f"; {record.stopped}" if record.stopped else "")
         simulated = time.perf_counter()

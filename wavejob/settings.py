@@ -4,8 +4,9 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Annotated, Any, Literal
 
-from pydantic import Discriminator, Field, Tag, WithJsonSchema, model_validator
+from pydantic import Discriminator, Field, GetJsonSchemaHandler, Tag, WithJsonSchema, model_validator
 from pydantic.functional_validators import BeforeValidator
+from pydantic.json_schema import JsonSchemaValue
 
 from .kinds import OBSERVABLES
 from .models import (
@@ -123,6 +124,11 @@ class EndsKeys(Model):
 
     low: End = Field("wrap", description="wrap, wall or {absorb: depth}")
     high: End = Field("wrap", description="wrap, wall or {absorb: depth}")
+
+    @classmethod
+    def __get_pydantic_json_schema__(cls, schema: Any, handler: GetJsonSchemaHandler) -> JsonSchemaValue:
+        absorb = handler(Absorb.__pydantic_core_schema__)
+        return {"anyOf": [{"enum": ["wrap", "wall"]}, absorb, handler(schema)]}
 
     @model_validator(mode="before")
     @classmethod

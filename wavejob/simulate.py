@@ -53,11 +53,14 @@ class Record:
     times: Array  # (rows,)
     series: Array  # (rows, columns)
     results: tuple[Result, ...]
+    plain_results: tuple[Result, ...]  # the same without what companions add
     curves: tuple[Curve, ...]
     checks: tuple[Check, ...]
     judgements: tuple[Judgement, ...]
     verdict: Verdict
     norm_drift: float  # what rounding errors did to norm + absorbed
+    left: float  # probability on the grid at the end
+    absorbed: dict[str, float]  # by layer, at the end
     thinned: dict[str, float]  # results from every second row and sample
     psi: Array  # the final state, (points,)
     field_times: Array  # of the stored fields, the final state last
@@ -68,6 +71,10 @@ class Record:
     seconds: float  # of the loop
     series_errors: Array | None = None  # like `series`
     curve_errors: dict[str, dict[str, Array]] | None = None  # curve -> column -> errors
+
+    def bare(self) -> Record:
+        """The record with no error parts but those the observables themselves state."""
+        return replace(self, results=self.plain_results)
 
     def column(self, name: str) -> Array:
         """One column of the time series."""
@@ -135,11 +142,14 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
         times=np.array(rows.times),
         series=np.concatenate([series.values for series in table], axis=1) if table else np.empty((len(rows.times), 0)),
         results=tuple(results),
+        plain_results=tuple(results),
         curves=tuple(curve for meter in meters for curve in meter.curves()),
         checks=(*judge_run(plan, watch, outcome.n), *(check for meter in meters for check in meter.checks())),
         judgements=(),
         verdict="doubtful",
         norm_drift=watch.norm_drift,
+        absorbed={name: float(taken[0]) for name, taken in stepper.absorbed.items()},
+        left=float(np.sum(np.abs(psi) ** 2) * plan.axis.spacing),
         thinned=thinned,
         psi=psi,
         field_times=np.array([t for t, _ in stored]),

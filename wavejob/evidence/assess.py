@@ -7,16 +7,20 @@ import math
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 
-from ..plan import ACCURACY, Plan
-from ..results import Check, Result
+from ..plan import Plan
+from ..results import Accuracy, Check, Result
+from ..settings import ErrorBarsKeys
 from ..simulate import Progress, Record, judged, simulate
-from .bars import Difference, counted, weight, with_bars, worst
-from .companions import Companion, coarser, finer
+from . import edges
+from .bars import FINER, Difference, counted, weight, with_bars, worst
+from .companions import Companion, coarser, finer, larger
 
 log = logging.getLogger(__name__)
 
-MOST_LEVELS = 4  # finer runs after the first, at the most: each costs three times the one before or more
+MOST_LEVELS = 4  # finer runs after the first, at the most
+MOST_COST = 200.0  # of the first run's, that finer runs may cost together
 STALLED = 1.5  # by which a finer plan must lower the bars; else they do not converge
+EDGE_SHARE = 0.3  # of the accuracy wanted, above which what comes back from the edges is measured by a run
 
 Tell = Callable[[Progress], None]
 
@@ -33,47 +37,28 @@ def assess(plan: Plan, progress: Tell | None = None) -> Assessed:
     """Carries out `plan` and one companion of it with another step and another grid at once.
 
     Where bars exceed the accuracy wanted, a second companion tells step from grid. What the job leaves free
-    is then made finer, and the run before serves as the companion of the next.
+    is then made finer, and the run before serves as the companion of the next. Where the edges matter, a run
+    on a larger grid with deeper layers adds their part.
     """
-    wanted = plan.job.evolve.accuracy or ACCURACY
-    free_step, free_points = free(plan)
+    keys = plan.job.keys.error_bars
+    parts = ErrorBarsKeys() if isinstance(keys, str) else keys
+    wanted, free_step, free_points = plan.job.accuracy, *free(plan)
     record = simulate(plan, progress)
-    companion = coarser(plan, until=record.steps)
-    other = simulate(companion.plan, alone=False)
-    factor = weight(record, coarser=companion.coarser)
-    differences = [Difference("step and grid", record, other, factor)]
-    barred = with_bars(record, differences)
-    notes = [_note(companion, factor, barred)]
-    if worst(barred) > wanted and companion.coarser and (free_step or free_points):
-        companion = coarser(plan, points=False, until=record.steps)
-        between = simulate(companion.plan, alone=False)
-        differences = [Difference("step", record, between, factor), Difference("grid", between, other, factor)]
-        barred = with_bars(record, differences)
-        notes.append(_note(companion, factor, barred))
-    for _ in range(MOST_LEVELS):
-        step, points = (
-            free_step and _too_large(barred, "step", wanted),
-            free_points and _too_large(barred, "grid", wanted),
-        )
-        if not (step or points):
-            break
-        better = finer(
-            barred.plan,
-            step=_excess(barred, "step", wanted) ** (1 / plan.splitting.order) if step else 1.0,
-            points=_excess(barred, "grid", wanted) ** (1 / 3) if points else 1.0,
-            until=barred.steps,
-        )
-        run = replace(simulate(better.plan, progress, alone=False), stopped=barred.stopped)
-        part = "step and grid" if step and points else "step" if step else "grid"
-        kept = [d for d in differences if not (step and points) and d.part not in (part, "step and grid")]
-        factor = weight(run)
-        differences = [Difference(part, run, barred, factor), *kept]
-        before, barred = barred, with_bars(run, differences)
-        notes.append(_note(Companion(before.plan, 1 / better.step, 1 / better.points, "the run before"), factor, barred))
-        if worst(barred) > worst(before) / STALLED:
-            notes.append("a finer plan does not lower the bars: they do not converge")
-            barred = replace(barred, results=tuple(_stalled(r, wanted) for r in barred.results))
-            break
+    notes: list[str] = []
+    differences = _first(record, parts, notes)
+    barred = with_bars(record, differences, recording=parts.record)
+    if worst(barred, wanted) > 1 and (free_step or free_points) and parts.step and parts.grid:
+        differences = _apart(record, differences, notes)
+        barred = with_bars(record, differences, recording=parts.record)
+        barred, differences = _refined(barred, differences, parts, progress, notes)
+    if parts.box != "no":
+        returned = edges.returned(barred)
+        if parts.box == "yes" or returned > wanted.first * EDGE_SHARE:
+            differences = [*differences, *_box(barred, differences, notes)]
+            barred = with_bars(barred.bare(), differences, recording=parts.record)
+        elif returned:
+            notes.append(f"what the edges send back changes probabilities by about {returned:.1e}, as predicted")
+            barred = edges.with_part(barred, returned)
     for note in notes:
         log.info("error bars: %s", note)
     asked = plan.job.evolve.accuracy is not None or free_points
@@ -86,44 +71,116 @@ def free(plan: Plan) -> tuple[bool, bool]:
     return plan.job.evolve.step is None, axis.points is None and axis.spacing is None
 
 
-def _too_large(record: Record, part: str, wanted: float) -> bool:
-    """Whether some result's error in `part` takes more than half of what is wanted, where all of it is too large."""
-    return worst(record) > wanted and _excess(record, part, wanted) > 1
+def _first(record: Record, parts: ErrorBarsKeys, notes: list[str]) -> list[Difference]:
+    """The difference to one companion that changes all that bars are wanted for."""
+    if not (parts.step or parts.grid):
+        return []
+    companion = coarser(record.plan, step=parts.step, points=parts.grid, until=record.steps)
+    factor = weight(record, coarser=companion.coarser)
+    notes.append(_note(companion, factor))
+    name = "step and grid" if parts.step and parts.grid else "step" if parts.step else "grid"
+    return [Difference(name, record, simulate(companion.plan, alone=False), factor)]
 
 
-def _excess(record: Record, part: str, wanted: float) -> float:
+def _apart(record: Record, differences: list[Difference], notes: list[str]) -> list[Difference]:
+    """The same difference in two parts, by a second companion that changes the step alone."""
+    both = differences[0]
+    companion = coarser(record.plan, points=False, until=record.steps)
+    notes.append(_note(companion, both.weight))
+    between = simulate(companion.plan, alone=False)
+    return [Difference("step", record, between, both.weight), Difference("grid", between, both.theirs, both.weight)]
+
+
+def _refined(
+    barred: Record, differences: list[Difference], parts: ErrorBarsKeys, progress: Tell | None, notes: list[str]
+) -> tuple[Record, list[Difference]]:
+    """Finer runs until the bars are what is wanted, do not shrink, or cost too much."""
+    plan, wanted = barred.plan, barred.plan.job.accuracy
+    free_step, free_points = free(plan)
+    spent, first = 0.0, _cost(plan)
+    for _ in range(MOST_LEVELS):
+        step, points = free_step and _too_large(barred, "step"), free_points and _too_large(barred, "grid")
+        if not (step or points):
+            break
+        better = finer(
+            barred.plan,
+            step=_excess(barred, "step") ** (1 / plan.splitting.order) if step else 1.0,
+            points=_excess(barred, "grid") ** (1 / 3) if points else 1.0,
+            until=barred.steps,
+        )
+        spent += _cost(better.plan) / first
+        if spent > MOST_COST:
+            notes.append(f"to reach {wanted} would cost more than {MOST_COST:g} times the first run: not tried")
+            break
+        run = replace(simulate(better.plan, progress, alone=False), stopped=barred.stopped)
+        name = "step and grid" if step and points else "step" if step else "grid"
+        kept = [] if step and points else [d for d in differences if d.part not in (name, "step and grid")]
+        factor = weight(run)
+        differences = [Difference(name, run, barred, factor), *kept]
+        before, barred = barred, with_bars(run, differences, recording=parts.record)
+        notes.append(_note(Companion(before.plan, 1 / better.step, 1 / better.points, "the run before"), factor))
+        if worst(barred, wanted) > 1 and worst(barred, wanted) > worst(before, wanted) / STALLED:
+            notes.append("a finer plan does not lower the bars: they do not converge")
+            barred = replace(barred, results=tuple(_stalled(r, wanted) for r in barred.results))
+            break
+    return barred, differences
+
+
+def _cost(plan: Plan) -> float:
+    return plan.steps * plan.splitting.stages * plan.axis.points * math.log2(plan.axis.points)
+
+
+def _box(record: Record, differences: list[Difference], notes: list[str]) -> list[Difference]:
+    """What a larger grid changes, measured on the cheapest run there is: it hardly depends on step and spacing."""
+    cheapest = min([record, *(d.theirs for d in differences)], key=lambda r: _cost(r.plan))
+    companion = larger(cheapest.plan, until=cheapest.steps)
+    if companion is None:
+        return []
+    notes.append(_note(companion, FINER))
+    wider = simulate(companion.plan, alone=False)
+    return [Difference("box", cheapest, wider, FINER, edges.of_what_is_left(record))]
+
+
+def _too_large(record: Record, part: str) -> bool:
+    """Whether errors in `part` exceed half of what is wanted, where all of them are too large."""
+    return worst(record, record.plan.job.accuracy) > 1 and _excess(record, part) > 1
+
+
+def _excess(record: Record, part: str) -> float:
     """By how much the errors in `part` exceed half of what is wanted."""
+    wanted = record.plan.job.accuracy
     shares = [
-        sum(value for name, value in result.error_parts.items() if part in name) / result.scale
+        sum(value for name, value in result.error_parts.items() if part in name) / wanted.limit(result)
         for result in counted(record)
-        if result.scale
     ]
-    return max(shares, default=0.0) / (wanted / 2)
+    return 2 * max(shares, default=0.0)
 
 
-def _stalled(result: Result, wanted: float) -> Result:
-    if result.error is not None and result.scale and result.error > wanted * result.scale:
+def _stalled(result: Result, wanted: Accuracy) -> Result:
+    if result.error is not None and result.error > wanted.limit(result):
         return replace(result, error_status="not_converging")
     return result
 
 
-def _note(companion: Companion, factor: float, record: Record) -> str:
+def _note(companion: Companion, factor: float) -> str:
     return (
         f"a companion with {companion.step:.3g} times the step and {companion.points:.3g} times the points "
-        f"({companion.reason}); bars are {factor:g} times the difference; the largest is {worst(record):.1e} of its scale"
+        f"({companion.reason}); its difference counts {factor:g} times"
     )
 
 
-def _reached(record: Record, wanted: float) -> Check:
-    largest = worst(record)
-    named = next((r.name for r in counted(record) if r.error and r.scale and r.error / r.scale == largest), "none")
-    passed = largest <= wanted
-    enough = 10.0 ** math.ceil(math.log10(largest)) if largest > 0 else wanted
+def _reached(record: Record, wanted: Accuracy) -> Check:
+    largest = worst(record, wanted)
+    named = next(
+        (r.name for r in counted(record) if r.error is not None and r.error / wanted.limit(r) == largest), "none"
+    )
+    passed = largest <= 1
+    enough = 10.0 ** math.ceil(math.log10(largest * wanted.first)) if largest > 0 else 0.0
     return Check(
         "accuracy reached",
         passed,
-        largest,
-        wanted,
-        f"largest error over its scale, of {named}",
+        largest * wanted.first,
+        wanted.first,
+        f"largest error of a result that counts, over what errors are measured by: {named}",
         "" if passed else f"set `evolve.accuracy: {enough:.0e}` if that is enough, or give more `points`",
     )

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
 
-from ..results import Curve, Result
+from ..checks import ROUNDING
+from ..results import Accuracy, Curve, Result
 from ..simulate import Record
 
 Array = np.ndarray
@@ -28,15 +30,19 @@ class Difference:
     mine: Record
     theirs: Record
     weight: float
+    skips: frozenset[str] = frozenset()  # results and columns it says nothing about
 
     def of(self, name: str) -> float | None:
         """The weighted difference of a result; None where one of the two has no value."""
+        if name in self.skips:
+            return 0.0
         mine, theirs = self.mine.result(name).value, self.theirs.result(name).value
         return None if mine is None or theirs is None else self.weight * abs(mine - theirs)
 
     def of_series(self) -> Array:
         """The weighted difference of all columns at the recorded times, (rows, columns)."""
-        return self.weight * _envelope(np.abs(self.mine.series - self.theirs.series))
+        known = np.array([column.name not in self.skips for column in self.mine.columns])
+        return self.weight * known * _envelope(np.abs(self.mine.series - self.theirs.series))
 
     def of_curve(self, curve: Curve, index: int) -> Array:
         """The weighted difference of one column of a curve, at the places of `curve`."""
@@ -55,27 +61,35 @@ def weight(record: Record, *, coarser: bool = True) -> float:
     return SHARP if sharp else SMOOTH
 
 
-def with_bars(record: Record, differences: Sequence[Difference]) -> Record:
+def with_bars(record: Record, differences: Sequence[Difference], *, recording: bool = True) -> Record:
     """`record` with the error of every result, column and curve: the sum of all parts."""
-    floor = rounding(record)
+    floor = record.norm_drift + 1e-15
     series = floor * np.maximum(np.abs(record.series), _scales(record))
     return replace(
         record,
-        results=tuple(_barred(record, result, differences) for result in record.results),
+        results=tuple(_barred(record, result, differences, recording) for result in record.results),
         series_errors=series + sum(d.of_series() for d in differences),
         curve_errors={curve.name: _curve_errors(curve, differences, floor) for curve in record.curves},
     )
 
 
-def rounding(record: Record) -> float:
-    """Relative size of all rounding errors together: what they did to norm + absorbed."""
-    return record.norm_drift + 1e-14
+def rounding(record: Record, value: float, scale: float, dimension: str) -> float:
+    """What rounding errors may have done to a value: in proportion, as they did to norm + absorbed.
+
+    An amplitude errs by the rounding error times the root of the number of transforms besides, which bounds
+    what a small probability can mean.
+    """
+    drift = record.norm_drift + 1e-15
+    if dimension != "number":
+        return drift * max(abs(value), scale)
+    pairs = record.steps * record.plan.splitting.stages
+    amplitude = ROUNDING[record.plan.job.evolve.precision] * math.sqrt(pairs + 100)
+    return drift * abs(value) + 2 * math.sqrt(abs(value)) * amplitude + amplitude**2
 
 
-def worst(record: Record) -> float:
-    """The largest error over its scale, of the results that count."""
-    ratios = [r.error / r.scale for r in counted(record) if r.error is not None and r.scale]
-    return max(ratios, default=0.0)
+def worst(record: Record, wanted: Accuracy) -> float:
+    """The largest error over what is wanted, of the results that count."""
+    return max((r.error / wanted.limit(r) for r in counted(record) if r.error is not None), default=0.0)
 
 
 def counted(record: Record) -> list[Result]:
@@ -95,7 +109,7 @@ def counted(record: Record) -> list[Result]:
     ]
 
 
-def _barred(record: Record, result: Result, differences: Sequence[Difference]) -> Result:
+def _barred(record: Record, result: Result, differences: Sequence[Difference], recording: bool) -> Result:
     if result.value is None:
         return result
     found = {d.part: d.of(result.name) for d in differences}
@@ -104,8 +118,8 @@ def _barred(record: Record, result: Result, differences: Sequence[Difference]) -
         return replace(result, error_status="not_converging", note="a companion run has no such value")
     scale = result.scale or 1.0
     hopeless = any(value > HOPELESS * scale for value in parts.values())
-    parts = {**result.error_parts, **parts, "rounding": rounding(record) * max(abs(result.value), scale)}
-    thinned = record.thinned.get(result.name)
+    parts = {**result.error_parts, **parts, "rounding": rounding(record, result.value, scale, result.dimension)}
+    thinned = record.thinned.get(result.name) if recording else None
     if thinned is not None and thinned != result.value:
         parts["recording"] = abs(thinned - result.value)
     return replace(

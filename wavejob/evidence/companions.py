@@ -13,6 +13,7 @@ from ..plan import Plan, initial_state, layers, retuned, wave_numbers
 
 COARSER_STEP = 2.0
 COARSER_POINTS = 2**-0.5  # with twice the step the largest kinetic phase a step stays what it was
+EXTENSION = 0.15  # of the grid, by which it is longer at each end
 HOLDS = 0.9  # of the largest wave number of a grid: a packet that reaches beyond needs a finer companion
 
 
@@ -56,6 +57,40 @@ def finer(plan: Plan, *, step: float = 2.0, points: float = 2**0.5, until: int |
     phase = plan.kinetic_phase * (grid / plan.axis.points) ** 2
     record = max(record, math.ceil(plan.record * phase / math.pi - 1e-9))
     return _changed(plan, record, grid, until, "finer")
+
+
+def larger(plan: Plan, until: int | None = None) -> Companion | None:
+    """The same spacing and step on a grid longer by 0.15 at every end that is no wall, the layers deeper by as much.
+
+    None where all ends are walls or meant to wrap, or where a term is not known that far out.
+    """
+    axis, ends = plan.axis, plan.job.keys.edges.x
+    meant = "edges" in plan.job.keys.model_fields_set
+    sides = [s for s in ("low", "high") if getattr(ends, s) != "wall" and not (meant and getattr(ends, s) == "wrap")]
+    if not sides:
+        return None
+    points = fast_size(math.ceil(axis.points * (1 + EXTENSION * len(sides))))
+    more = {"low": 0, "high": 0}
+    for index, side in enumerate(sides):
+        more[side] = (points - axis.points + index) // len(sides)
+    wide = replace(
+        axis,
+        low=axis.low - more["low"] * axis.spacing,
+        high=axis.high + more["high"] * axis.spacing,
+        points=points,
+    )
+    if any(item.body.misfit(plan.job.setting, wide.low, wide.high) for item in plan.job.keys.potential):
+        return None
+    endings = tuple(e.deeper(more[e.side] * axis.spacing) for e in plan.endings)
+    changed = replace(
+        plan,
+        axis=wide,
+        psi=initial_state(plan.job, wide),
+        hamiltonian=on_grid(plan.job, wide, layers(wide, endings)),
+        endings=endings,
+        steps=plan.steps if until is None else until,
+    )
+    return Companion(changed, 1.0, 1.0, "a larger grid with deeper layers")
 
 
 def _changed(plan: Plan, record: int, points: int, until: int | None, reason: str) -> Companion:
