@@ -7,7 +7,8 @@ import math
 import numpy as np
 
 from .job import Job
-from .plan import Plan
+from .grid import fast_size
+from .plan import Plan, wave_numbers
 from .recording import Watch
 from .results import Check, Judgement, Result, Verdict
 from .settings import ExpectKeys
@@ -16,11 +17,12 @@ ROUNDING = {"double": 2.3e-16, "single": 1.2e-7}
 EDGE_LIMIT = 1e-6
 HEAD_ROOM_LIMIT = 1e-6
 REFLECTION_LIMIT = 1e-5
+RESOLVED = 0.9
 
 
 def judge_run(plan: Plan, watch: Watch, steps: int) -> list[Check]:
     """All checks of one run of `steps` steps."""
-    checks = [_norm(plan, watch, steps), _head_room(plan, watch), _phase(plan)]
+    checks = [_norm(plan, watch, steps), _resolved(plan), _head_room(plan, watch), _phase(plan)]
     if _wraps_by_default(plan):
         checks.append(_edges(plan, watch))
     checks += [_reflection(plan, index) for index in range(len(plan.endings))]
@@ -38,6 +40,20 @@ def _norm(plan: Plan, watch: Watch, steps: int) -> Check:
         limit,
         "every step keeps norm + absorbed to rounding: ten rounding errors a transform pair",
         "" if passed else "set `evolve.precision: double`",
+    )
+
+
+def _resolved(plan: Plan) -> Check:
+    reach = float(np.max(np.abs(wave_numbers(plan.axis, plan.psi)[0]))) / plan.axis.k_max
+    passed = reach <= RESOLVED
+    points = fast_size(math.ceil(plan.axis.points * reach / RESOLVED))
+    return Check(
+        "packet resolved",
+        passed,
+        reach,
+        RESOLVED,
+        "largest wave number of the initial state over the largest that the points hold",
+        "" if passed else f"set `grid.x.points: {points}`",
     )
 
 

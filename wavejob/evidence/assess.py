@@ -61,8 +61,10 @@ def assess(plan: Plan, progress: Tell | None = None) -> Assessed:
             barred = edges.with_part(barred, returned)
     for note in notes:
         log.info("error bars: %s", note)
-    asked = plan.job.evolve.accuracy is not None or free_points
-    return Assessed(judged(barred, (_reached(barred, wanted),) if asked else ()), tuple(notes))
+    checks = [_recorded(barred, wanted)] if parts.record else []
+    if plan.job.evolve.accuracy is not None or free_points:
+        checks.append(_reached(barred, wanted))
+    return Assessed(judged(barred, tuple(checks)), tuple(notes))
 
 
 def free(plan: Plan) -> tuple[bool, bool]:
@@ -166,6 +168,23 @@ def _note(companion: Companion, factor: float) -> str:
     return (
         f"a companion with {companion.step:.3g} times the step and {companion.points:.3g} times the points "
         f"({companion.reason}); its difference counts {factor:g} times"
+    )
+
+
+def _recorded(record: Record, wanted: Accuracy) -> Check:
+    """Whether rows and samples are close enough in time: what half of them give differs little."""
+    shares = {r.name: r.error_parts.get("recording", 0.0) / wanted.limit(r) for r in counted(record)}
+    named = max(shares, key=lambda name: shares[name], default="none")
+    largest = shares.get(named, 0.0)
+    passed = largest <= 1
+    every = record.plan.job.write(record.plan.record * record.plan.step / max(math.ceil(largest**0.5), 2), "time")
+    return Check(
+        "record spacing",
+        passed,
+        largest * wanted.first,
+        wanted.first,
+        f"largest change of a result when every second row and sample is left out: {named}",
+        "" if passed else f"set `evolve.record: {every}`",
     )
 
 

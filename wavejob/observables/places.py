@@ -9,7 +9,7 @@ from pydantic import Field, model_validator
 
 from ..grid import Axis
 from ..models import Length, Name, in_order
-from ..results import Column
+from ..results import Check, Column
 from ..state import Look
 from .base import Bench, Meter, Observable, Outline, Series, Toward, time_average
 from .integrals import Samples, positive_part, running
@@ -17,6 +17,9 @@ from .interpolant import at_point, fine_density, region_weights
 from .swarm import ClassicalMeter, History, Swarm
 
 Array = np.ndarray
+ONE_WAY = 1e-3  # probability that crosses backwards, below which a detector is passed once
+STARTS_BEYOND = 1e-6
+STILL_COMING = 1e-3
 NOTHING = 1e-12  # a crossed probability below this has no meaningful mean time
 
 
@@ -83,13 +86,26 @@ class InsideMeter(Meter):
 def region_figures(name: str, series: Series) -> dict[str, float | None]:
     """What the probability in a region comes to."""
     values = series.values[:, 0]
-    top = int(np.argmax(values))
+    top, when = summit(series.times, values)
     return {
         f"{name}.final": float(values[-1]),
-        f"{name}.peak": float(values[top]),
-        f"{name}.peak_time": float(series.times[top]),
+        f"{name}.peak": top,
+        f"{name}.peak_time": when,
         f"{name}.mean": time_average(series),
     }
+
+
+def summit(times: Array, values: Array) -> tuple[float, float]:
+    """The largest value and its time: the top of the parabola through the three largest rows."""
+    i = int(np.argmax(values))
+    if not 0 < i < len(values) - 1:
+        return float(values[i]), float(times[i])
+    parabola = np.polynomial.Polynomial.fit(times[i - 1 : i + 2], values[i - 1 : i + 2], 2)
+    curvature = parabola.deriv(2)(times[i])
+    if curvature >= 0:
+        return float(values[i]), float(times[i])
+    when = float(np.clip(times[i] - parabola.deriv()(times[i]) / curvature, times[i - 1], times[i + 1]))
+    return max(float(parabola(when)), float(values[i])), when
 
 
 class Crossing(Observable):
@@ -160,7 +176,11 @@ class CrossingMeter(Meter):
         self.point = at_point(axis, crossing.x)
         self.before = region_weights(axis, *crossing.ahead(axis))
         self.flux = Samples()
-        self.undecided = 0.0
+        self.undecided, self.first_inside = 0.0, 1.0
+        self.last = np.zeros((1, axis.points), complex)
+
+    def start(self, look: Look) -> None:
+        self.first_inside = probability(look, self.bench.axis, self.before)
 
     def _flux(self, look: Look) -> float:
         value, slope = self.point @ look.psi[0].T
@@ -171,7 +191,44 @@ class CrossingMeter(Meter):
 
     def row(self, look: Look) -> Sequence[float]:
         self.undecided = probability(look, self.bench.axis, self.before)
+        self.last[...] = look.psi[0]
         return [self._flux(look)]
+
+    def checks(self) -> list[Check]:
+        """Whether the packet starts before the detector, and whether what may still cross has crossed."""
+        times, flux = self.flux.thinned(1)
+        if positive_part(times, -flux) > ONE_WAY:
+            return []  # things go to and fro here: there is no before and after
+        coming, beyond, write = self._coming(), 1 - self.first_inside, self.bench.units.write
+        late = write(2 * times[-1] - times[0], "time")
+        behind = write(self.bench.axis.low if self.forward < 0 else self.bench.axis.high, "length")
+        return [
+            Check(
+                f"start before {self.name}",
+                beyond <= STARTS_BEYOND,
+                beyond,
+                STARTS_BEYOND,
+                "what starts beyond a detector never crosses it",
+                "" if beyond <= STARTS_BEYOND else f"move the detector towards {behind}, or the packet away from it",
+            ),
+            Check(
+                f"undecided {self.name}",
+                coming <= STILL_COMING,
+                coming,
+                STILL_COMING,
+                "probability before the detector that moves towards it when the run ends",
+                "" if coming <= STILL_COMING else f"set `evolve.until: {late}`",
+            ),
+        ]
+
+    def _coming(self) -> float:
+        """Probability before the detector with momentum towards it, at the end; the cut is a packet's width soft."""
+        axis = self.bench.axis
+        soft = max(4 * axis.spacing, self.bench.scale("length") / 4)
+        kept = 0.5 * (1 + np.tanh(self.forward * (self.x - axis.x) / soft))
+        waves = np.fft.fft(self.last * np.sqrt(kept))
+        k = 2 * np.pi * np.fft.fftfreq(axis.points, axis.spacing)
+        return float(np.sum(np.abs(waves[:, self.forward * k > 0]) ** 2) * axis.spacing / axis.points)
 
     def results(self, series: Series, stride: int = 1) -> dict[str, float | None]:
         times, flux = self.flux.thinned(stride)
