@@ -138,10 +138,11 @@ def _layers(plan: Plan, length: float) -> tuple[tuple[float, float], ...]:
 def _probabilities(record: Record, times: Array) -> tuple[tuple[str, Array], ...]:
     """What crossed the detectors so far, what is in the regions, what the ends absorbed."""
     found = list(record.crossed.items())
-    regions = [o.name for o in record.plan.job.observables if isinstance(o, Inside)]
-    absorbed = [c.name for c in record.columns if c.name.startswith("absorbed.")]
+    columns = [column.name for column in record.columns]
+    regions = [o.name for o in record.plan.job.observables if isinstance(o, Inside) and o.name in columns]
+    absorbed = [name for name in columns if name.startswith("absorbed.")]
     found += [(name, np.interp(times, record.times, record.column(name))) for name in [*regions, *absorbed]]
-    if not found and any(c.name == "norm" for c in record.columns):
+    if not found and "norm" in columns:
         found = [("norm", np.interp(times, record.times, record.column("norm")))]
     return tuple(found[:3])
 
