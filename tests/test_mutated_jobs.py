@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import time
+from copy import deepcopy
 from pathlib import Path
 from typing import Any
 
@@ -118,16 +119,16 @@ def mutated_values(draw: st.DrawFn) -> str:
         around, last = holder(job, place), place[-1]
         what = draw(st.sampled_from(["replace", "drop", "swap", "rename", "double"]))
         if what == "replace":
-            around[last] = draw(st.sampled_from(SCALARS))
+            around[last] = deepcopy(draw(st.sampled_from(SCALARS)))
         elif what == "drop":
             del around[last]
         elif what == "swap":
             other = draw(st.sampled_from(places))
-            around[last] = yaml.safe_load(yaml.safe_dump(holder(job, other)[other[-1]]))
+            around[last] = deepcopy(holder(job, other)[other[-1]])
         elif what == "rename" and isinstance(around, dict):
             around[draw(st.sampled_from(KEYS))] = around.pop(last)
         elif what == "double" and isinstance(around, list):
-            around.append(around[last])
+            around.append(deepcopy(around[last]))
     return yaml.dump(job, Dumper=NoAliases, sort_keys=False, allow_unicode=True)
 
 
