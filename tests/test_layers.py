@@ -13,6 +13,7 @@ import wavejob
 PACKAGE = Path(wavejob.__file__).parent
 LAYERS = (
     "version",
+    "reference",
     "problems",
     "results",
     "reading",
@@ -45,6 +46,8 @@ LAYERS = (
     "recording",
     "checks",
     "simulate",
+    "ensemble",
+    "classical_companion",
     "evidence",
     "outputs",
     "forecast",
