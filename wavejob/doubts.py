@@ -19,7 +19,7 @@ OVERLAP = 1e-6  # probability of the initial state inside a layer that is worth 
 
 def doubts(plan: Plan) -> list[Problem]:
     """Everything doubtful about a planned job, as warnings at the keys to change."""
-    return [*_layers(plan), *_detectors(plan), *_phase(plan), *_head_room(plan)]
+    return [*_layers(plan), *_detectors(plan), *_in_part(plan), *_phase(plan), *_head_room(plan)]
 
 
 def _layers(plan: Plan) -> Iterator[Problem]:
@@ -72,6 +72,16 @@ def _detectors(plan: Plan) -> Iterator[Problem]:
                     f"keep it out of {_from_to(plan, low, high)}, or read it as what is not yet absorbed",
                     severity="warning",
                 )
+
+
+def _in_part(plan: Plan) -> Iterator[Problem]:
+    """What an observable can only say in part."""
+    items = plan.job.keys.observables or []
+    for index, observable in enumerate(plan.job.observables):
+        doubt = observable.doubtful(plan.bench, plan.psi)
+        if doubt:
+            key: Key = ("observables", index, items[index].kind, doubt[0])
+            yield plan.job.problem(key, doubt[1], doubt[2], severity="warning")
 
 
 def _phase(plan: Plan) -> Iterator[Problem]:
