@@ -35,6 +35,7 @@ LAYERS = (
     "kinds",
     "settings",
     "job",
+    "misfit_terms",
     "misfits",
     "loading",
     "evolve",

@@ -27,7 +27,7 @@ class Path:
 
     `action` is the integral of p dx, `lagrangian_action` that of L dt, both from the first time on with
     hbar = 1. `step` is the longest step that was taken; `error` the largest change of position when the steps
-    were halved, about 15 times the error that is left.
+    were halved, about 15 times the error that is left, and `action_error` that of the two actions.
     """
 
     times: Array
@@ -37,6 +37,22 @@ class Path:
     lagrangian_action: Array
     step: float
     error: float
+    action_error: float
+
+
+@dataclass(frozen=True)
+class Answer:
+    """What F = m a says about a run, beside its figures. Names are those of results without the prefix."""
+
+    sentence: str
+    path: Path  # from the mean start, at the times of the frames and the last recorded one
+    trajectories: int
+    largest_gap: float | None  # of the mean places, in quantum widths
+    gap_time: float | None
+    opens: float | None  # when the gap can first be seen
+    enough: tuple[str, ...] = ()
+    not_enough: tuple[str, ...] = ()
+    undecided: tuple[str, ...] = ()
 
 
 def path(
@@ -49,20 +65,21 @@ def path(
     low: float,
     high: float,
     ends: Transform = "periodic",
+    tolerance: float = TOLERANCE,
 ) -> Path:
     """The trajectory that starts at `times[0]` from `x0` inside [low, high] with momentum `p0`.
 
     The steps come from curvature and features of the landscape and are halved until positions change by less
-    than 1e-8 of the length of the axis, or 25 000 steps are reached; `error` tells which. On a "periodic"
+    than `tolerance` of the length of the axis, or 25 000 steps are reached; `error` tells which. On a "periodic"
     axis positions stay inside [low, high], so they jump where the path wraps; on a "sine" axis the ends are
     walls.
     """
     times = np.asarray(times, dtype=float)
     motion = Motion(landscape, mass, low, high, ends)
     duration = float(times[-1] - times[0])
-    if duration == 0:
-        return _followed(motion, x0, p0, times, 1.0)
-    step = max(_first_step(motion, x0, p0, times), 4 * duration / MOST_STEPS)
+    if duration == 0 or (motion.straight and not landscape.depends_on_time):
+        return _followed(motion, x0, p0, times, math.inf)
+    step = max(first_step(motion, Trajectories.start(x0, p0), times), 4 * duration / MOST_STEPS)
     coarse = _followed(motion, x0, p0, times, step)
     while True:
         step /= 2
@@ -71,22 +88,30 @@ def path(
         if ends == "periodic":
             change = np.minimum(change, high - low - change)
         error = float(change.max())
-        if error < TOLERANCE * (high - low) or duration / step > MOST_STEPS / 2:
-            return replace(fine, error=error)
+        if error < tolerance * (high - low) or duration / step > MOST_STEPS / 2:
+            actions = np.abs(fine.action - coarse.action), np.abs(fine.lagrangian_action - coarse.lagrangian_action)
+            return replace(fine, error=error, action_error=float(np.max(actions)))
         coarse = fine
 
 
-def _first_step(motion: Motion, x0: float, p0: float, times: Array) -> float:
-    """A step that follows the fastest oscillation the smooth terms allow and skips none of their features."""
+def first_step(motion: Motion, start: Trajectories, times: Array) -> float:
+    """A step that follows the fastest oscillation the smooth terms allow and skips none of their features.
+
+    Where the landscape does not change, only what the energy of the fastest of `start` lets it reach counts.
+    """
     x = np.linspace(motion.low, motion.high, PROBES)
+    changes = motion.landscape.depends_on_time
     smooth = Landscape(tuple(term for term in motion.landscape.terms if term.shape.breaks is None))
-    moments = np.linspace(times[0], times[-1], 9 if motion.landscape.depends_on_time else 1)
+    moments = np.linspace(times[0], times[-1], 9 if changes else 1)
+    values = np.array([motion.landscape.value(x, float(t)) for t in moments])
     slopes = np.array([smooth.slope(x, float(t)) for t in moments])
+    energy = float(motion.energy(start, float(times[0])).max())
+    if not changes:
+        reached = np.convolve(values[0] <= energy, np.ones(5), "same") > 0
+        slopes = slopes[:, reached] if np.count_nonzero(reached) > 2 else slopes
     steepest = np.abs(slopes).max()
     stiffest = np.abs(np.diff(slopes, axis=1)).max() / (x[1] - x[0])
-    lowest = min(float(motion.landscape.value(x, float(t)).min()) for t in moments)
-    start = Trajectories.start(x0, p0)
-    kinetic = float(motion.energy(start, float(times[0]))[0]) - lowest
+    kinetic = energy - float(values.min())
     step = float(times[-1] - times[0]) / LEAST_STEPS
     if stiffest > 0:
         step = min(step, RADIANS * math.sqrt(motion.mass / stiffest))
@@ -104,4 +129,4 @@ def _followed(motion: Motion, x0: float, p0: float, times: Array, step: float) -
         np.concatenate([getattr(row, name) for row in rows])
         for name in ("x", "p", "action", "lagrangian_action")
     )
-    return Path(times, x, p, action, lagrangian_action, step, error=0.0)
+    return Path(times, x, p, action, lagrangian_action, step, error=0.0, action_error=0.0)

@@ -13,6 +13,7 @@ from typing import Any
 from .models import Item
 from .observables.base import Observable, Outline
 from .observables.levels import StartLevel
+from .observables.swarm import OWN_FIGURES, by_newton
 from .packets.base import Packet, Surroundings
 from .packets.eigenstate import EigenstatePacket
 from .potentials.base import Setting
@@ -114,7 +115,16 @@ class Job:
     @cached_property
     def figures(self) -> dict[str, Column]:
         """The results the run will yield, by name."""
-        return {figure.name: figure for o in self.measured for figure in o.figures(self.outline)}
+        found = {figure.name: figure for o in self.measured for figure in o.figures(self.outline)}
+        return found | {figure.name: figure for figure in self.classical_figures}
+
+    @cached_property
+    def classical_figures(self) -> tuple[Column, ...]:
+        """Those of the results that F = m a yields."""
+        if isinstance(self.keys.classical, str):
+            return ()
+        shared = (figure for o in self.measured for figure in o.classical_figures(self.outline))
+        return (*(by_newton(figure) for figure in shared), *OWN_FIGURES)
 
     def problem(self, path: Key, message: str, fix: str = "", severity: str = "error") -> Problem:
         """A problem at a key of the job file."""
@@ -137,6 +147,8 @@ class Job:
                 for name in ("grid", "potential", "edges", "packet", "evolve", "observables", "snapshots")
             },
         }
+        if "classical" in keys.model_fields_set:
+            decisive["classical"] = plain(keys.classical)
         text = json.dumps(decisive, sort_keys=True, allow_nan=False)
         return hashlib.sha256(text.encode()).hexdigest()[:10]
 

@@ -29,7 +29,8 @@ KICKS = (*_B, 0.5 - sum(_B), 0.5 - sum(_B), *_B[::-1], 0.0)
 NUDGE = 1e-12  # of the length of the axis: how far beside an edge a trajectory stands after meeting it
 MOST_EVENTS = 1000  # edges met in one step
 MOST_BISECTIONS = 80
-STRAIGHT = (1.0,), (0.0,)  # drift and kick where there is no force between edges
+STRAIGHT = (1.0,), (0.0,)  # drifts and kicks where there is no force between edges
+HALVES = (0.5, 0.5), (1.0, 0.0)  # the same, with a look at the potential half-way for the actions
 VELOCITY_STEP = 1e-4  # of a step: difference that gives the velocity of a moving edge
 
 
@@ -129,7 +130,9 @@ class Motion:
 
     @cached_property
     def _scheme(self) -> tuple[tuple[float, ...], tuple[float, ...]]:
-        return STRAIGHT if self.straight and not self.actions else (DRIFTS, KICKS)
+        if self.straight:
+            return HALVES if self.actions else STRAIGHT
+        return DRIFTS, KICKS
 
     def _step(self, now: Trajectories, t: float, step: float) -> Trajectories:
         """One step; those that meet an edge go on from there with the time they have left."""
@@ -259,6 +262,8 @@ class Motion:
         """Value or slope at every x at its own time."""
         if not self.landscape.depends_on_time:
             return field(x, 0.0)
+        if (t == t[0]).all():
+            return field(x, float(t[0]))
         result = np.empty(len(x))
         for moment in np.unique(t):
             result[t == moment] = field(x[t == moment], float(moment))
@@ -268,6 +273,9 @@ class Motion:
         """Places and heights of all edges at the times `t`, shape (n or 1, edges); the two ends come last."""
         if not self.landscape.depends_on_time:
             return self._still
+        if (t == t[0]).all():
+            places, heights = self._edges_at(float(t[0]))
+            return places[None], heights[None]
         moments, which = np.unique(t, return_inverse=True)
         places, heights = zip(*(self._edges_at(float(moment)) for moment in moments), strict=True)
         return np.stack(places)[which], np.stack(heights)[which]

@@ -56,13 +56,11 @@ class Watch:
     norm_drift: float = 0.0
     edge: float = 0.0
     head_room: float = 0.0
-    places: list[float] = field(default_factory=list)  # mean place at each row
-    widths: list[float] = field(default_factory=list)
+    moments: list[tuple[float, float, float]] = field(default_factory=list)  # norm, mean place, width
 
     def see(self, look: Look) -> None:
         axis = self.bench.axis
-        self.places.append(mean_place(look, self.bench))
-        self.widths.append(place_width(look, self.bench))
+        self.moments.append((norm(look), mean_place(look, self.bench), place_width(look, self.bench)))
         absorbed = sum(float(taken[0]) for taken in look.absorbed.values())
         self.norm_drift = max(self.norm_drift, abs(norm(look) + absorbed - 1))
         rim = max(axis.points // 100, 1)

@@ -11,7 +11,10 @@ from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any, Literal
 
+import numpy as np
+
 from .checks import judge_expectation, verdict
+from .classical_companion import with_companion
 from .evidence.assess import assess
 from .job import Job, plain
 from .outputs.fields import DensityTable, write_fields
@@ -73,6 +76,9 @@ def run_job(
         planned = time.perf_counter()
         wanted_bars = bars and not isinstance(job.keys.error_bars, str)
         record = assess(plan, progress).record if wanted_bars else simulate(plan, progress)
+        swarmed = time.perf_counter()
+        record = with_companion(record)
+        companion = time.perf_counter() - swarmed
         log.info("%d steps in %.2f s%s", record.steps, record.seconds, f"; {record.stopped}" if record.stopped else "")
         simulated = time.perf_counter()
         write_numbers(folder.path, record)
@@ -97,6 +103,7 @@ def run_job(
             timings={
                 "plan": planned - clock,
                 "loop": record.seconds,
+                "classical": companion,
                 "simulate": simulated - planned,
                 "write": written - simulated,
                 "pictures": drawn - written,
@@ -117,6 +124,7 @@ def write_numbers(folder: Path, record: Record) -> None:
     write_resolved(folder / "resolved.yml", record.plan)
     errors = record.series_errors
     by_column = {} if errors is None else {c.name: errors[:, i] for i, c in enumerate(record.columns)}
+    by_column = {name: column for name, column in by_column.items() if not np.isnan(column).all()}
     write_series(folder / "series.csv", record.times, record.columns, record.series, units, by_column)
     for curve in record.curves:
         write_curve(folder, curve, units, (record.curve_errors or {}).get(curve.name))
@@ -139,6 +147,7 @@ def write_numbers(folder: Path, record: Record) -> None:
         checks=record.checks,
         judgements=record.judgements,
         units=units,
+        classical=record.classical,
     )
 
 
@@ -162,8 +171,8 @@ def _pictures(job: Job) -> dict[str, Any]:
 
 def _judged_again(job: Job, folder: RunFolder) -> Finished:
     """A finished run whose numbers stand: its expectations are judged as they are written now."""
+    stored = json.loads((folder.path / "results.json").read_text(encoding="utf-8"))
     if (folder.path / "job.yml").read_text(encoding="utf-8") == job.text:
-        stored = json.loads((folder.path / "results.json").read_text(encoding="utf-8"))
         return Finished(job, folder.path, "up to date", stored["verdict"])
     results, checks = read_results(folder.path / "results.json", job.figures, job.units)
     by_name = {result.name: result for result in results}
@@ -180,5 +189,6 @@ def _judged_again(job: Job, folder: RunFolder) -> Finished:
         checks=checks,
         judgements=judgements,
         units=job.units,
+        classical=stored.get("classical"),
     )
     return Finished(job, folder.path, "up to date", judged)

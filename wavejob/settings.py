@@ -43,6 +43,8 @@ def _scalar(value: Any) -> Any:
 Scalar = Annotated[Any, BeforeValidator(_scalar), WithJsonSchema({"type": ["number", "string"]})]
 Points = Annotated[int, *whole(8, MAX_POINTS)]
 Rate = Annotated[int, *whole(1, 120)]
+Trajectories = Annotated[int, *whole(32, 1_000_000)]
+Seed = Annotated[int, *whole(0, 2**31 - 1)]
 Priority = Annotated[int, *whole(-1000, 1000)]
 
 
@@ -312,21 +314,25 @@ class ExpectKeys(Model):
         return self
 
 
+class ClassicalKeys(Model):
+    """Trajectories that follow F = m a, drawn from the packet."""
+
+    trajectories: Trajectories | None = Field(
+        None, description="how many; left out: what costs at most a quarter of the run"
+    )
+    seed: Seed = Field(1, description="of the random numbers")
+
+
+if TYPE_CHECKING:
+    ClassicalChoice = ClassicalKeys | Literal["none"]
+else:
+    ClassicalChoice = word_or(("none",), ClassicalKeys, "classical companion")
+
+
 def _tags(value: Any) -> Any:
     if isinstance(value, list) and all(isinstance(tag, str) and tag for tag in value) and len(value) <= 50:
         return value
     raise refuse(f"{shown(value)} is no list of tags", "write words, such as `[tunnelling, stack-A]`")
-
-
-def _only_none(what: str) -> BeforeValidator:
-    """Refuses everything but `none`, by name."""
-
-    def read(value: Any) -> Any:
-        if value != "none":
-            raise refuse(f"{what} not available yet", "write `none`, or leave it out")
-        return value
-
-    return BeforeValidator(read)
 
 
 def _box(value: Any) -> Any:
@@ -391,8 +397,8 @@ class JobKeys(Model):
     observables: list[Annotated[Item, Choice(OBSERVABLES, "observable", bare=True)]] | None = Field(
         None, description="what is measured; left out: norm, position, energy", max_length=200
     )
-    classical: Annotated[Literal["none"] | None, _only_none("the classical companion is")] = Field(
-        None, description="the F = m a companion; `none` to skip"
+    classical: ClassicalChoice = Field(
+        default_factory=ClassicalKeys, description="the F = m a companion of the same job; `none` to skip"
     )
     error_bars: ErrorBarsChoice = Field(
         default_factory=ErrorBarsKeys, description="what the error bars are made from; `none` to skip"

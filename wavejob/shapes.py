@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 
@@ -224,6 +225,6 @@ class Landscape:
         order = order[height[order] != 0]
         return where[order], height[order]
 
-    @property
+    @cached_property
     def depends_on_time(self) -> bool:
         return any(term.moves or term.in_time is not None for term in self.terms)

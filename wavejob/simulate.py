@@ -9,6 +9,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from .checks import judge_expectation, judge_run, verdict
+from .classical import Answer
 from .evolve.loop import Output, evolve, go_on
 from .evolve.schedule import Schedule
 from .evolve.stepper import plan as plan_steps
@@ -67,10 +68,12 @@ class Record:
     fields: tuple[Array, ...]  # (points,) each
     densities: tuple[StoredDensity, ...]
     frames: Frames
+    moments: Array  # (rows, 3): norm, mean place and width of the packet
     crossed: dict[str, Array]  # detector -> probability crossed so far, at the frames
     seconds: float  # of the loop
     series_errors: Array | None = None  # like `series`
     curve_errors: dict[str, dict[str, Array]] | None = None  # curve -> column -> errors
+    classical: Answer | None = None  # what F = m a says
 
     def bare(self) -> Record:
         """The record with no error parts but those the observables themselves state."""
@@ -156,6 +159,7 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
         fields=tuple(field for _, field in stored),
         densities=tuple(StoredDensity(name, np.array(d.times), d.values) for name, d in densities),
         frames=frames,
+        moments=np.array(watch.moments),
         crossed={
             name: np.interp(frames.times, times, running)
             for meter in meters
@@ -169,7 +173,8 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
 def judged(record: Record, checks: tuple[Check, ...] = ()) -> Record:
     """The record with further checks, its expectations judged with the bars it has, and its verdict."""
     job = record.plan.job
-    judgements = [judge_expectation(job, expect, record.result(expect.result)) for expect in job.keys.expect]
+    known = {result.name: result for result in record.results}  # those of F = m a come later
+    judgements = [judge_expectation(job, e, known[e.result]) for e in job.keys.expect if e.result in known]
     checks = (*record.checks, *checks)
     return replace(record, checks=checks, judgements=tuple(judgements), verdict=verdict(list(checks), judgements))
 

@@ -90,7 +90,7 @@ def region_figures(name: str, series: Series) -> dict[str, float | None]:
     return {
         f"{name}.final": float(values[-1]),
         f"{name}.peak": top,
-        f"{name}.peak_time": when,
+        f"{name}.peak_time": when if top > 0 else None,
         f"{name}.mean": time_average(series),
     }
 

@@ -16,6 +16,7 @@ from typing import Any, Protocol
 
 import numpy as np
 
+from ..classical import Answer
 from ..results import Array, Check, Column, Curve, Judgement, Result, Verdict
 from .files import atomic
 
@@ -76,6 +77,7 @@ def write_results_json(
     checks: Iterable[Check],
     judgements: Iterable[Judgement],
     units: Units,
+    classical: Answer | Mapping[str, Any] | None = None,
 ) -> None:
     """All figures of a run with what was judged about them; figures that can't be had are null."""
     by_name = {result.name: _result(result, units) for result in results}
@@ -90,6 +92,8 @@ def write_results_json(
         "checks": [_check(check) for check in checks],
         "expectations": [{"result": j.result, "outcome": j.outcome, "text": j.text} for j in judgements],
     }
+    if classical is not None:
+        document["classical"] = _classical(classical, units) if isinstance(classical, Answer) else classical
     write_json(path, document)
 
 
@@ -184,6 +188,23 @@ def _result(result: Result, units: Units) -> dict[str, Any]:
         "error_parts": parts,
         "meaning": result.meaning,
         **({"note": note} if note else {}),
+    }
+
+
+def _classical(answer: Answer, units: Units) -> dict[str, Any]:
+    def time(t: float | None) -> float | None:
+        return None if t is None else float(units.to_file(t, "time"))
+
+    return {
+        "sentence": answer.sentence,
+        "trajectories": answer.trajectories,
+        "largest_gap": _finite(answer.largest_gap),
+        "gap_time": time(answer.gap_time),
+        "gap_opens": time(answer.opens),
+        "time_unit": units.label("time"),
+        "enough": list(answer.enough),
+        "not_enough": list(answer.not_enough),
+        "undecided": list(answer.undecided),
     }
 
 
