@@ -43,12 +43,13 @@ def _layers(plan: Plan) -> Iterator[Problem]:
 
 def _shallow(plan: Plan, ending: Ending) -> tuple[str, str]:
     depth = plan.job.write(ending.shape.depth, "length")
-    said = (
-        f"a layer of {depth} is predicted to send back {ending.shape.reflected:.1e} of what comes to x.{ending.side}"
-    )
+    said = f"a layer of {depth} is predicted to send back {ending.shape.reflected:.1e} of what comes to x.{ending.side}"
     if math.isinf(ending.recommended):
         return said, "no depth absorbs waves this slow: end the run before they arrive, or extend the grid"
-    return said, f"{plan.job.write(ending.recommended, 'length')} would send back less than {REFLECTION_LIMIT:.0e}"
+    return (
+        said,
+        f"{plan.job.write(ending.recommended, 'length')} would send back less than {REFLECTION_LIMIT:.0e}",
+    )
 
 
 def _detectors(plan: Plan) -> Iterator[Problem]:
@@ -103,7 +104,11 @@ def _head_room(plan: Plan) -> Iterator[Problem]:
         keys = plan.job.keys.grid.x
         points = math.ceil(highest * HEAD_ROOM * plan.axis.length / math.pi)
         yield plan.job.problem(
-            ("grid", "x", "points") if keys.points else ("grid", "x", "spacing") if keys.spacing else ("grid", "x"),
+            ("grid", "x", "points")
+            if keys.points
+            else ("grid", "x", "spacing")
+            if keys.spacing
+            else ("grid", "x"),
             f"where the potential is lowest the packet may reach {plan.job.write(highest, 'wavenumber')}, "
             f"the grid holds {plan.job.write(plan.axis.k_max, 'wavenumber')}",
             f"give at least {points} points, or leave `points` out",

@@ -21,7 +21,10 @@ from .plan import Plan
 LARGEST_TIMED = 2**13  # points; larger pairs are reckoned from this one by N log N
 TIMED = 5  # pairs, of which the fastest counts
 
-STAGE_SECONDS, STAGE_PAIRS = 4e-6, 0.7  # of one stage of a step: Python around it, and the work in numpy pairs
+STAGE_SECONDS, STAGE_PAIRS = (
+    4e-6,
+    0.7,
+)  # of one stage of a step: Python around it, and the work in numpy pairs
 CHANGING_SECONDS = 4e-8  # more per point, stage and term whose factor is made anew at every step
 LOOK_SECONDS, LOOK_PAIRS = 20e-6, 0.2  # of each observable at a recorded time or a sample
 ALWAYS_LOOKED = 3  # what every run watches for its checks and pictures, in observables
@@ -82,7 +85,9 @@ def _disk(plan: Plan, frames: Schedule | None) -> int:
     rows = _count(plan.recorded) * (1 + len(job.columns))
     fields = 1 + (_count(plan.every(job.keys.snapshots.every)) if job.keys.snapshots else 0)
     densities = sum(
-        _count(plan.every(o.every) if o.every else plan.recorded) for o in job.observables if isinstance(o, Density)
+        _count(plan.every(o.every) if o.every else plan.recorded)
+        for o in job.observables
+        if isinstance(o, Density)
     )
     stored = points * FIELD_BYTES * (fields + densities / 2)
     film = FRAME_BYTES_ON_DISK * _count(frames) if frames else 0

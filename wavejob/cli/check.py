@@ -47,8 +47,14 @@ def block(one: Ready) -> str:
     frames = f", {count_of(plan.frames)} film frames" if plan.frames else ", no film"
     lines = [
         ("grid", f"{axis.points} points {ends}, {spacing} apart ({plan.notes['points']})"),
-        ("step", f"{job.write(plan.step, 'time')}, {plan.steps} times, order {plan.splitting.order} ({_why(one)})"),
-        ("rows", f"{count_of(plan.recorded)}, one every {job.write(plan.record * plan.step, 'time')}{frames}"),
+        (
+            "step",
+            f"{job.write(plan.step, 'time')}, {plan.steps} times, order {plan.splitting.order} ({_why(one)})",
+        ),
+        (
+            "rows",
+            f"{count_of(plan.recorded)}, one every {job.write(plan.record * plan.step, 'time')}{frames}",
+        ),
         (
             "forecast",
             f"{duration(one.forecast.seconds)}, {size(one.forecast.memory)} of memory, "
@@ -57,7 +63,9 @@ def block(one: Ready) -> str:
     ]
     for ending in plan.endings:
         depth, sent_back = job.write(ending.shape.depth, "length"), ending.shape.reflected
-        lines.insert(-2, (f"x.{ending.side}", f"absorbs over {depth}, predicted to send back {sent_back:.1e}"))
+        lines.insert(
+            -2, (f"x.{ending.side}", f"absorbs over {depth}, predicted to send back {sent_back:.1e}")
+        )
     title = f"{job.id}: {job.title}" if job.title != job.id else job.id
     return "\n".join([title, *(paragraph(text, f"  {name:<10}", " " * 12) for name, text in lines), ""])
 

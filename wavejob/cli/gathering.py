@@ -27,7 +27,9 @@ class Gathered:
 def gather(options: Namespace) -> Gathered:
     """Reads every job of `options.paths`. Raises UsageError where no path is given."""
     if not options.paths:
-        raise UsageError(f"wavejob {options.command}", "no job file given", "name a job file or a folder of them")
+        raise UsageError(
+            f"wavejob {options.command}", "no job file given", "name a job file or a folder of them"
+        )
     found = Gathered()
     seen: set[Path] = set()
     for path in options.paths:
@@ -61,7 +63,9 @@ def _read(files: Sequence[Path], tree: JobTree, trust: bool, found: Gathered) ->
 
 def _empty(path: str) -> Problem:
     return Problem(
-        "there are no job files in it", "they end in .yml or .yaml, and do not begin with `_` or `.`", place=Place(path)
+        "there are no job files in it",
+        "they end in .yml or .yaml, and do not begin with `_` or `.`",
+        place=Place(path),
     )
 
 

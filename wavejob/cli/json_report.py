@@ -35,7 +35,11 @@ def job_entry(
     verdict: str | None = None,
     forecast: Forecast | None = None,
 ) -> dict[str, Any]:
-    weighed = {"seconds": round(forecast.seconds, 1), "memory": forecast.memory, "disk": forecast.disk} if forecast else None
+    weighed = (
+        {"seconds": round(forecast.seconds, 1), "memory": forecast.memory, "disk": forecast.disk}
+        if forecast
+        else None
+    )
     return {
         "job": job,
         "fingerprint": fingerprint,

@@ -23,20 +23,26 @@ def run(options: Namespace) -> int:
     if path is None:
         raise UsageError("wavejob new", "no file name given", "write `wavejob new first.yml`")
     if path.suffix not in ENDINGS:
-        raise _refusal(path, "is no name of a job file", f"end it in .yml, as in `{path.name or 'first'}.yml`")
+        raise _refusal(
+            path, "is no name of a job file", f"end it in .yml, as in `{path.name or 'first'}.yml`"
+        )
     try:
         with path.open("x", encoding="utf-8", newline="\n") as file:
             file.write(template())
     except FileExistsError:
         raise _refusal(path, "is there already", "choose another name") from None
     except FileNotFoundError:
-        raise _refusal(path, f"can't be written: there is no folder `{path.parent}`", "make the folder first") from None
+        raise _refusal(
+            path, f"can't be written: there is no folder `{path.parent}`", "make the folder first"
+        ) from None
     except (OSError, ValueError) as error:
         said = error.strerror if isinstance(error, OSError) else str(error)
         raise _refusal(path, f"can't be written: {said}", "choose another folder") from None
     if not options.quiet:
         name = shown(path)
-        terminal.say(f"{name} is written. Next:\n  wavejob check {name}\n  wavejob run {name}\n  wavejob explain potential")
+        terminal.say(
+            f"{name} is written. Next:\n  wavejob check {name}\n  wavejob run {name}\n  wavejob explain potential"
+        )
     return 0
 
 

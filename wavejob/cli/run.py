@@ -51,7 +51,9 @@ class Task:
 
 def add_arguments(parser: ArgumentParser) -> None:
     add_paths(parser)
-    parser.add_argument("--runs", type=Path, metavar="DIR", help="where runs are kept, instead of runs/ in the job tree")
+    parser.add_argument(
+        "--runs", type=Path, metavar="DIR", help="where runs are kept, instead of runs/ in the job tree"
+    )
     parser.add_argument("--again", action="store_true", help="compute again what is there already")
     parser.add_argument("--quick", action="store_true", help="no error bars")
     parser.add_argument("--no-film", action="store_true", help="draw no film")

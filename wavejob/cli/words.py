@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import textwrap
+from collections.abc import Sequence
 
 from ..evolve.schedule import Schedule
 from . import terminal
@@ -27,3 +28,11 @@ def paragraph(text: str, first: str = "", rest: str = "") -> str:
 def count_of(schedule: Schedule) -> int:
     """How often a schedule is due, first and last step included."""
     return -(-schedule.last // schedule.every) + 1
+
+
+def columns(rows: Sequence[tuple[str, str]], indent: str) -> list[str]:
+    """Rows of a name and a text, the texts below each other."""
+    wide = min(max((len(name) for name, _ in rows), default=0), 32)
+    return [
+        paragraph(text, f"{indent}{name:<{wide}}  ", " " * (len(indent) + wide + 2)) for name, text in rows
+    ]

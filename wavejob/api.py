@@ -1,0 +1,36 @@
+"""What `import wavejob` offers: the commands as functions."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from .evidence.assess import assess
+from .job import Job
+from .loading import load
+from .plan import make_plan
+from .reader import Run, open_run
+from .run import Finished, run_job
+from .simulate import Record
+from .simulate import simulate as simulate_plan
+
+__all__ = ["Finished", "Record", "Run", "load", "open_run", "run", "simulate"]
+
+
+def simulate(job: Job, *, bars: bool = False) -> Record:
+    """Carries out `job` in memory, with its error bars where `bars` is set. Nothing is written.
+
+    Raises JobFileError where it cannot be planned, RunError for values that are not finite.
+    """
+    plan = make_plan(job)
+    return assess(plan).record if bars else simulate_plan(plan)
+
+
+def run(
+    job: Job, runs: str | Path | None = None, *, again: bool = False, bars: bool = True, film: bool = True
+) -> Finished:
+    """Carries out `job` into its folder below `runs` (default: runs/ in its job tree), unless that is there already.
+
+    `again` computes anew; without `bars` or `film` these are left out. Raises JobFileError and RunError.
+    """
+    folder = job.tree.runs_folder(Path(runs) if runs is not None else None)
+    return run_job(job, folder, again=again, bars=bars, film=film)
