@@ -1,8 +1,8 @@
 """Every file of tests/bad_jobs is refused with exactly the text that stands beside it.
 
-The texts are the specification: read them as a user would. After a deliberate change of wording, write them anew
-with `python tests/test_bad_jobs.py` and read the difference before it is committed. Files that begin with `_` are
-what others are based on.
+The texts are the specification: read them as a user would. After a deliberate change of wording, write them
+anew with `python tests/test_bad_jobs.py`, and read the difference before it is committed. Files that begin
+with `_` are what others are based on.
 """
 
 from __future__ import annotations
@@ -87,7 +87,9 @@ def nested(pattern: tuple[str, ...]) -> str:
     return GOOD.replace("units", "units", 1) + value[1:-1] + "\n"
 
 
-@pytest.mark.parametrize("pattern", [p for p in NOT_YET if p[0] not in ("grid", "packet", "evolve")], ids=".".join)
+@pytest.mark.parametrize(
+    "pattern", [p for p in NOT_YET if p[0] not in ("grid", "packet", "evolve")], ids=".".join
+)
 def test_keys_that_are_not_available_yet_are_refused_by_name(pattern: tuple[str, ...]) -> None:
     if pattern[-1] == "axis":
         pattern = (*pattern[:-2], "kind", "axis")

@@ -55,6 +55,7 @@ LAYERS = (
     "doubts",
     "run",
     "reader",
+    "api",
     "night",
     "report",
     "cli",

@@ -1,4 +1,4 @@
-"""Good job files, changed at random: whatever comes out is read or refused, never a traceback, never for long."""
+"""Good job files, changed at random: what comes out is read or refused, without traceback, before long."""
 
 from __future__ import annotations
 
@@ -79,17 +79,61 @@ film: none
 )
 
 SCALARS: list[Any] = [
-    None, True, False, 0, -1, 1, 5, 1e-3, 1e40, 1e-300, 1e308, -0.0, 10**30, "", " ", "yes", "none", "inf", "nan",
-    "5 nm", "-3 fs", "2 meV", "1 e", "9**9**9", "1,5 nm", "1e400", "x", "t", "b2", "V0", "2*b2 + V0", "5 1/nm", "1/0",
-    "../../../etc/passwd", "/dev/zero", "tables", "tables/gap.csv", "~", "a\nb", "+x", "x**x**x", "1/(x-1)", "log(t)",
-    "exp(exp(x))", "(" * 60, "wall", "wrap", "norm", "\u2212" + "5 nm", "\u0665", "1_000", "electron", "natural", [], {},
-    [[]], {"x": {}}, [1, 2], ["norm", "norm"], {"gaussian": {}}, {"absorb": 3},
-]  # fmt: skip
+    *[None, True, False, 0, -1, 1, 5, 1e-3, 1e40, 1e-300, 1e308, -0.0, 10**30, "", " ", "yes", "none", "inf"],
+    *[
+        "nan",
+        "5 nm",
+        "-3 fs",
+        "2 meV",
+        "1 e",
+        "9**9**9",
+        "1,5 nm",
+        "1e400",
+        "x",
+        "t",
+        "b2",
+        "V0",
+        "2*b2 + V0",
+    ],
+    *["5 1/nm", "1/0", "../../../etc/passwd", "/dev/zero", "tables", "tables/gap.csv", "~", "a\nb", "+x"],
+    *[
+        "x**x**x",
+        "1/(x-1)",
+        "log(t)",
+        "exp(exp(x))",
+        "(" * 60,
+        "wall",
+        "wrap",
+        "norm",
+        "\u22125 nm",
+        "\u0665",
+    ],
+    *["1_000", "electron", "natural", [], {}, [[]], {"x": {}}, [1, 2], ["norm", "norm"], {"gaussian": {}}],
+    {"absorb": 3},
+]
 KEYS = [
-    "from", "to", "points", "spacing", "at", "sigma", "energy", "wavenumber", "step", "accuracy", "record", "until",
-    "name", "x", "y", "channel", "value", "file", "kind", "barrier", "every", "absorb", "units", "format", "based_on",
-    "", " ", "5", "\u00e9", "k" * 300,
-]  # fmt: skip
+    *["from", "to", "points", "spacing", "at", "sigma", "energy", "wavenumber", "step", "accuracy", "record"],
+    *["until", "name", "x", "y", "channel", "value", "file", "kind", "barrier", "every", "absorb", "units"],
+    *["format", "based_on", "5", "", " ", "\u00e9", "k" * 300],
+]
+MARKS = [
+    "\n",
+    "\t",
+    "{",
+    "[",
+    "&a ",
+    "*a",
+    "!!python/name:os",
+    "<<: ",
+    "- ",
+    ": ",
+    "'",
+    '"',
+    "#",
+    "1e999",
+    "0x10",
+]
+MARKS += ["---\n", "\r\n", "\ufeff"]
 
 
 def paths(value: Any, path: tuple[Any, ...] = ()) -> list[tuple[Any, ...]]:
@@ -135,7 +179,7 @@ def mutated_values(draw: st.DrawFn) -> str:
 class NoAliases(yaml.SafeDumper):
     """Writes doubled values out."""
 
-    def ignore_aliases(self, data: Any) -> bool:
+    def ignore_aliases(self, data: Any) -> bool:  # noqa: ARG002  (as the base class has it)
         return True
 
 
@@ -146,24 +190,29 @@ def mutated_texts(draw: st.DrawFn) -> str:
     for _ in range(draw(st.integers(1, 4))):
         start = draw(st.integers(0, len(text)))
         stop = min(start + draw(st.sampled_from([0, 1, 1, 2, 5, 40])), len(text))
-        new = draw(st.one_of(st.text(max_size=6), st.sampled_from([text[start:stop] * 2, "\n", "\t", "{", "[", "&a ", "*a", "!!python/name:os", "<<: ", "- ", ": ", "'", '"', "#", "1e999", "0x10", "---\n", "\r\n", "\ufeff"])))  # noqa: E501
+        new = draw(st.one_of(st.text(max_size=6), st.sampled_from([text[start:stop] * 2, *MARKS])))
         text = text[:start] + new + text[stop:]
     return text
 
 
+def check(error: JobFileError) -> None:
+    """Every problem has a place, and a message of one line."""
+    assert error.problems
+    for problem in error.problems:
+        assert problem.message
+        assert "\n" not in problem.headline()
+        assert problem.place is not None
+
+
 def read(text: str, planned: bool) -> None:
-    """Reads, and plans, a job text; a JobFileError with a message in every problem is all that may be raised."""
+    """Reads a job text, and plans the job; nothing but a JobFileError may be raised."""
     begun = time.process_time()
     try:
         job = parse(text, folder=FOLDER)
         if planned:
             make_plan(job, memory=ALLOWED)
     except JobFileError as error:
-        assert error.problems
-        for problem in error.problems:
-            assert problem.message
-            assert "\n" not in problem.headline()
-            assert problem.place is not None
+        check(error)
     assert time.process_time() - begun < PATIENCE
 
 

@@ -5,10 +5,9 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Sequence
 
-import numpy as np
-
 from .grid import Axis
 from .job import Job
+from .misfit_terms import span, term_misfits
 from .models import Item
 from .packets.base import Packet, PacketError
 from .packets.file import FilePacket
@@ -19,14 +18,25 @@ from .reading.validation import problem_at
 from .reading.yaml_tree import dotted
 from .results import Column
 from .settings import Absorb
-from .shapes import Term
-from .time_shapes import TimeShape
 
 HEAD_ROOM = 1.25  # largest wave number of the grid over the largest of the packet, at the least
-LARGEST = 1e100  # of a potential or a function of time: its square and its products are numbers still
 FINEST = 1e-11  # a spacing, over the distance from 0, below which places lose their digits
+# Names of columns and files there are anyway, and of devices, which some file systems have instead of files.
+RESERVED = (
+    "time",
+    "series",
+    "results",
+    "variants",
+    "con",
+    "prn",
+    "aux",
+    "nul",
+    "com1",
+    "com2",
+    "lpt1",
+    "lpt2",
+)
 SHORTEST = 1e-8  # a duration, over the time since 0, below which times lose their digits
-PLACES, TIMES, INSTANTS = 2001, 2001, 41  # looked at: along x, along t, and along t for all x at once
 
 
 def misfits(job: Job, lost: Sequence[Key] = ()) -> list[Problem]:
@@ -37,7 +47,7 @@ def misfits(job: Job, lost: Sequence[Key] = ()) -> list[Problem]:
     found = [
         *_names(job),
         *_grid(job),
-        *_potential(job),
+        *term_misfits(job, axis_as_written(job)),
         *_edges(job),
         *_packet(job, job.packet, ("packet", job.keys.packet.kind)),
         *_observables(job),
@@ -63,8 +73,8 @@ def axis_as_written(job: Job) -> Axis:
 
 
 def _names(job: Job) -> Iterator[Problem]:
-    """Columns, results and files must not share a name, not even where a file system does not tell a from A."""
-    taken = {"time": "time"}
+    """Columns, results and files must not share a name, not even where a file system takes A for a."""
+    taken = {name: name for name in RESERVED}
     for index, observable in enumerate(job.observables):
         made = (*observable.figures(job.outline), *observable.columns(job.outline))
         own = getattr(observable, "name", "")
@@ -76,7 +86,7 @@ def _names(job: Job) -> Iterator[Problem]:
             also = "" if other == shared[0] else f", and files cannot tell it from `{shared[0]}`"
             yield job.problem(
                 ("observables", index, kind, "name") if own else ("observables", index),
-                f"the name `{other}` is in use before{also}",
+                f"the name `{other}` is taken already{also}",
                 "choose another `name:`" if own else "drop one of the two",
             )
         taken |= {name.lower(): name for name in names}
@@ -87,87 +97,18 @@ def _grid(job: Job) -> Iterator[Problem]:
     points = axis.points if keys.points or keys.spacing else 1000
     if axis.length / points < FINEST * max(abs(axis.low), abs(axis.high)):
         yield job.problem(
-            ("grid", "x"), "the grid is so far from 0 that its places lose their digits", "move 0 nearer to the grid"
+            ("grid", "x"),
+            "the grid is so far from 0 that its places lose their digits",
+            "move 0 nearer to the grid",
         )
-
-
-def _potential(job: Job) -> Iterator[Problem]:
-    axis = axis_as_written(job)
-    names: set[str] = set()
-    for index, item in enumerate(job.keys.potential):
-        if item.name in names:
-            said = f"another term is called `{item.name}`"
-            yield job.problem(("potential", index, "name"), said, "choose another name, or leave it out")
-        names |= {item.name} if item.name else set()
-        where: Key = ("potential", index, item.kind)
-        wrong = item.body.misfit(job.setting, axis.low, axis.high)
-        shapes: list[tuple[Key, TimeShape | None]] = [
-            (("potential", index, "in_time"), item.in_time.body if item.in_time else None),
-            (("potential", index, "path", "x"), item.path.x.body if item.path else None),
-        ]
-        of_time = [problem for key, shape in shapes if shape for problem in _in_time(job, key, shape)]
-        yield from of_time
-        if wrong:
-            yield job.problem(where, *wrong)
-        elif not of_time:
-            yield from _term(job, where, item.term(job.setting), axis)
-
-
-def _in_time(job: Job, key: Key, shape: TimeShape) -> Iterator[Problem]:
-    """What is wrong with a function of time during the run."""
-    start, stop = job.evolve.start, job.evolve.until
-    low, high = shape.span(job.units)
-    if low > start or high < stop:
-        yield job.problem(
-            key,
-            f"the table covers {job.write(low, 'time')} to {job.write(high, 'time')}, less than the run",
-            "extend the table or shorten the run",
-        )
-        return
-    value = shape.function(job.units, "number" if key[-1] == "in_time" else "length")
-    for t in np.linspace(start, stop, TIMES):
-        with np.errstate(all="ignore"):
-            amount = value(float(t))
-        if not abs(amount) < LARGEST:
-            said = f"the function of time {_size(amount)} at t = {job.write(float(t), 'time')}"
-            yield job.problem(key, said, "keep it finite over the whole run")
-            return
-
-
-def _term(job: Job, key: Key, term: Term, axis: Axis) -> Iterator[Problem]:
-    """What is wrong with a term of the potential on the grid, during the run."""
-    breaks = term.shape.breaks
-    if breaks is not None and term.path is None:
-        if np.all(breaks.positions >= axis.high) or np.all(breaks.positions <= axis.low):
-            yield job.problem(key, "all its edges lie outside the grid", f"keep it within {_span(job, axis)}")
-        return
-    x = np.linspace(axis.low, axis.high, PLACES)
-    for t in np.linspace(job.evolve.start, job.evolve.until, INSTANTS) if term.moves else [job.evolve.start]:
-        for what, field in (("the potential", term.shape.value), ("the slope of the potential", term.shape.slope)):
-            with np.errstate(all="ignore"):
-                values = np.broadcast_to(field(x[1:-1] - term.shift(t), t), PLACES - 2)
-            bad = np.flatnonzero(~(np.abs(values) < LARGEST))
-            if bad.size:
-                at = f"x = {job.write(float(x[bad[0] + 1]), 'length')}"
-                when = f", t = {job.write(float(t), 'time')}" if term.moves else ""
-                said = f"{what} {_size(float(values[bad[0]]))} at {at}{when}"
-                yield job.problem(key, said, "keep it finite over the whole grid")
-                return
-
-
-def _size(value: float) -> str:
-    return f"is as large as {value:.1e}" if math.isfinite(value) else "is not finite"
-
-
-def _span(job: Job, axis: Axis) -> str:
-    return f"{job.write(axis.low, 'length')} to {job.write(axis.high, 'length')}"
 
 
 def _edges(job: Job) -> Iterator[Problem]:
     axis, ends = axis_as_written(job), job.keys.edges.x
     depths = [end.absorb if isinstance(end, Absorb) else 0.0 for end in (ends.low, ends.high)]
     if sum(depths) > 0.8 * axis.length:
-        said = f"the absorbing layers take {job.write(sum(depths), 'length')} of the {job.write(axis.length, 'length')} of the grid"
+        taken, whole = job.write(sum(depths), "length"), job.write(axis.length, "length")
+        said = f"the absorbing layers take {taken} of the {whole} of the grid"
         yield job.problem(("edges", "x"), said, "make them thinner or the grid longer")
 
 
@@ -183,7 +124,7 @@ def _packet(job: Job, packet: Packet, where: Key) -> Iterator[Problem]:
         places = packet.places(job.units)
         if places[0] < axis.low - axis.spacing or places[-1] > axis.high + axis.spacing:
             stored = f"{job.write(float(places[0]), 'length')} to {job.write(float(places[-1]), 'length')}"
-            said = f"the stored field reaches from {stored}, the grid from {_span(job, axis)}"
+            said = f"the stored field reaches from {stored}, the grid from {span(job, axis)}"
             yield job.problem((*where, "path"), said, "extend the grid")
         return
     extent = packet.extent()
@@ -191,13 +132,18 @@ def _packet(job: Job, packet: Packet, where: Key) -> Iterator[Problem]:
         needs = f"{job.write(extent[0], 'length')} to {job.write(extent[1], 'length')}"
         yield job.problem(
             where,
-            f"the packet needs room from {needs} (6 sigma on both sides), the grid reaches from {_span(job, axis)}",
+            f"the packet needs room from {needs} (6 sigma on both sides), "
+            f"the grid reaches from {span(job, axis)}",
             "move the packet, narrow it, or extend the grid",
         )
     k = packet.widest_wavenumber(job.particle.mass)
     if k is not None and (keys.points or keys.spacing) and k * HEAD_ROOM > axis.k_max:
         needed = math.ceil(k * HEAD_ROOM * axis.length / math.pi)
-        fix = f"give at least {needed} points" if keys.points else f"give at most {job.write(axis.length / needed, 'length')}"
+        fix = (
+            f"give at least {needed} points"
+            if keys.points
+            else f"give at most {job.write(axis.length / needed, 'length')}"
+        )
         key = "points" if keys.points else "spacing"
         yield job.problem(
             ("grid", "x", key),
@@ -224,14 +170,18 @@ def _spaced(job: Job, every: float | None, key: Key) -> Iterator[Problem]:
     """A problem where the time between two is longer than the run."""
     duration = job.evolve.until - job.evolve.start
     if every is not None and every > duration * (1 + 1e-9):
-        yield job.problem(key, f"`{key[-1]}` is longer than the run ({job.write(duration, 'time')})", "shorten it")
+        yield job.problem(
+            key, f"`{key[-1]}` is longer than the run ({job.write(duration, 'time')})", "shorten it"
+        )
 
 
 def _evolution(job: Job) -> Iterator[Problem]:
     evolve = job.evolve
     duration = evolve.until - evolve.start
     if duration < SHORTEST * max(abs(evolve.start), abs(evolve.until)):
-        yield job.problem(("evolve", "until"), "the run is so far from t = 0 that times lose their digits", "start at 0")
+        yield job.problem(
+            ("evolve", "until"), "the run is so far from t = 0 that times lose their digits", "start at 0"
+        )
         return
     if evolve.step is not None:
         steps = duration / evolve.step
@@ -283,7 +233,7 @@ def _pictures(job: Job) -> Iterator[Problem]:
         view = job.keys.film.view.x
         if view.start < axis.low or view.stop > axis.high:
             key = "from" if view.start < axis.low else "to"
-            said = f"the view reaches beyond the grid ({_span(job, axis)})"
+            said = f"the view reaches beyond the grid ({span(job, axis)})"
             yield job.problem(("film", "view", "x", key), said, "keep it within the grid")
         elif view.stop - view.start < 2 * axis.length / (axis.points if job.keys.grid.x.points else 1000):
             yield job.problem(("film", "view", "x"), "the view is narrower than two grid points", "widen it")
@@ -323,7 +273,9 @@ def _unknown(name: str, what: str, known: list[str]) -> tuple[str, str]:
         return said, "there are: " + ", ".join(f"`{k}`" for k in begun)
     if near or not known:
         return said, f"did you mean `{near}`?" if near else "add an observable"
-    return said, "there are: " + ", ".join(f"`{k}`" for k in known[:12]) + (", ..." if len(known) > 12 else "")
+    return said, "there are: " + ", ".join(f"`{k}`" for k in known[:12]) + (
+        ", ..." if len(known) > 12 else ""
+    )
 
 
 def _value(job: Job, path: Key, value: object, column: Column) -> Iterator[Problem]:

@@ -15,8 +15,8 @@ from .yaml_tree import Document, read_document
 
 LONGEST_CHAIN = 8
 
-# Sets of keys of which one at most may stand in a mapping, where the mapping is (`*` for any key): a key of one set
-# in the override takes the place of the others in the base.
+# Sets of keys of which one at most may stand in a mapping, by where that is (`*` for any key): a key of
+# one set in the override takes the place of the others in the base.
 ALTERNATIVES: dict[tuple[str, ...], tuple[frozenset[str], ...]] = {
     ("grid", "*"): (frozenset({"points"}), frozenset({"spacing"})),
     ("edges", "*"): (frozenset({"absorb", "energies"}), frozenset({"low", "high"})),
@@ -89,21 +89,30 @@ def read_with_bases(path: Path, shown: str, tree: JobTree, trust: bool = False) 
         if not isinstance(doc.value, dict):
             place = doc.place(())
             said = "a job file is a mapping of keys"
-            raise JobFileError([Problem(said, "see `wavejob new FILE`", place=place, source=doc.source(place))])
+            raise JobFileError(
+                [Problem(said, "see `wavejob new FILE`", place=place, source=doc.source(place))]
+            )
         if "based_on" not in doc.value:
             break
         at = doc.place(("based_on",))
         try:
             written = doc.value["based_on"]
             if not isinstance(written, str):
-                raise PathError(f"{nicely(written)} is no path", "write the path of one file, relative to this one")
+                raise PathError(
+                    f"{nicely(written)} is no path", "write the path of one file, relative to this one"
+                )
             base = tree.inside(written, here, trust=trust)
         except PathError as error:
             raise _at(doc, at, error.message, error.fix) from None
         if base.resolve() in [file for file, _ in chain]:
             raise _at(doc, at, f"`{written}` leads back to itself", "take one `based_on` of the circle out")
         if len(chain) > LONGEST_CHAIN:
-            raise _at(doc, at, f"this is the {LONGEST_CHAIN + 1}th file below one another", f"at most {LONGEST_CHAIN} are followed; merge some of them")
+            raise _at(
+                doc,
+                at,
+                f"this is the {LONGEST_CHAIN + 1}th file below one another",
+                f"at most {LONGEST_CHAIN} are followed; merge some of them",
+            )
         beside = os.path.relpath(base, path.resolve().parent)
         chain.append((base.resolve(), read_document(base, os.path.join(os.path.dirname(shown), beside))))
     return _folded(chain, path.resolve().parent)
@@ -183,7 +192,12 @@ def _displaced(base: dict[str, Any], top: dict[str, Any], path: tuple[str, ...])
         return set() if kinds <= base.keys() else base.keys() - KINDS[path]
     for pattern, sets in ALTERNATIVES.items():
         if len(pattern) == len(path) and all(p in ("*", key) for p, key in zip(pattern, path, strict=True)):
-            return {key for keys in sets if any(s & top.keys() for s in sets if s != keys) for key in keys - top.keys()}
+            return {
+                key
+                for keys in sets
+                if any(s & top.keys() for s in sets if s != keys)
+                for key in keys - top.keys()
+            }
     return set()
 
 
@@ -193,7 +207,9 @@ def _name_of(item: Any) -> str | None:
         return None
     if isinstance(item.get("name"), str):
         return str(item["name"])
-    inner = [body["name"] for body in item.values() if isinstance(body, dict) and isinstance(body.get("name"), str)]
+    inner = [
+        body["name"] for body in item.values() if isinstance(body, dict) and isinstance(body.get("name"), str)
+    ]
     return str(inner[0]) if inner else None
 
 

@@ -253,9 +253,7 @@ def _named(term: Term, names: Mapping[str, Named]) -> Named:
     if term.name.casefold() in ("inf", "infinity", "nan"):
         raise QuantityError(f"`{term.text}` is not a finite number", "write a finite number")
     if term.name in unit_names():
-        raise QuantityError(
-            f"`{term.name}` is a unit and stands alone", f"write a number before it: `5 {term.name}`"
-        )
+        raise QuantityError(unknown_name(term.name), f"write a number before it: `5 {term.name}`")
     near = nearest(term.name, names)
     fix = f"did you mean `{near}`?" if near else "define it under `let`, or write a number and a unit"
     raise QuantityError(unknown_name(term.name), fix)
@@ -263,6 +261,8 @@ def _named(term: Term, names: Mapping[str, Named]) -> Named:
 
 def unknown_name(name: str) -> str:
     """The message about a name that stands for no quantity."""
+    if name in unit_names():
+        return f"`{name}` is a unit and stands alone"
     return f"no quantity is called `{name}`"
 
 

@@ -1,4 +1,4 @@
-"""A document's value read as a model: every mistake found becomes a problem with place, words and cure of ours."""
+"""A document's value read as a model: every mistake becomes a problem with place, words and cure of ours."""
 
 from __future__ import annotations
 
@@ -15,20 +15,26 @@ from .yaml_tree import dotted
 M = TypeVar("M", bound=BaseModel)
 
 
-def problem_at(document: Merged, path: Key, message: str, fix: str = "", *, key: bool = False, severity: str = "error") -> Problem:
+def problem_at(
+    document: Merged, path: Key, message: str, fix: str = "", *, key: bool = False, severity: str = "error"
+) -> Problem:
     """A problem at the value of `path`, or with `key` at the key itself."""
     place = document.key_place(path) if key else document.place(path)
     return Problem(message, fix, dotted(path), place, document.source(place), severity)
 
 
 def read_as(
-    model: type[M], document: Merged, context: Any, known: Callable[[Any], list[str]], skip: Collection[Key] = ()
+    model: type[M],
+    document: Merged,
+    context: Any,
+    known: Callable[[Any], list[str]],
+    skip: Collection[Key] = (),
 ) -> tuple[M | None, dict[Problem, Key]]:
     """The document's value as `model`, and all that is wrong with it, each with the path it is about.
 
-    What is wrong is left out and the rest read again, so that one mistake does not hide others; so there may be
-    a model beside mistakes, of what is left. `skip` tells what to leave out from the start. `known` gives the
-    keys that the model of a mapping has, for "did you mean".
+    What is wrong is left out and the rest read again, so that one mistake does not hide others. There may
+    then be a model beside mistakes, of what is left. `skip` tells what to leave out from the start. `known`
+    gives the keys that the model of a mapping has, for "did you mean".
     """
     dropped, found = set(skip), dict[Problem, Key]()
     while True:
@@ -40,8 +46,8 @@ def read_as(
         problems = dict(_problem(replace(document, value=value), detail, known) for detail in details)
         meant = {(path[:-1], p.fix) for p, path in problems.items() if p.message.startswith("unknown key")}
         for problem, path in problems.items():
-            # What is missing may be misspelt, or stand there as a key that is left out, and what holds a key that
-            # is left out may miss just that.
+            # What is missing may be misspelt, or stand there as a key that is left out, and what holds a key
+            # that is left out may miss just that.
             misspelt = (path[:-1], f"did you mean `{path[-1]}`?") in meant if path else False
             replaced = problem.message.endswith("is missing") and any(gone[:-1] == path[:-1] for gone in skip)
             if not misspelt and not replaced and not any(related(path, gone) for gone in dropped):
@@ -72,7 +78,11 @@ def _without(value: Any, paths: set[Key]) -> Any:
             below.setdefault(path[0], set()).add(path[1:])
     if isinstance(value, list):
         return [_without(item, below.get(i, set())) for i, item in enumerate(value)]
-    return {key: _without(item, below.get(key, set())) for key, item in value.items() if () not in below.get(key, ())}
+    return {
+        key: _without(item, below.get(key, set()))
+        for key, item in value.items()
+        if () not in below.get(key, ())
+    }
 
 
 def _problem(document: Merged, detail: Any, known: Callable[[Any], list[str]]) -> tuple[Problem, Key]:
@@ -125,7 +135,10 @@ def _plain(kind: str, detail: Any) -> tuple[str, str]:
     """Message and cure for the mistakes that a model's field types find by themselves."""
     given, limits = shown(detail.get("input")), detail.get("ctx") or {}
     if kind in ("model_type", "model_attributes_type", "dict_type"):
-        return f"{given} stands where keys are wanted", "write `key: value` lines below it, or {key: value, ...}"
+        return (
+            f"{given} stands where keys are wanted",
+            "write `key: value` lines below it, or {key: value, ...}",
+        )
     if kind == "list_type":
         return f"{given} stands where a list is wanted", "write one `- item` a line, or [item, item]"
     if kind == "string_type":
