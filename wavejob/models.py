@@ -344,6 +344,18 @@ class Choice:
         union = core_schema.tagged_union_schema(choices, lambda v: next(k for k in v if k in self.table))
         return core_schema.no_info_wrap_validator_function(self._spread, union)
 
+    def __get_pydantic_json_schema__(self, schema: Any, handler: GetJsonSchemaHandler) -> JsonSchemaValue:
+        """One of the kinds, each with its one key required, or a word that stands for one."""
+        kinds = handler(schema)
+        bare = [name for name, kind in self.table.items() if self.bare and not needed(kind)]
+        words = [*self.words, *bare]
+        return {"oneOf": [*([{"enum": words}] if words else []), *kinds["oneOf"]]}
+
+
+def needed(model: type[BaseModel]) -> list[str]:
+    """The keys that may not be left out."""
+    return [info.alias or name for name, info in model.model_fields.items() if info.is_required()]
+
 
 @cache
 def _item_model(name: str, kind: type[Model], beside: type[Item]) -> type[Item]:

@@ -51,9 +51,9 @@ Priority = Annotated[int, *whole(-1000, 1000)]
 class AxisKeys(Model):
     """One axis of the grid: points stand at from + (j + 1/2) (to - from) / points."""
 
-    start: Length = Field(alias="from", description="low end")
-    stop: Length = Field(alias="to", description="high end")
-    points: Points | None = Field(None, description="number of grid points; left out: chosen")
+    start: Length = Field(alias="from", description="low end", examples=["-400 nm"])
+    stop: Length = Field(alias="to", description="high end", examples=["400 nm"])
+    points: Points | None = Field(None, description="number of grid points; left out: chosen", examples=[1024])
     spacing: Extent | None = Field(None, description="distance between points, instead of `points`")
 
     @model_validator(mode="after")
@@ -157,7 +157,11 @@ class EndsKeys(Model):
 class EdgesKeys(Model):
     """What happens at the ends of each axis."""
 
-    x: EndsKeys = Field(default_factory=EndsKeys, description="wrap, wall, {absorb: depth}, or per end {low:, high:}")
+    x: EndsKeys = Field(
+        default_factory=EndsKeys,
+        description="wrap, wall, {absorb: depth}, or per end {low:, high:}",
+        examples=[{"absorb": "60 nm"}],
+    )
 
 
 class ParticleKeys(Model):
@@ -227,7 +231,7 @@ class EvolveKeys(Model):
     """How long, how accurately, how often recorded."""
 
     start: Time = Field(0.0, description="time of the initial state")
-    until: Time = Field(description="time at which the run ends")
+    until: Time = Field(description="time at which the run ends", examples=["1 ps"])
     accuracy: AccuracyChoice | None = Field(
         None,
         description="the numerical error wanted in the results, of the scale of each, or "
@@ -239,7 +243,9 @@ class EvolveKeys(Model):
     precision: Literal["double", "single"] = Field("double", description="double or single")
     reproducible: Flag = Field(False, description="yes: the same bits on the same machine")
     stop_when: dict[str, Bound] = Field(
-        default_factory=dict, description="ends the run early: {norm: {below: 1e-4}}, for any series column"
+        default_factory=dict,
+        description="ends the run early: {norm: {below: 1e-4}}, for any series column",
+        examples=[{"norm": {"below": 0.01}}],
     )
 
     @model_validator(mode="after")
@@ -293,10 +299,10 @@ class SnapshotKeys(Model):
 class ExpectKeys(Model):
     """A check on one result."""
 
-    result: str = Field(description="name of a result, such as transmitted.total")
+    result: str = Field(description="name of a result, such as transmitted.total", examples=["norm.drift"])
     equals: Scalar | None = Field(None, description="the value wanted; needs `tolerance`")
     tolerance: Scalar | None = Field(None, description="how far from it is still right")
-    below: Scalar | None = Field(None, description="upper bound")
+    below: Scalar | None = Field(None, description="upper bound", examples=["1e-9"])
     above: Scalar | None = Field(None, description="lower bound")
     within: list[Scalar] | None = Field(None, description="[lowest, highest]", min_length=2, max_length=2)
     source: str | None = Field(None, description="where the value comes from")
@@ -375,17 +381,25 @@ class JobKeys(Model):
     """A job file."""
 
     format: Annotated[int, *whole(1, 1)] = Field(1, description="version of the job-file format")
-    job: str | None = Field(None, description="title, shown with the results")
-    about: str | None = Field(None, description="free text, shown in the report")
-    tags: Annotated[list[str], BeforeValidator(_tags)] = Field(default_factory=list, description="words to filter by")
+    job: str | None = Field(None, description="title, shown with the results", examples=["Two barriers"])
+    about: str | None = Field(None, description="free text, shown in the report", examples=["What it is for"])
+    tags: Annotated[list[str], BeforeValidator(_tags)] = Field(
+        default_factory=list, description="words to filter by", examples=[["tunnelling"]]
+    )
     priority: Priority = Field(0, description="higher runs first in a batch")
     units: Annotated[Any, WithJsonSchema(UNITS_SCHEMA)] = Field(
-        None, description="meaning of bare numbers: {length: nm, time: fs, energy: meV}, `natural` or `atomic`"
+        None,
+        description="meaning of bare numbers: {length: nm, time: fs, energy: meV}, `natural` or `atomic`",
+        examples=[{"length": "nm", "time": "fs", "energy": "meV"}],
     )
-    let: dict[str, Scalar] | None = Field(None, description="named quantities for use below")
-    based_on: str | None = Field(None, description="another file to start from")
+    let: dict[str, Scalar] | None = Field(
+        None, description="named quantities for use below", examples=[{"V0": "300 meV"}]
+    )
+    based_on: str | None = Field(None, description="another file to start from", examples=["_stack.yml"])
     particle: ParticleChoice | None = Field(
-        None, description="electron, proton, neutron, muon, an isotope such as Rb-87, or {mass:, charge:}"
+        None,
+        description="electron, proton, neutron, muon, an isotope such as Rb-87, or {mass:, charge:}",
+        examples=["electron"],
     )
     grid: GridKeys = Field(description="the axes")
     potential: list[Annotated[TermItem, Choice(POTENTIALS, "potential", TermItem)]] = Field(

@@ -164,7 +164,7 @@ class TimeFormula(TimeShape):
 
     model_config = ConfigDict(extra="allow")
     __pydantic_extra__: dict[str, NamedQuantity]
-    value: str = Field(description="the formula, for example `1 + a*sin(w*t)`")
+    value: str = Field(description="the formula, for example `1 + a*sin(w*t)`", examples=["1 + 0.1*sin(0.02*t)"])
 
     @model_validator(mode="before")
     @classmethod

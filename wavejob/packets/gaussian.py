@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import Any
 
 import numpy as np
-from pydantic import Field, model_validator
+from pydantic import Field, GetJsonSchemaHandler, model_validator
+from pydantic.json_schema import JsonSchemaValue
 
 from ..grid import Axis
 from ..models import Angle, Extent, Length, Model, Momentum, Number, PositiveEnergy, Velocity, Wavenumber, refuse
@@ -21,8 +23,10 @@ class GaussianPacket(Packet):
 
     at: Length = Field(description="mean place")
     sigma: Extent = Field(description="standard deviation of place in |psi|^2")
-    energy: PositiveEnergy | None = Field(None, description="of the central wave number, hbar^2 k^2 / 2m; needs `toward`")
-    toward: Toward | None = Field(None, description="direction of travel, with `energy`")
+    energy: PositiveEnergy | None = Field(
+        None, description="of the central wave number, hbar^2 k^2 / 2m; needs `toward`", examples=["70 meV"]
+    )
+    toward: Toward | None = Field(None, description="direction of travel, with `energy`", examples=["+x"])
     wavenumber: Wavenumber | None = Field(None, description="mean wave number p / hbar, radians per length")
     momentum: Momentum | None = Field(None, description="mean momentum")
     velocity: Velocity | None = Field(None, description="mean velocity")
@@ -83,6 +87,11 @@ class SumPacket(Packet):
     """Gaussian packets added with their amplitudes and phases, then normalised."""
 
     parts: list[Summand] = Field(description="the packets", min_length=1, max_length=100)
+
+    @classmethod
+    def __get_pydantic_json_schema__(cls, schema: Any, handler: GetJsonSchemaHandler) -> JsonSchemaValue:
+        whole = handler(schema)
+        return {"anyOf": [handler.resolve_ref_schema(whole)["properties"]["parts"], whole]}
 
     @model_validator(mode="before")
     @classmethod

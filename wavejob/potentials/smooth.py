@@ -168,7 +168,10 @@ class Polynomial(Potential):
 
     at: Length = Field(description="where x - at is 0")
     coefficients: list[Number] = Field(
-        description="c_0, c_1, ... in the file's units of energy per length^n", min_length=1, max_length=32
+        description="c_0, c_1, ... in the file's units of energy per length^n",
+        min_length=1,
+        max_length=32,
+        examples=[[0, 0, 0.4]],
     )
 
     def shape(self, setting: Setting) -> Shape:

@@ -20,8 +20,12 @@ Array = np.ndarray
 class Columns(Model):
     """Units of a table's columns."""
 
-    x: Annotated[str | None, unit_of("length")] = Field(None, description="unit of the first column")
-    value: Annotated[str | None, unit_of("energy")] = Field(None, description="unit of the second column")
+    x: Annotated[str | None, unit_of("length")] = Field(
+        None, description="unit of the first column", examples=["nm"]
+    )
+    value: Annotated[str | None, unit_of("energy")] = Field(
+        None, description="unit of the second column", examples=["meV"]
+    )
 
     def scales(self, units: Units) -> tuple[float, float]:
         """What the columns are multiplied by to be in scaled units."""
@@ -57,7 +61,10 @@ class FormulaPotential(Potential):
 
     model_config = ConfigDict(extra="allow")
     __pydantic_extra__: dict[str, NamedQuantity]
-    value: str = Field(description="the formula, for example `V0*exp(-(x/w)**2)` with V0 and w beside it")
+    value: str = Field(
+        description="the formula, for example `V0*exp(-(x/w)**2)` with V0 and w beside it",
+        examples=["80*exp(-(x/5)**2)"],
+    )
 
     @model_validator(mode="before")
     @classmethod
