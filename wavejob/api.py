@@ -28,9 +28,9 @@ def simulate(job: Job, *, bars: bool = False) -> Record:
 def run(
     job: Job, runs: str | Path | None = None, *, again: bool = False, bars: bool = True, film: bool = True
 ) -> Finished:
-    """Carries out `job` into its folder below `runs` (default: runs/ in its job tree), unless that is there already.
+    """Carries out `job` into its folder below `runs`, unless that is there already.
 
-    `again` computes anew; without `bars` or `film` these are left out. Raises JobFileError and RunError.
+    `runs` is runs/ in the job tree if left out. `again` computes anew; without `bars` or `film` these are left out. Raises JobFileError and RunError.
     """
     folder = job.tree.runs_folder(Path(runs) if runs is not None else None)
     return run_job(job, folder, again=again, bars=bars, film=film)

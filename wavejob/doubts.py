@@ -24,12 +24,12 @@ def doubts(plan: Plan) -> list[Problem]:
 
 def _layers(plan: Plan) -> Iterator[Problem]:
     job = plan.job
+    shallow = [ending for ending in plan.endings if ending.shape.reflected > REFLECTION_LIMIT]
+    for key in dict.fromkeys(_edge_key(plan, ending) for ending in shallow):
+        worst = max((e for e in shallow if _edge_key(plan, e) == key), key=lambda e: e.shape.reflected)
+        yield job.problem(key, *_shallow(plan, worst), severity="warning")
     density = np.abs(plan.psi) ** 2 * plan.axis.spacing
     for ending in plan.endings:
-        key = _edge_key(plan, ending)
-        reflected = ending.shape.reflected
-        if reflected > REFLECTION_LIMIT:
-            yield job.problem(key, *_shallow(plan, ending), severity="warning")
         low, high = _span(plan, ending)
         inside = float(density[(plan.axis.x > low) & (plan.axis.x < high)].sum())
         if inside > OVERLAP:
@@ -42,14 +42,12 @@ def _layers(plan: Plan) -> Iterator[Problem]:
 
 
 def _shallow(plan: Plan, ending: Ending) -> tuple[str, str]:
-    depth = plan.job.write(ending.shape.depth, "length")
-    said = f"a layer of {depth} is predicted to send back {ending.shape.reflected:.1e} of what comes to x.{ending.side}"
+    depth, reflected = plan.job.write(ending.shape.depth, "length"), ending.shape.reflected
+    said = f"a layer of {depth} is predicted to send back {reflected:.1e} of what comes to x.{ending.side}"
     if math.isinf(ending.recommended):
         return said, "no depth absorbs waves this slow: end the run before they arrive, or extend the grid"
-    return (
-        said,
-        f"{plan.job.write(ending.recommended, 'length')} would send back less than {REFLECTION_LIMIT:.0e}",
-    )
+    deeper = plan.job.write(ending.recommended, "length")
+    return said, f"{deeper} would send back less than {REFLECTION_LIMIT:.0e}"
 
 
 def _detectors(plan: Plan) -> Iterator[Problem]:
@@ -91,7 +89,7 @@ def _phase(plan: Plan) -> Iterator[Problem]:
         step = plan.job.write(plan.step * math.pi / phase, "time")
         yield plan.job.problem(
             ("evolve", "step"),
-            f"the fastest wave of the grid turns by {phase:.3g} rad a step; beyond pi, errors no longer shrink evenly",
+            f"the fastest wave of the grid turns by {phase:.3g} rad a step, and beyond pi errors do not shrink evenly",
             f"write at most {step}, or leave `step` out",
             severity="warning",
         )

@@ -1,4 +1,4 @@
-"""A finished run, read back: figures, tables and fields as numpy arrays, or as xarray where that is installed."""
+"""A finished run, read back: figures, tables and fields as numpy arrays, or as xarray where it is installed."""
 
 from __future__ import annotations
 
@@ -20,7 +20,7 @@ FIELDS = "fields.nc"
 
 @dataclass(frozen=True)
 class Figure:
-    """One result in the file's unit; `value` is None where it could not be had, `error` where there is no bar."""
+    """One result in the file's unit; `value` is None where it could not be had, `error` without a bar."""
 
     value: float | None
     error: float | None
@@ -41,7 +41,7 @@ class Table:
 
 @dataclass(frozen=True)
 class Run:
-    """The folder of a finished run. Files are read when first asked for. Everything is in the file's units."""
+    """The folder of a finished run. Files are read when first asked for; all is in the job file's units."""
 
     folder: Path
 

@@ -22,9 +22,10 @@ def checks() -> dict[str, str]:
 
 def _in_module(tree: ast.AST) -> Iterator[tuple[str, str]]:
     for node in ast.walk(tree):
-        if isinstance(node, ast.Call) and isinstance(node.func, ast.Name) and node.func.id == "Check":
-            if len(node.args) > REASON and (name := _literal(node.args[0])):
-                yield name.strip(" :."), _literal(node.args[REASON], "...")
+        if not (isinstance(node, ast.Call) and isinstance(node.func, ast.Name) and node.func.id == "Check"):
+            continue
+        if len(node.args) > REASON and (name := _literal(node.args[0])):
+            yield name.strip(" :."), _literal(node.args[REASON], "...")
 
 
 def _literal(node: ast.expr, gap: str = "") -> str:

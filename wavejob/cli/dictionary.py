@@ -120,7 +120,7 @@ def form(info: FieldInfo) -> str:
 
 def form_of(model: type[Model]) -> str:
     """The keys of a mapping, `{from:, to:}`."""
-    return "{" + ", ".join(f"{key}:" for key in model.keys()) + "}"
+    return "{" + ", ".join(f"{key}:" for key in list(model.keys())) + "}"
 
 
 def _form(part: Any, found: list[Any]) -> str:

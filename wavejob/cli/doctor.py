@@ -1,4 +1,4 @@
-"""Look at this machine: versions, cores and memory allowed, cache folder, video encoder, and one timed transform pair."""
+"""Look at this machine: versions, cores and memory allowed, cache folder, video encoder, transform speed."""
 
 from __future__ import annotations
 
@@ -83,7 +83,7 @@ def doubts(found: dict[str, Any]) -> list[Problem]:
     if not found["cache"]["writable"]:
         problems.append(
             Problem(
-                f"the cache folder `{found['cache']['folder']}` can't be written; transforms are planned anew each time",
+                f"the cache folder `{found['cache']['folder']}` can't be written: every run plans anew",
                 "set WAVEJOB_CACHE to a folder you may write to",
                 severity="warning",
             )

@@ -1,4 +1,4 @@
-"""Examples of keys and kinds, made from their fields: whatever a field needs, and what it names as its example."""
+"""Examples of keys and kinds, made from their fields: what they need, and what a field names as its example."""
 
 from __future__ import annotations
 
@@ -43,7 +43,7 @@ def nested(entry: Entry, known: Mapping[tuple[str, ...], Entry]) -> dict[str, An
 
 
 def of_model(model: type[BaseModel], showing: str = "") -> dict[str, Any]:
-    """Values for the keys of `model` that are needed, for `showing`, and for as few others as make it whole."""
+    """Values for the keys of `model` that are needed, for `showing`, and for few others that make it whole."""
     fields = {info.alias or name: info for name, info in model.model_fields.items()}
     least = {key for key, info in fields.items() if info.is_required()} | ({showing} if showing else set())
     usual = least | {key for key, info in fields.items() if info.examples}
@@ -95,7 +95,7 @@ def _of_part(key: str, part: Any, found: list[Any]) -> Any:
     if isinstance(part, type) and issubclass(part, BaseModel):
         return of_model(part)
     if part is int:
-        return max([1, *(m.ge for m in found if isinstance(m, Ge))])
+        return next((m.ge for m in found if isinstance(m, Ge)), 1)
     return None
 
 

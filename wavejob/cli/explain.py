@@ -1,4 +1,4 @@
-"""Describe a key, a kind, an observable, a unit or a check, with an example; without a word, list all words."""
+"""Describe a key, kind, observable, unit or check, with an example; without a word, list all words."""
 
 from __future__ import annotations
 
@@ -6,6 +6,7 @@ import inspect
 import re
 from argparse import ArgumentParser, Namespace
 from collections.abc import Iterable, Mapping
+from typing import Any
 
 from pydantic.fields import FieldInfo
 
@@ -124,7 +125,7 @@ def _kind(entry: Entry, known: Known) -> str:
     return "\n".join([*lines, *_example(entry, known)])
 
 
-def _names(model: type[Model]) -> dict[str, object]:
+def _names(model: type[Model]) -> dict[str, Any]:
     """Field values from the example of a model, by field name."""
     values = of_model(model)
     given = {name: values.get(info.alias or name, info.default) for name, info in model.model_fields.items()}

@@ -41,7 +41,8 @@ def run(options: Namespace) -> int:
     if not options.quiet:
         name = shown(path)
         terminal.say(
-            f"{name} is written. Next:\n  wavejob check {name}\n  wavejob run {name}\n  wavejob explain potential"
+            f"{name} is written. Next:\n"
+            f"  wavejob check {name}\n  wavejob run {name}\n  wavejob explain potential"
         )
     return 0
 

@@ -25,7 +25,7 @@ class Ready:
 def prepare(
     jobs: Iterable[Job], memory: int | None, *, bars: bool = True, film: bool = True
 ) -> tuple[list[Ready], list[Problem]]:
-    """Plans every job; those that cannot be carried out, or need more than `memory` bytes, become problems."""
+    """Plans every job; what cannot be carried out, or needs more than `memory` bytes, becomes a problem."""
     ready, problems = [], []
     for job in jobs:
         try:

@@ -119,7 +119,8 @@ def _bar(job: Job) -> Iterator[Bar]:
     """A bar on standard error, gone when the block ends."""
     from rich.console import Console, Group
     from rich.live import Live
-    from rich.progress import BarColumn, Progress as Bars, TaskProgressColumn, TextColumn, TimeRemainingColumn
+    from rich.progress import BarColumn, TaskProgressColumn, TextColumn, TimeRemainingColumn
+    from rich.progress import Progress as Bars
     from rich.text import Text
 
     console = Console(stderr=True, highlight=False, markup=False)

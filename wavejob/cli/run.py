@@ -1,4 +1,4 @@
-"""Run job files, or all job files of folders, one after another; what is there already is not computed again."""
+"""Run job files, or all job files of folders, one after another; what is up to date is not computed again."""
 
 from __future__ import annotations
 
@@ -87,7 +87,7 @@ def run(options: Namespace) -> int:
 
 
 def _tasks(found: Gathered, options: Namespace) -> tuple[list[Task], list[Problem]]:
-    """What is to be run, the most urgent first, with the doubts about it; mistakes are added to those found."""
+    """What is to be run, the most urgent first, and the doubts about it; mistakes are added to those found."""
     tasks = [Task(job, options.runs or job.tree.root / "runs") for job in found.jobs]
     by_job = {id(task.job): task for task in tasks}
     fresh = [task.job for task in tasks if options.again or task.folder.finished() is None]

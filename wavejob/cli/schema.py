@@ -19,7 +19,7 @@ def add_arguments(parser: ArgumentParser) -> None:
     """Nothing of its own."""
 
 
-def run(options: Namespace) -> int:
+def run(_: Namespace) -> int:
     terminal.show(json.dumps(schema(), indent=2))
     return 0
 
@@ -41,7 +41,7 @@ def schema() -> dict[str, Any]:
 
 
 def _plain(node: Any, *, names: bool = False) -> Any:
-    """Without titles made up from field names and defaults of null; `names` tells that keys are names of ours."""
+    """Without made-up titles and defaults of null; `names` tells that the keys are names of ours."""
     if isinstance(node, list):
         return [_plain(item) for item in node]
     if not isinstance(node, dict):

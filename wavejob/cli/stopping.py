@@ -13,7 +13,7 @@ class Terminated(KeyboardInterrupt):
     """SIGTERM; it takes the way of Ctrl-C through all code, and ends with another exit code."""
 
 
-def _terminate(number: int, frame: FrameType | None) -> None:
+def _terminate(_: int, __: FrameType | None) -> None:
     raise Terminated
 
 

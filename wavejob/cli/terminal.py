@@ -1,4 +1,4 @@
-"""The two streams: results to standard output, everything else to standard error, whatever they are joined to."""
+"""The two streams: results to standard output, all else to standard error, whatever they are joined to."""
 
 from __future__ import annotations
 
