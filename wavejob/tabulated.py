@@ -31,8 +31,8 @@ class TableError(ValueError):
 def read_columns(path: Path, written: str, wanted: int) -> Array:
     """The first `wanted` columns of the comma- or blank-separated file that a job names as `written`.
 
-    Shape (rows, wanted). Lines that begin with `#` and one header line, without any number, are passed over. A gap,
-    a word or a value that is not finite is refused with its line.
+    Shape (rows, wanted). Lines that begin with `#` and one header line, without any number, are passed over.
+    A gap, a word or a value that is not finite is refused with its line.
     """
     size = path.stat().st_size
     if size > MAX_BYTES:
@@ -41,7 +41,9 @@ def read_columns(path: Path, written: str, wanted: int) -> Array:
     try:
         text = path.read_text(encoding="utf-8-sig")
     except UnicodeDecodeError as error:
-        raise TableError(f"`{written}` is no UTF-8 text (byte {error.start})", "name a text file with columns") from None
+        raise TableError(
+            f"`{written}` is no UTF-8 text (byte {error.start})", "name a text file with columns"
+        ) from None
     rows: list[list[float]] = []
     header = True
     for number, line in enumerate(text.split("\n"), 1):
@@ -58,7 +60,9 @@ def read_columns(path: Path, written: str, wanted: int) -> Array:
         if len(known) < wanted:
             raise TableError(*_faulty(f"`{written}`, line {number}", cells[:wanted], wanted))
         if not np.all(np.isfinite(known)):
-            raise TableError(f"`{written}`, line {number}: a value is not finite", "every value must be finite")
+            raise TableError(
+                f"`{written}`, line {number}: a value is not finite", "every value must be finite"
+            )
         rows.append(known)
     if len(rows) < FEWEST_ROWS:
         said = f"`{written}` has {len(rows)} rows of numbers"
@@ -82,10 +86,16 @@ def _faulty(where: str, cells: list[str], wanted: int) -> tuple[str, str]:
     if bad == "":
         return f"{where}: a cell is empty", "fill the gap or drop the line"
     if bad is not None and ";" in bad:
-        return f"{where}: {shown(bad)} is no number", "separate columns with commas or blanks, write decimal points"
+        return (
+            f"{where}: {shown(bad)} is no number",
+            "separate columns with commas or blanks, write decimal points",
+        )
     if bad is not None:
         return f"{where}: {shown(bad)} is no number", "write plain numbers with decimal points"
-    return f"{where}: {len(cells)} of {wanted} columns", "complete the line; columns stand between commas or blanks"
+    return (
+        f"{where}: {len(cells)} of {wanted} columns",
+        "complete the line; columns stand between commas or blanks",
+    )
 
 
 @dataclass(frozen=True)
