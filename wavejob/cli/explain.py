@@ -17,12 +17,14 @@ from ..problems import nearest
 from ..reading.dimensions import DIMENSIONS, kind_of
 from ..reading.quantity_text import pint_notation
 from ..reading.unit_table import measure, unit_names
+from ..reference import text, topics
 from ..settings import JobKeys
 from . import terminal
 from .arguments import UsageError
 from .check_words import checks
 from .dictionary import Entry, entries, form, form_of
 from .examples import of_model, written
+from .pages import laid_out
 from .words import columns, paragraph
 
 Known = Mapping[tuple[str, ...], Entry]
@@ -81,6 +83,9 @@ def explanations(word: str) -> list[str]:
         for name, reason in checks().items()
         if word.lower() in (name.lower(), "check", "checks")
     ]
+    page = word.lower().replace(" ", "-")
+    if page in topics():
+        told.append(laid_out(text(page)))
     return told
 
 
@@ -95,7 +100,7 @@ def matching(word: str, known: Iterable[Entry]) -> list[Entry]:
 def known_words() -> set[str]:
     """Every word that can be asked for."""
     words = {part for entry in entries() for part in (entry.path[-1], entry.dotted)}
-    return words | {name for name, _ in _all_figures()} | set(checks()) | set(unit_names()) | {"checks"}
+    return words | {name for name, _ in _all_figures()} | {*checks(), *unit_names(), *topics(), "checks"}
 
 
 def overview() -> str:
@@ -106,6 +111,7 @@ def overview() -> str:
     ]
     lines = [paragraph(", ".join(words), f"{title:<17}", " " * 17) for title, words in blocks]
     lines.append(paragraph(", ".join(checks()), f"{'checks':<17}", " " * 17))
+    lines.append(paragraph(", ".join(topics()), f"{'pages':<17}", " " * 17))
     lines.append("")
     lines.append(
         "`wavejob explain WORD` tells more: `wavejob explain evolve`, `... grid.x.points`, `... units`."
