@@ -8,6 +8,8 @@ with `_` are what others are based on.
 from __future__ import annotations
 
 import os
+import subprocess
+import sys
 from pathlib import Path
 
 import pytest
@@ -98,6 +100,26 @@ def test_keys_that_are_not_available_yet_are_refused_by_name(pattern: tuple[str,
     assert len(said) == 1
     if pattern[0] not in ("particle", "expect") and not {"kind", "path"} & set(pattern):
         assert found == said  # and nothing else: no echoes
+
+
+@pytest.mark.parametrize(
+    "name", ["many_mistakes", "utf16", "based_on_wrong_base", "packet_too_fast", "table_contents"]
+)
+def test_the_command_says_the_same(name: str) -> None:
+    """`wavejob check`: messages on standard error, nothing on standard output, exit code 2."""
+    command = [sys.executable, "-m", "wavejob", "check", "--tree", FOLDER.name, f"{FOLDER.name}/{name}.yml"]
+    paths = os.pathsep.join([str(FOLDER.parent.parent), os.environ.get("PYTHONPATH", "")])
+    done = subprocess.run(
+        command,
+        cwd=FOLDER.parent,
+        env={**os.environ, "PYTHONPATH": paths, "PYTHONUTF8": "1"},
+        capture_output=True,
+        encoding="utf-8",
+        check=False,
+    )
+    assert done.returncode == 2
+    assert done.stdout == ""
+    assert done.stderr.startswith((FOLDER / f"{name}.txt").read_text(encoding="utf-8"))
 
 
 def rewrite() -> None:

@@ -238,14 +238,14 @@ def test_planning_changed_jobs(text: str) -> None:
 
 
 @pytest.mark.slow
-@settings(often, max_examples=5000, derandomize=False)
+@settings(often, max_examples=2000, derandomize=False)
 @given(changed)
 def test_reading_many_changed_jobs(text: str) -> None:
     read(text, planned=False)
 
 
 @pytest.mark.slow
-@settings(often, max_examples=500, derandomize=False)
+@settings(often, max_examples=200, derandomize=False)
 @given(mutated_values())
 def test_planning_many_changed_jobs(text: str) -> None:
     read(text, planned=True)
