@@ -8,6 +8,7 @@ from typing import Any, get_args
 import yaml
 from pydantic import BaseModel
 
+from ..ensemble import trajectories
 from ..models import Item, Quantity
 from ..plan import Plan
 from ..reading.quantities import Named, Units
@@ -35,6 +36,8 @@ def write_resolved(path: Path, plan: Plan) -> None:
     evolve["step"] = _quantity(plan.step, "time", job.units)
     evolve["order"] = plan.splitting.order
     evolve["record"] = _quantity(plan.record * plan.step, "time", job.units)
+    if not isinstance(job.keys.classical, str):
+        resolved["classical"]["trajectories"] = trajectories(plan)
     lines = [
         "# The job with every default and choice made explicit. Choices made here:",
         *(f"#   {key}: {why}" for key, why in _reasons(plan).items()),

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import numpy as np
 
-from ..classical import path
 from ..observables.places import Crossing, Inside
+from ..observables.swarm import PREFIX
 from ..plan import Plan
 from ..results import Result
 from ..simulate import Record
@@ -21,7 +21,6 @@ def stage(record: Record) -> Scene:
     job, units = plan.job, plan.job.units
     length, clock, energy = (1 / units.scale(d) for d in ("length", "time", "energy"))
     times = np.array(frames.times)
-    inset = (1 + 1e-9) * plan.axis.low, (1 - 1e-9) * plan.axis.high
     x, potential = drawn_potential(plan, times)
     k, start, end = _momenta(record)
     return Scene(
@@ -49,9 +48,9 @@ def stage(record: Record) -> Scene:
             (o.name, o.start * length, o.stop * length) for o in job.observables if isinstance(o, Inside)
         ),
         probabilities=_probabilities(record, times),
-        classical_path=_classical(plan, times, inset) * length,
+        classical_path=_classical(record, times),
         view=None,
-        results=tuple((r.name, worded(plan, r)) for r in _most_wanted(record)),
+        results=tuple((r.name, _with_newton(record, r)) for r in _most_wanted(record)),
         failed_checks=tuple(f"{c.name}: {c.advice}" for c in record.checks if not c.passed),
         wavenumber=k / length,
         momentum_start=start * length,
@@ -91,7 +90,8 @@ def _most_wanted(record: Record) -> list[Result]:
             return 0
         return 1 if result.name.partition(".")[0] in named else 2
 
-    return sorted(record.results, key=rank)[:SHOWN]
+    quantum = [result for result in record.results if not result.name.startswith(PREFIX)]
+    return sorted(quantum, key=rank)[:SHOWN]
 
 
 def drawn_potential(plan: Plan, times: Array) -> tuple[Array, Array]:
@@ -147,28 +147,30 @@ def _probabilities(record: Record, times: Array) -> tuple[tuple[str, Array], ...
     return tuple(found[:3])
 
 
-def _classical(plan: Plan, times: Array, inset: tuple[float, float]) -> Array:
-    """The path of F = m a from the packet's mean place and momentum, nan once it is absorbed."""
-    axis, psi = plan.axis, plan.psi
-    density = np.abs(psi) ** 2 * axis.spacing
-    x0 = float(density @ axis.x)
-    k = 2 * np.pi * np.fft.fftfreq(axis.points, axis.spacing)
-    weight = np.abs(np.fft.fft(psi)) ** 2
-    p0 = float(weight @ k / weight.sum())
-    if axis.transform == "sine" and abs(p0) < 1e-9 * float(np.sqrt(weight @ k**2 / weight.sum())):
-        p0 = 0.0
-    x0 = min(max(x0, min(inset)), max(inset))
-    mass = plan.job.particle.mass
-    way = path(plan.job.landscape, mass, x0, p0, times, low=axis.low, high=axis.high, ends=axis.transform)
-    x = np.array(way.x)
-    for ending in plan.endings:
+def _classical(record: Record, times: Array) -> Array | None:
+    """The path of F = m a from the mean start, nan once it is absorbed; None where the job leaves it out."""
+    if record.classical is None:
+        return None
+    axis, way = record.plan.axis, record.classical.path
+    x = way.x[np.searchsorted(way.times, times)]
+    for ending in record.plan.endings:
         middle = ending.shape.depth / 2
         beyond = x < axis.low + middle if ending.side == "low" else x > axis.high - middle
         if beyond.any():
             x[int(np.argmax(beyond)) :] = np.nan
     jumps = np.flatnonzero(np.abs(np.diff(x)) > axis.length / 2)
     x[jumps] = np.nan
-    return x
+    return x / record.plan.job.units.scale("length")
+
+
+def _with_newton(record: Record, result: Result) -> str:
+    """A result as it is worded, and beside it what F = m a gives."""
+    by_name = {r.name: r for r in record.results}
+    other = by_name.get(f"{PREFIX}{result.name}")
+    if other is None or other.value is None:
+        return worded(record.plan, result)
+    value = record.plan.job.units.to_file(other.value, other.dimension)
+    return f"{worded(record.plan, result)} (F = m a: {value:.4g})"
 
 
 def _momenta(record: Record) -> tuple[Array, Array, Array]:
