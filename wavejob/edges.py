@@ -53,7 +53,7 @@ class Momenta:
         1e-12 of the most frequent is left out.
         """
         outward = np.abs(k) if side is None else k if side == "high" else -k
-        kept = (outward > 0) & (weight > 1e-12 * weight.max())
+        kept = (outward > 0) & (weight > 1e-12 * weight.max(initial=0.0))
         if not kept.any():
             return cls(np.empty(0), np.empty(0))
         outward, weight = outward[kept], weight[kept]

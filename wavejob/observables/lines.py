@@ -31,12 +31,13 @@ def line_shape(x: Array) -> tuple[Array, Array, Array]:
     Computer, 1966).
     """
     square = BETA**2 - np.asarray(x, dtype=complex) ** 2
-    r = np.sqrt(np.where(np.abs(square) < 1e-6, 1e-6, square))
+    near = np.abs(square) < 1e-2
+    r = np.sqrt(np.where(near, 1.0, square))
     scale = BETA / math.sinh(BETA)
-    value = np.sinh(r) / r
-    # With g(q) = sinh(sqrt q) / sqrt q: 2 q g' = cosh(sqrt q) - g and 4 q g'' = g - 6 g'.
-    slope = (np.cosh(r) - value) / (2 * r**2)
-    bend = (value - 6 * slope) / (4 * r**2)
+    value = np.where(near, 1 + square / 6 + square**2 / 120, np.sinh(r) / r)
+    # With g(q) = sinh(sqrt q) / sqrt q: 2 q g' = cosh(sqrt q) - g and 4 q g'' = g - 6 g'; near 0 the series.
+    slope = np.where(near, 1 / 6 + square / 60 + square**2 / 1680, (np.cosh(r) - value) / (2 * r**2))
+    bend = np.where(near, 1 / 60 + square / 840, (value - 6 * slope) / (4 * r**2))
     first = -2 * x * slope
     second = -2 * slope + 4 * x**2 * bend
     return (scale * value).real, (scale * first).real, (scale * second).real

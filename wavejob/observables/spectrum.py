@@ -156,7 +156,7 @@ class SpectrumMeter(Meter):
         """What the shape of each line allows it to be beside one line."""
         duration, name, errors = self._signal().duration, self.asked.name, {}
         for i, (weight, away) in enumerate(zip(self.found.weights, self.found.deviations, strict=True)):
-            hidden = float(hidden_splitting(away / weight, duration)) / 2
+            hidden = float(hidden_splitting(away / weight, duration))
             errors[f"{name}.line[{i}]"] = {"resolution": min(hidden, resolution(duration))}
             errors[f"{name}.weight[{i}]"] = {"resolution": 2 * float(away)}
         return errors
