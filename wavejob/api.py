@@ -30,7 +30,8 @@ def run(
 ) -> Finished:
     """Carries out `job` into its folder below `runs`, unless that is there already.
 
-    `runs` is runs/ in the job tree if left out. `again` computes anew; without `bars` or `film` these are left out. Raises JobFileError and RunError.
+    `runs` is runs/ in the job tree if left out. `again` computes anew; without `bars` or `film` these
+    are left out. Raises JobFileError and RunError.
     """
     folder = job.tree.runs_folder(Path(runs) if runs is not None else None)
     return run_job(job, folder, again=again, bars=bars, film=film)

@@ -89,7 +89,8 @@ def _phase(plan: Plan) -> Iterator[Problem]:
         step = plan.job.write(plan.step * math.pi / phase, "time")
         yield plan.job.problem(
             ("evolve", "step"),
-            f"the fastest wave of the grid turns by {phase:.3g} rad a step, and beyond pi errors do not shrink evenly",
+            f"the fastest wave of the grid turns by {phase:.3g} rad a step; beyond pi, "
+            "errors do not shrink evenly",
             f"write at most {step}, or leave `step` out",
             severity="warning",
         )

@@ -1,7 +1,7 @@
 """How long a planned job will take and how much it will need: rough, from its sizes and a short measurement.
 
-The constants were measured on one x86-64 machine, as multiples of a transform pair by numpy, which is timed anew
-on the machine at hand. Other work on it, or error bars that ask for a finer run, can multiply the time.
+The constants were measured on one x86-64 machine, as multiples of a transform pair by numpy, timed anew on
+the machine at hand. Other work on it, or error bars that ask for a finer run, can multiply the time.
 """
 
 from __future__ import annotations

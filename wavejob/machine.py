@@ -60,12 +60,11 @@ def _memory_limits(folder: Path) -> Iterator[int]:
 
 
 def _core_limits(folder: Path) -> Iterator[float]:
-    """Cores' worth of time a group may use."""
-    quota, period = (
-        (_text(folder / "cpu.max").split() or ["max"])[:2] if _text(folder / "cpu.max") else ("", "")
-    )
-    if not quota:
-        quota, period = (_text(folder / f"cpu.cfs_{name}_us").strip() for name in ("quota", "period"))
+    """Cores' worth of time that one group may use: time and period, in one file or in two."""
+    words = _text(folder / "cpu.max").split()
+    if not words:
+        words = [_text(folder / f"cpu.cfs_{name}_us").strip() for name in ("quota", "period")]
+    quota, period = words
     if quota.isdigit() and period.isdigit() and int(period) > 0:
         yield int(quota) / int(period)
 

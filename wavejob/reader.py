@@ -1,4 +1,4 @@
-"""A finished run, read back: figures, tables and fields as numpy arrays, or as xarray where it is installed."""
+"""A finished run, read back: figures, tables and fields as numpy arrays, or as xarray where installed."""
 
 from __future__ import annotations
 

@@ -1,4 +1,4 @@
-"""Examples of keys and kinds, made from their fields: what they need, and what a field names as its example."""
+"""Examples of keys and kinds, made from their fields: what they need, and what they name as example."""
 
 from __future__ import annotations
 
@@ -43,7 +43,7 @@ def nested(entry: Entry, known: Mapping[tuple[str, ...], Entry]) -> dict[str, An
 
 
 def of_model(model: type[BaseModel], showing: str = "") -> dict[str, Any]:
-    """Values for the keys of `model` that are needed, for `showing`, and for few others that make it whole."""
+    """Values for the keys of `model` that are needed, for `showing`, and for others that make it whole."""
     fields = {info.alias or name: info for name, info in model.model_fields.items()}
     least = {key for key, info in fields.items() if info.is_required()} | ({showing} if showing else set())
     usual = least | {key for key, info in fields.items() if info.examples}

@@ -31,12 +31,11 @@ def run(options: Namespace) -> int:
             file.write(template())
     except FileExistsError:
         raise _refusal(path, "is there already", "choose another name") from None
-    except FileNotFoundError:
-        raise _refusal(
-            path, f"can't be written: there is no folder `{path.parent}`", "make the folder first"
-        ) from None
     except (OSError, ValueError) as error:
-        said = error.strerror if isinstance(error, OSError) else str(error)
+        if not path.parent.is_dir():
+            said = f"can't be written: there is no folder `{path.parent}`"
+            raise _refusal(path, said, "make the folder first") from None
+        said = str(error.strerror if isinstance(error, OSError) else error)
         raise _refusal(path, f"can't be written: {said}", "choose another folder") from None
     if not options.quiet:
         name = shown(path)

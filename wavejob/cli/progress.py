@@ -96,7 +96,8 @@ class Bar:
 
     def step(self, progress: Progress) -> None:
         self._advance("run", progress.step, progress.steps)
-        self.text.plain = f"  {state(self.job, progress)}"
+        ended = progress.step == progress.steps  # what follows takes its time and tells nothing
+        self.text.plain = "  error bars and tables" if ended else f"  {state(self.job, progress)}"
 
     def frame(self, done: int, total: int) -> None:
         self._advance("film", done, total)

@@ -2,24 +2,23 @@
 
 from __future__ import annotations
 
+import math
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 from ..reader import Run
 from .words import paragraph
 
-WIDEST_NAME = 30
+CLASSICAL = "classical."
 
 
 def result_table(title: str, folder: str, run: Run) -> str:
     """Figures with bars and meanings, expectations, checks that failed, verdict and folder."""
     document = run.document
-    rows = [(name, _value(entry), _meaning(entry)) for name, entry in document["results"].items()]
-    names = min(max((len(name) for name, _, _ in rows), default=0), WIDEST_NAME)
-    values = max((len(value) for _, value, _ in rows), default=0)
-    lines = [title]
-    for name, value, meaning in rows:
-        first = f"  {name:<{names}}  {value:<{values}}  "
-        lines.append(paragraph(meaning, first, " " * (names + values + 6)).rstrip())
+    results: dict[str, dict[str, Any]] = document["results"]
+    ours = [_row(name, entry) for name, entry in results.items() if not name.startswith(CLASSICAL)]
+    theirs = [_row(name, entry, results) for name, entry in results.items() if name.startswith(CLASSICAL)]
+    lines = [title, *_rows(ours), *_rows(theirs)]
     for expectation in document["expectations"]:
         lines.append(paragraph(expectation["text"], f"  expected, {expectation['outcome']}: ", " " * 12))
     for check in document["checks"]:
@@ -27,6 +26,22 @@ def result_table(title: str, folder: str, run: Run) -> str:
             lines.append(paragraph(_failure(check), "  check failed: ", " " * 12))
     lines.append(f"  {document['verdict']}, in {folder}")
     return "\n".join([*lines, ""])
+
+
+def _row(name: str, entry: dict[str, Any], others: Mapping[str, Any] | None = None) -> tuple[str, str, str]:
+    """Name, value, meaning; a figure that repeats one of `others` for F = m a needs no meaning."""
+    repeats = others is not None and name.removeprefix(CLASSICAL) in others
+    return name, _value(entry), entry.get("note", "") if repeats else _meaning(entry)
+
+
+def _rows(rows: Sequence[tuple[str, str, str]]) -> list[str]:
+    names = max((len(name) for name, _, _ in rows), default=0)
+    values = max((len(value) for _, value, _ in rows), default=0)
+    rest = " " * (names + values + 6)
+    return [
+        paragraph(said, f"  {name:<{names}}  {value:<{values}}  ", rest).rstrip()
+        for name, value, said in rows
+    ]
 
 
 def _value(entry: dict[str, Any]) -> str:
@@ -39,11 +54,12 @@ def _value(entry: dict[str, Any]) -> str:
 
 
 def _with_error(value: float, error: float) -> str:
-    if not error:
+    """The error to two digits and the value to the same decimal place, at most twelve digits of it."""
+    if error == 0:
         return f"{value:.6g} +- 0"
-    bar = f"{error:.1e}" if error < 1e-3 or error >= 1e4 else f"{error:.2g}"
-    digits = max(1, len(f"{abs(value) / error:.0f}") + 1) if abs(value) >= error else 1
-    return f"{value:.{min(digits, 12)}g} +- {bar}"
+    last = math.floor(math.log10(error)) - 1
+    digits = math.floor(math.log10(abs(value))) - last + 1 if value else 1
+    return f"{value:.{min(max(digits, 1), 12)}g} +- {error:.2g}"
 
 
 def _meaning(entry: dict[str, Any]) -> str:

@@ -74,11 +74,10 @@ def run(options: Namespace) -> int:
     try:
         for task in tasks:
             _carry_out(task, options)
-    except KeyboardInterrupt:
-        _say_what_is_kept(tasks)
+    except KeyboardInterrupt as stop:
         if options.format == "json":
             show_json("run", warnings, [task.entry for task in tasks])
-        raise
+        raise type(stop)(_kept(tasks)) from None
     if options.format == "json":
         show_json("run", warnings, [task.entry for task in tasks])
     if len(tasks) > 1 and not options.quiet:
@@ -87,7 +86,7 @@ def run(options: Namespace) -> int:
 
 
 def _tasks(found: Gathered, options: Namespace) -> tuple[list[Task], list[Problem]]:
-    """What is to be run, the most urgent first, and the doubts about it; mistakes are added to those found."""
+    """What is to be run, the most urgent first, and doubts about it; mistakes are added to those found."""
     tasks = [Task(job, options.runs or job.tree.root / "runs") for job in found.jobs]
     by_job = {id(task.job): task for task in tasks}
     fresh = [task.job for task in tasks if options.again or task.folder.finished() is None]
@@ -182,13 +181,14 @@ def _say_ended(task: Task, seconds: float) -> None:
         log_line(said)
 
 
-def _say_what_is_kept(tasks: list[Task]) -> None:
+def _kept(tasks: list[Task]) -> str:
+    """What is left of a batch that was stopped."""
     kept = sum(task.status in ("done", "up to date") for task in tasks)
     cut = next((task for task in tasks if task.status == "stopped"), None)
     said = f"stopped: {counted(kept, 'job')} of {len(tasks)} finished and kept"
     if cut is not None:
         said += f"; {cut.job.id} was cut short and starts anew next time"
-    terminal.say(said)
+    return said
 
 
 def _summary(tasks: list[Task]) -> str:

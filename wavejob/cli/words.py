@@ -12,7 +12,7 @@ from . import terminal
 def paragraph(text: str, first: str = "", rest: str = "") -> str:
     """`text` behind `first`, wrapped to the terminal with `rest` before further lines; one line in a file."""
     columns = terminal.width()
-    if columns is None:
+    if columns is None or not text:  # which textwrap would take for no line at all
         return first + text
     return textwrap.fill(
         text,
