@@ -15,7 +15,7 @@ from ..simulate import Record
 Array = np.ndarray
 
 SMOOTH = 1.0  # times the difference to a coarser companion; by trial on the catalogue in tests/truth
-SHARP = 3.0  # the same where the potential has sharp edges: errors then shrink less regularly
+SHARP = 2.0  # the same where the potential has sharp edges: errors then shrink less regularly
 FINER = 1.5  # times the difference to a finer companion, which is itself not free of error
 HOPELESS = 0.5  # of the scale: a difference beyond this is no error bar
 LEFT = 0.5  # probability on the grid at the end, below which mean values of the rest do not count
