@@ -1,5 +1,5 @@
-"""The classical companion against closed forms. F = m a carries the Wigner function exactly in potentials up to
-the second power (E. Wigner, Phys. Rev. 40, 749 (1932)): there both answers agree to the statistical error."""
+"""The classical companion against closed forms. F = m a carries the Wigner function exactly in potentials up
+to the second power (E. Wigner, Phys. Rev. 40, 749 (1932)): there both answers agree to the statistical error."""
 
 from __future__ import annotations
 
@@ -51,7 +51,13 @@ def both(text: str) -> Record:
 
 
 def scattering(
-    potential: str, *, edges: str = "wrap", until: float = 25, detector: float = 5, number: int = 1024, seed: int = 1
+    potential: str,
+    *,
+    edges: str = "wrap",
+    until: float = 25,
+    detector: float = 5,
+    number: int = 1024,
+    seed: int = 1,
 ) -> Record:
     return both(
         SCATTERING.format(
@@ -84,8 +90,8 @@ def oscillator_state(n: int) -> tuple[Array, Array]:
 
 @pytest.mark.parametrize(("n", "negative"), [(0, 0.0), (1, 4 / math.sqrt(math.e) - 2), (2, 0.72899)])
 def test_negative_part_of_a_wigner_function(n: int, negative: float) -> None:
-    """Total size less 1 of oscillator states: 4 / sqrt(e) - 2 for the first, 0.72899 for the second, Kenfack and
-    Zyczkowski, J. Opt. B 6, 396 (2004), from memory."""
+    """Total size less 1 of oscillator states: 4 / sqrt(e) - 2 for the first, 0.72899 for the second, Kenfack
+    and Zyczkowski, J. Opt. B 6, 396 (2004), from memory."""
     x, psi = oscillator_state(n)
     places, momenta, found = wigner.function(x, psi)
     cell = (places[1] - places[0]) * (momenta[1] - momenta[0])
@@ -118,7 +124,10 @@ def test_start_from_a_field_with_signs() -> None:
     start = wigner.sampled(*oscillator_state(2), 16384, 1)
     weight = start.weight / wigner.GROUPS
     assert np.any(weight < 0)
-    spread = [float(values.std(ddof=1)) / 4 for values in (start.weight.sum(axis=1), (start.weight * start.x**2).sum(1))]
+    spread = [
+        float(values.std(ddof=1)) / 4
+        for values in (start.weight.sum(axis=1), (start.weight * start.x**2).sum(1))
+    ]
     assert abs(weight.sum() - 1) < 3 * spread[0]
     assert abs((weight * start.x**2).sum() - 2.5) < 3 * spread[1]
     assert (weight * start.p**2).sum() == pytest.approx(2.5, abs=0.1)
@@ -134,7 +143,11 @@ def test_too_negative_a_start_is_refused() -> None:
 
 def test_oscillator_agrees_in_everything() -> None:
     record = both(OSCILLATOR)
-    compared = [r for r in record.results if r.name.startswith("classical.") and r.name[10:] in record.plan.job.figures]
+    compared = [
+        r
+        for r in record.results
+        if r.name.startswith("classical.") and r.name[10:] in record.plan.job.figures
+    ]
     assert len(compared) == 1 + 5 * 4 + 1 - 4 + 4
     for result in compared:
         quantum, tolerance = value(record, result.name[10:]), 2 * (result.error or 0.0) + 1e-4
@@ -160,7 +173,9 @@ def test_actions_of_the_mean_start() -> None:
     t = np.linspace(0, 7, 20001)
     x, p = 2 * np.cos(t) + 0.7 * np.sin(t), -2 * np.sin(t) + 0.7 * np.cos(t)
     assert value(record, "classical.action") == pytest.approx(np.trapezoid(p**2, t), abs=1e-5)
-    assert value(record, "classical.lagrangian_action") == pytest.approx(np.trapezoid((p**2 - x**2) / 2, t), abs=1e-5)
+    assert value(record, "classical.lagrangian_action") == pytest.approx(
+        np.trapezoid((p**2 - x**2) / 2, t), abs=1e-5
+    )
 
 
 @pytest.mark.parametrize(
@@ -178,15 +193,20 @@ def test_passes_what_has_the_energy(potential: str) -> None:
     through = record.result("classical.through.total")
     late = value(record, "classical.through.undecided")
     assert late < 1
-    assert abs(value(record, "classical.through.total") - share_above(1.0)) < 1.5 * error(record, through.name) + 0.01
+    assert (
+        abs(value(record, "classical.through.total") - share_above(1.0))
+        < 1.5 * error(record, through.name) + 0.01
+    )
 
 
 def test_free_packet() -> None:
-    """A free packet has passed x with the share above it: erfc of the spread Gaussian; width as in textbooks."""
+    """A free packet has passed x with the share above it: erfc of the spread Gaussian (textbooks)."""
     record = scattering("", detector=10, until=20)
     width = math.hypot(2, 20 / 4)
     ahead = 0.5 * math.erfc((10 + 20 - 1.5 * 20) / width / math.sqrt(2))
-    assert abs(value(record, "classical.through.total") - ahead) < 2 * error(record, "classical.through.total")
+    assert abs(value(record, "classical.through.total") - ahead) < 2 * error(
+        record, "classical.through.total"
+    )
     assert value(record, "through.total") == pytest.approx(ahead, abs=1e-3)
     assert value(record, "classical.through.backward") < 0.02
 
@@ -218,7 +238,9 @@ def test_integral_of_a_layer() -> None:
     shape = LayerShape.on_grid(7.0, 0.2, 1.3, 0.05)
     nodes, weights = np.polynomial.legendre.leggauss(200)
     for s in (0.5, 3.0, 6.9):
-        assert shape.integral(np.array(s)) == pytest.approx(weights @ shape.rate((nodes + 1) * s / 2) * s / 2, rel=1e-9)
+        assert shape.integral(np.array(s)) == pytest.approx(
+            weights @ shape.rate((nodes + 1) * s / 2) * s / 2, rel=1e-9
+        )
 
 
 def test_pulse_of_a_field_gives_its_impulse() -> None:
@@ -302,6 +324,26 @@ observables: [norm, position]
     assert record.result("classical.action").value is not None
 
 
+def test_many_reflections_between_two_rows() -> None:
+    """A box crossed 250 times in a row; the trajectories stay spread over it (ergodic, mean place 1/2)."""
+    record = both(
+        """
+units: natural
+grid: {x: {from: 0, to: 1, points: 128}}
+edges: {x: wall}
+packet: {gaussian: {at: 0.5, sigma: 0.05, wavenumber: 100}}
+evolve: {until: 5, step: 0.00025, record: 2.5}
+observables: [norm, position, energy]
+classical: {trajectories: 512}
+film: none
+"""
+    )
+    assert value(record, "classical.position.x.final") == pytest.approx(0.5, abs=0.05)
+    kinetic = (100**2 + 1 / (4 * 0.05**2)) / 2
+    assert value(record, "classical.energy.final") == pytest.approx(kinetic, rel=0.01)
+    assert value(record, "classical.action") == pytest.approx(100**2 * 5, rel=1e-6)
+
+
 def test_none_skips_it() -> None:
     text = OSCILLATOR.replace("classical: {trajectories: 1024}", "classical: none")
     record = both(text)
@@ -329,7 +371,8 @@ def test_same_seed_same_numbers() -> None:
 def test_sentence() -> None:
     said = sentence("0.0001", ["a", "b", "c"], ["d (1 against 0)"], list("efghijk"), 500)
     assert said == (
-        "F = m a is good enough at the accuracy asked (0.0001) for a, b and c; is not good enough for d (1 against 0); "
+        "F = m a is good enough at the accuracy asked (0.0001) for a, b and c; "
+        "is not good enough for d (1 against 0); "
         "cannot be told from the quantum answer by 500 trajectories for e, f, g, h and 3 more."
     )
 
@@ -337,7 +380,9 @@ def test_sentence() -> None:
 def test_written_with_a_run(tmp_path: Path) -> None:
     """Columns with their errors, figures with their parts, the sentence, and expectations on them."""
     expect = "expect: [{result: classical.position.x.final, equals: 0.06, tolerance: 5, source: test}]\n"
-    (tmp_path / "job.yml").write_text(OSCILLATOR.replace("1024", "64") + "film: none\nerror_bars: none\n" + expect)
+    (tmp_path / "job.yml").write_text(
+        OSCILLATOR.replace("1024", "64") + "film: none\nerror_bars: none\n" + expect
+    )
     finished = run_job(load(tmp_path / "job.yml", JobTree(tmp_path.resolve())), tmp_path / "runs", film=False)
     stored = json.loads((finished.folder / "results.json").read_text())
     assert stored["classical"]["trajectories"] == 64

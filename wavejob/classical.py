@@ -18,6 +18,7 @@ TOLERANCE = 1e-8  # of the length of the axis: change of the path when all steps
 LEAST_STEPS = 400  # so that a short pulse in time is not stepped over
 MOST_STEPS = 25_000
 RADIANS = 0.5  # of the fastest oscillation in one step; also the part of the sharpest feature passed in one
+EDGES_A_STEP = 200  # met in one step at the most where no force asks for shorter ones
 PROBES = 2001  # points at which the landscape is looked at
 
 
@@ -45,7 +46,7 @@ class Answer:
     """What F = m a says about a run, beside its figures. Names are those of results without the prefix."""
 
     sentence: str
-    path: Path  # from the mean start, at the times of the frames and the last recorded one
+    path: Path | None  # from the mean start, at the times of the frames and the last recorded one
     trajectories: int
     largest_gap: float | None  # of the mean places, in quantum widths
     gap_time: float | None
@@ -70,16 +71,17 @@ def path(
     """The trajectory that starts at `times[0]` from `x0` inside [low, high] with momentum `p0`.
 
     The steps come from curvature and features of the landscape and are halved until positions change by less
-    than `tolerance` of the length of the axis, or 25 000 steps are reached; `error` tells which. On a "periodic"
-    axis positions stay inside [low, high], so they jump where the path wraps; on a "sine" axis the ends are
-    walls.
+    than `tolerance` of the length of the axis, or 25 000 steps are reached; `error` tells which. On a
+    "periodic" axis positions stay inside [low, high], so they jump where the path wraps; on a "sine" axis the
+    ends are walls.
     """
     times = np.asarray(times, dtype=float)
     motion = Motion(landscape, mass, low, high, ends)
     duration = float(times[-1] - times[0])
-    if duration == 0 or (motion.straight and not landscape.depends_on_time):
-        return _followed(motion, x0, p0, times, math.inf)
-    step = max(first_step(motion, Trajectories.start(x0, p0), times), 4 * duration / MOST_STEPS)
+    step = first_step(motion, Trajectories.start(x0, p0), times)
+    if duration == 0 or motion.exact:
+        return _followed(motion, x0, p0, times, step)
+    step = max(step, 4 * duration / MOST_STEPS)
     coarse = _followed(motion, x0, p0, times, step)
     while True:
         step /= 2
@@ -89,7 +91,10 @@ def path(
             change = np.minimum(change, high - low - change)
         error = float(change.max())
         if error < tolerance * (high - low) or duration / step > MOST_STEPS / 2:
-            actions = np.abs(fine.action - coarse.action), np.abs(fine.lagrangian_action - coarse.lagrangian_action)
+            actions = (
+                np.abs(fine.action - coarse.action),
+                np.abs(fine.lagrangian_action - coarse.lagrangian_action),
+            )
             return replace(fine, error=error, action_error=float(np.max(actions)))
         coarse = fine
 
@@ -112,6 +117,9 @@ def first_step(motion: Motion, start: Trajectories, times: Array) -> float:
     steepest = np.abs(slopes).max()
     stiffest = np.abs(np.diff(slopes, axis=1)).max() / (x[1] - x[0])
     kinetic = energy - float(values.min())
+    if motion.exact:
+        edges = np.unique(np.concatenate([motion.landscape.edges(0.0)[0], [motion.low, motion.high]]))
+        return EDGES_A_STEP * float(np.diff(edges).min()) / math.sqrt(2 * max(kinetic, 1e-300) / motion.mass)
     step = float(times[-1] - times[0]) / LEAST_STEPS
     if stiffest > 0:
         step = min(step, RADIANS * math.sqrt(motion.mass / stiffest))

@@ -1,4 +1,4 @@
-"""The classical companion of a run: what F = m a gives for the same job, and for which results it is enough."""
+"""The classical companion of a run: what F = m a gives for the same job, and what it is enough for."""
 
 from __future__ import annotations
 
@@ -13,6 +13,7 @@ from .classical import Answer, Path, path
 from .ensemble import Followed, drawn, follow, trajectories
 from .observables.swarm import OWN_FIGURES, PREFIX, ClassicalMeter, by_newton
 from .plan import Plan, wave_numbers
+from .problems import RunError
 from .results import Column, Result
 from .simulate import Record, judged
 from .wigner import GROUPS, WignerError
@@ -32,19 +33,21 @@ PATH_TOLERANCE = 1e-6  # of the length of the axis
 def with_companion(record: Record) -> Record:
     """The record with the columns and results of F = m a, and its expectations judged on them too.
 
-    Unchanged where the job says `classical: none`. Raises RunError where trajectories cannot be followed.
+    Unchanged where the job says `classical: none`. Where trajectories cannot be drawn or followed, the figures
+    are there and say so: a run is not lost for that.
     """
     plan = record.plan
     if isinstance(plan.job.keys.classical, str):
         return record
-    way = mean_path(plan, np.union1d(record.frames.times, record.times[-1:]))
+    way = None
     observables = [(o, o.classical(plan.bench)) for o in plan.job.measured]
     meters = [meter for _, meter in observables if meter is not None]
     meters.append(ClassicalMeter(lambda swarm: {MEAN: swarm.mean(swarm.x), LEFT: swarm.norm}, lambda _: {}))
     number = trajectories(plan)
     try:
+        way = mean_path(plan, np.union1d(record.frames.times, record.times[-1:]))
         followed = follow(plan, drawn(plan, number), meters, record.times)
-    except WignerError as error:
+    except (WignerError, RunError) as error:
         return _refused(record, way, str(error))
     results = tuple(_results(record, meters, followed))
     gaps = _gaps(record, followed.pooled.rows[MEAN], followed.pooled.rows[LEFT])
@@ -53,9 +56,13 @@ def with_companion(record: Record) -> Record:
     gap_error = None if answer.largest_gap is None else float(errors[np.nanargmax(gaps)])
     log.info("%d trajectories: %s", number, answer.sentence)
     joined = replace(
-        record, results=(*record.results, *results, *_own_results(record, answer, gap_error)), classical=answer
+        record,
+        results=(*record.results, *results, *_own_results(record, answer, gap_error)),
+        classical=answer,
     )
-    columns = [c for o, _ in observables for c in o.columns(plan.job.outline) if c.name in followed.pooled.rows]
+    columns = [
+        c for o, _ in observables for c in o.columns(plan.job.outline) if c.name in followed.pooled.rows
+    ]
     return judged(_with_columns(joined, columns, followed))
 
 
@@ -121,7 +128,7 @@ def _results(record: Record, meters: Sequence[ClassicalMeter], followed: Followe
             continue
         value, error = found[name]
         if value is None or not np.isfinite(value):
-            yield _without(record, figure, "no trajectory tells: it has no value at sharp edges or where none passed")
+            yield _without(record, figure, "no trajectory passed, or the force at sharp edges has no value")
         else:
             yield _result(record, figure, value, error)
 
@@ -160,7 +167,11 @@ def _own_results(record: Record, answer: Answer, gap_error: float | None) -> Ite
     """Actions along the path of the mean start, and how far the mean places come apart."""
     action, lagrangian, largest, opens = OWN_FIGURES
     way = answer.path
-    for figure, total in ((action, way.action), (lagrangian, way.lagrangian_action)):
+    for figure in (action, lagrangian):
+        if way is None:
+            yield _without(record, figure, answer.sentence)
+            continue
+        total = way.action if figure is action else way.lagrangian_action
         result = _result(record, figure, float(total[-1]), way.action_error)
         yield replace(result, error_parts={"step": way.action_error})
     if answer.largest_gap is None:
@@ -173,7 +184,9 @@ def _own_results(record: Record, answer: Answer, gap_error: float | None) -> Ite
         yield _result(record, opens, answer.opens, None)
 
 
-def _answer(record: Record, results: Sequence[Result], way: Path, number: int, gaps: Array, errors: Array) -> Answer:
+def _answer(
+    record: Record, results: Sequence[Result], way: Path, number: int, gaps: Array, errors: Array
+) -> Answer:
     """For which results F = m a is enough, and when the mean places come apart."""
     known = bool(np.isfinite(gaps).any())
     widest = int(np.nanargmax(gaps)) if known else 0
@@ -193,7 +206,9 @@ def _answer(record: Record, results: Sequence[Result], way: Path, number: int, g
         if kind == "not_enough":
             said.append(f"{mine.name} ({_figure(record, mine)} against {_figure(record, other)})")
     return Answer(
-        sentence=sentence(str(record.plan.job.accuracy), sorted_out["enough"], said, sorted_out["undecided"], number),
+        sentence=sentence(
+            str(record.plan.job.accuracy), sorted_out["enough"], said, sorted_out["undecided"], number
+        ),
         path=way,
         trajectories=number,
         largest_gap=float(gaps[widest]) if known else None,
@@ -205,7 +220,9 @@ def _answer(record: Record, results: Sequence[Result], way: Path, number: int, g
     )
 
 
-def sentence(accuracy: str, enough: list[str], not_enough: list[str], undecided: list[str], number: int) -> str:
+def sentence(
+    accuracy: str, enough: list[str], not_enough: list[str], undecided: list[str], number: int
+) -> str:
     """For which results F = m a is good enough, in one sentence."""
     parts = []
     if enough:
@@ -213,7 +230,9 @@ def sentence(accuracy: str, enough: list[str], not_enough: list[str], undecided:
     if not_enough:
         parts.append(f"is not good enough for {_listed(not_enough)}")
     if undecided:
-        parts.append(f"cannot be told from the quantum answer by {number} trajectories for {_listed(undecided)}")
+        parts.append(
+            f"cannot be told from the quantum answer by {number} trajectories for {_listed(undecided)}"
+        )
     return f"F = m a {'; '.join(parts)}." if parts else "No result of this job has a counterpart by F = m a."
 
 
@@ -227,8 +246,8 @@ def _figure(record: Record, result: Result) -> str:
     return record.plan.job.write(0.0 if result.value is None else result.value, result.dimension)
 
 
-def _refused(record: Record, way: Path, why: str) -> Record:
-    """The record where no trajectories can be drawn: the figures are there, and say why they have no value."""
+def _refused(record: Record, way: Path | None, why: str) -> Record:
+    """The record where no trajectories can be followed: the figures say why they have no value."""
     answer = Answer(f"F = m a is not compared: {why}.", way, 0, None, None, None)
     own = {result.name: result for result in _own_results(record, answer, None)}
     results = (own.get(f.name) or _without(record, f, why) for f in record.plan.job.classical_figures)

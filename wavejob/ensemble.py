@@ -65,14 +65,13 @@ def drawn(plan: Plan, number: int) -> Start:
 
 
 def follow(plan: Plan, start: Start, meters: Sequence[ClassicalMeter], times: Array) -> Followed:
-    """Trajectories from `start`, seen by the meters at `times`. Raises RunError where one meets edges without end."""
+    """Trajectories from `start`, seen by the meters at `times`. Raises RunError where one meets too many edges."""
     size = start.x.shape[1]
     watch = Watch(tuple({meter.place for meter in meters if meter.place is not None}), plan.axis.length)
     motion = _motion(plan, watch.places, watch.see)
     now = Trajectories.start(start.x.ravel(), start.p.ravel(), start.weight.ravel())
-    step = min(LONGER * first_step(motion, now, times), fastest(plan.job) / PER_CHANGE)
-    if motion.straight and not motion.landscape.depends_on_time:
-        step = math.inf
+    step = first_step(motion, now, times) * (1.0 if motion.exact else LONGER)
+    step = min(step, fastest(plan.job) / PER_CHANGE)
     absorbed = {layer.name: np.zeros(now.x.size) for layer in plan.hamiltonian.layers}
     rows = [_row(plan, meters, now, absorbed, size, float(times[0]))]
     for t, until in pairwise(times.tolist()):
@@ -141,7 +140,9 @@ def _mean_rate(endings: tuple[Ending, ...], low: float, high: float) -> Callable
         total = np.zeros(start.shape)
         for ending in endings:
             depth = ending.shape.depth
-            first, last = (low + depth - x if ending.side == "low" else x - (high - depth) for x in (start, stop))
+            first, last = (
+                low + depth - x if ending.side == "low" else x - (high - depth) for x in (start, stop)
+            )
             moved = np.abs(last - first) > 1e-6 * depth
             way = np.where(moved, last - first, 1.0)
             along = (ending.shape.integral(last) - ending.shape.integral(first)) / way
@@ -165,7 +166,12 @@ def _take(plan: Plan, absorbed: dict[str, Array], before: Trajectories, after: T
 
 
 def _row(
-    plan: Plan, meters: Sequence[ClassicalMeter], now: Trajectories, absorbed: dict[str, Array], size: int, t: float
+    plan: Plan,
+    meters: Sequence[ClassicalMeter],
+    now: Trajectories,
+    absorbed: dict[str, Array],
+    size: int,
+    t: float,
 ) -> dict[str, Array]:
     """What the meters say of all trajectories together, first, and of each group; (1 + GROUPS,) by name."""
     x, p, weight = (values.reshape(-1, size) for values in (now.x, now.p, now.weight))

@@ -39,8 +39,7 @@ class LevelsError(ValueError):
 class Levels:
     """Energies in rising order and residuals ||H psi - E psi||, shape (count,); states (count, points).
 
-    States are real, normalised to 1, and positive where, from the left, they first reach half of their largest
-    value.
+    States are real, normalised to 1, and positive where, from the left, they first reach half their maximum.
     """
 
     energies: Array
@@ -62,7 +61,9 @@ def lowest(axis: Axis, mass: float, potential: Potential, count: int) -> Levels:
         states = _carried(coarse, axis, states)
     energies, residuals, states = _sharpened(axis, mass, values, states, count)
     if np.any(residuals > np.maximum(CONVERGED * (energies - values.min()), 10 * _floor(axis, mass, values))):
-        raise LevelsError("the levels do not converge on this grid", "give other points or a smoother potential")
+        raise LevelsError(
+            "the levels do not converge on this grid", "give other points or a smoother potential"
+        )
     return Levels(energies, residuals, _signed(states) / math.sqrt(axis.spacing))
 
 
@@ -78,7 +79,7 @@ def apply_kinetic(axis: Axis, function: Callable[[Array], Array], states: Array)
 
 def applied(axis: Axis, mass: float, values: Array, states: Array) -> Array:
     """H on real states (..., points), with the potential `values` at the points."""
-    return apply_kinetic(axis, lambda k: k**2 / (2 * mass), states) + values * states
+    return np.asarray(apply_kinetic(axis, lambda k: k**2 / (2 * mass), states) + values * states)
 
 
 def residual(axis: Axis, mass: float, values: Array, state: Array) -> tuple[float, float]:

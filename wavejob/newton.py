@@ -128,6 +128,11 @@ class Motion:
         edges = [term.shape.breaks for term in self.landscape.terms]
         return all(breaks is not None and not np.any(breaks.kinks) for breaks in edges)
 
+    @property
+    def exact(self) -> bool:
+        """Whether steps of any length are exact: no force between edges, and edges that stay."""
+        return self.straight and not self.landscape.depends_on_time
+
     @cached_property
     def _scheme(self) -> tuple[tuple[float, ...], tuple[float, ...]]:
         if self.straight:
@@ -192,9 +197,9 @@ class Motion:
     def _first_passed(self, x: Array, trail: list[Array], t: Array, tau: Array) -> tuple[Array, Array]:
         """Number of the first edge passed on the way (-1 for none) and a time from `t` by which it was."""
         edge, latest = np.full(len(x), -1), np.zeros(len(x))
-        before = x[:, None] - self._edges(t)[0]
+        before = x[:, None] - self._all_places(t)
         for moment, place in zip(np.cumsum(self._scheme[0]), trail, strict=True):
-            after = place[:, None] - self._edges(t + moment * tau)[0]
+            after = place[:, None] - self._all_places(t + moment * tau)
             passed = ((before > 0) != (after > 0)) & (edge < 0)[:, None]
             if passed.any():
                 share = np.where(passed, np.abs(before) / (np.abs(before) + np.abs(after)), np.inf)
@@ -285,6 +290,16 @@ class Motion:
         places, heights = self._edges_at(0.0)
         return places[None], heights[None]
 
+    def _all_places(self, t: Array) -> Array:
+        """Places of all edges at the times `t`, shape (n or 1, edges)."""
+        return self._edges(t)[0] if self._resting is None else self._resting
+
+    @cached_property
+    def _resting(self) -> Array | None:
+        """Places of all edges, shape (1, edges), where none of them moves."""
+        moving = any(term.path is not None for term in self.landscape.terms if term.shape.breaks is not None)
+        return None if moving else self._edges_at(0.0)[0][None]
+
     def _edges_at(self, t: float) -> tuple[Array, Array]:
         """In an order that does not depend on t, corners of height 0 among them: steps end there as well."""
         sharp = [(term, term.shape.breaks) for term in self.landscape.terms if term.shape.breaks is not None]
@@ -303,7 +318,7 @@ class Motion:
         return place, np.where(outside, 0.0, height)
 
     def _places(self, t: Array, edge: Array) -> Array:
-        places, _ = self._edges(t)
+        places = self._all_places(t)
         rows = np.arange(len(t)) if len(places) > 1 else np.zeros(len(t), int)
         return np.asarray(places[rows, edge])
 

@@ -50,7 +50,7 @@ def gaussian(at: float, sigma: float, k: float, number: int, seed: int) -> Start
 
 
 def sampled(x: Array, psi: Array, number: int, seed: int) -> Start:
-    """`number` trajectories for a field at evenly spaced places. Raises WignerError where it is too involved."""
+    """`number` trajectories for a field at evenly spaced places. Raises WignerError where that is too hard."""
     places, momenta, wigner = function(x, psi)
     cell = (places[1] - places[0]) * (momenta[1] - momenta[0])
     total = float(np.abs(wigner).sum()) * cell
@@ -72,7 +72,9 @@ def points(number: int, seed: int) -> tuple[Array, Array]:
     """Points of the unit square, two arrays (GROUPS, number), evenly spread in each group."""
     shifts = np.random.default_rng(seed).random((2, GROUPS, 1))
     steps = np.arange(1, number + 1)
-    first, second = ((steps / PLASTIC**power + shift) % 1.0 for power, shift in zip((1, 2), shifts, strict=True))
+    first, second = (
+        (steps / PLASTIC**power + shift) % 1.0 for power, shift in zip((1, 2), shifts, strict=True)
+    )
     tiny = 0.5 / number / GROUPS  # keeps away from the infinite ends of a normal distribution
     return np.clip(first, tiny, 1 - tiny), np.clip(second, tiny, 1 - tiny)
 
@@ -91,7 +93,9 @@ def function(x: Array, psi: Array) -> tuple[Array, Array, Array]:
     extent = max(float(x[high] - x[low]), 4 * spacing)
     number = math.ceil(FINEST * 2 * reach * extent / (2 * math.pi)) | 1
     if number > MOST:
-        raise WignerError(f"the Wigner function would need {number} x {number} places, more than {MOST} x {MOST}")
+        raise WignerError(
+            f"the Wigner function would need {number} x {number} places, more than {MOST} x {MOST}"
+        )
     number = max(number, 65)
     places = np.linspace(x[low], x[high], number)
     step = float(places[1] - places[0])

@@ -19,7 +19,7 @@ MOST = 100
 
 
 class Levels(Observable):
-    """The lowest levels of the potential at the start time; those not bound depend on the ends of the grid."""
+    """The lowest levels of the potential at the start time; unbound ones depend on the ends of the grid."""
 
     name: Name = Field("levels", description="name in the outputs")
     count: Annotated[int, *whole(1, MOST)] = Field(5, description="how many, from the ground state up")
@@ -65,7 +65,7 @@ class StartLevel(Observable):
 
     def figures(self, outline: Outline) -> tuple[Column, ...]:
         return (
-            Column("eigenstate.energy", "energy", "energy of the initial state in the potential whose state it is"),
+            Column("eigenstate.energy", "energy", "energy of the initial state in its potential"),
             Column("eigenstate.residual", "energy", "norm of H psi - E psi of the initial state"),
         )
 

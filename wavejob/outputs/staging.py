@@ -42,7 +42,9 @@ def stage(record: Record) -> Scene:
         layers=_layers(plan, length),
         walls=(plan.axis.low * length, plan.axis.high * length) if plan.axis.transform == "sine" else (),
         detectors=tuple(
-            (o.name, o.x * length, "+" if o.toward == "+x" else "-") for o in job.observables if isinstance(o, Crossing)
+            (o.name, o.x * length, "+" if o.toward == "+x" else "-")
+            for o in job.observables
+            if isinstance(o, Crossing)
         ),
         regions=tuple(
             (o.name, o.start * length, o.stop * length) for o in job.observables if isinstance(o, Inside)
@@ -102,7 +104,12 @@ def drawn_potential(plan: Plan, times: Array) -> tuple[Array, Array]:
     tiny = 1e-9 * axis.length
     rows_x, rows_v = [], []
     for t in when:
-        edges = [p for term in landscape.terms if term.shape.breaks for p in term.shape.breaks.positions + term.shift(t)]
+        edges = [
+            p
+            for term in landscape.terms
+            if term.shape.breaks
+            for p in term.shape.breaks.positions + term.shift(t)
+        ]
         places = np.array([p for p in edges if axis.low < p < axis.high])
         x = np.sort(np.concatenate([even, places - tiny, places + tiny]))
         rows_x.append(x)
@@ -149,7 +156,7 @@ def _probabilities(record: Record, times: Array) -> tuple[tuple[str, Array], ...
 
 def _classical(record: Record, times: Array) -> Array | None:
     """The path of F = m a from the mean start, nan once it is absorbed; None where the job leaves it out."""
-    if record.classical is None:
+    if record.classical is None or record.classical.path is None:
         return None
     axis, way = record.plan.axis, record.classical.path
     x = way.x[np.searchsorted(way.times, times)]
