@@ -1,5 +1,8 @@
-"""The classical companion against closed forms. F = m a carries the Wigner function exactly in potentials up
-to the second power (E. Wigner, Phys. Rev. 40, 749 (1932)): there both answers agree to the statistical error."""
+"""The classical companion against closed forms.
+
+F = m a carries the Wigner function exactly in potentials up to the second power (E. Wigner, Phys. Rev. 40, 749,
+1932): there both answers agree to the statistical error.
+"""
 
 from __future__ import annotations
 
@@ -275,6 +278,28 @@ def test_tunnelling_opens_a_gap() -> None:
     assert "through.total" in answer.not_enough
     assert "norm.final" in answer.enough
     assert "is not good enough for" in answer.sentence
+
+
+def test_arrival_and_dwell_of_a_free_packet() -> None:
+    """The mean of (x - x_0) / v over the velocities is x / v (1 + (dv / v)^2 + 3 (dv / v)^4 ...); a region
+    d long holds a packet for d times the mean of 1 / v, whatever its width (textbook)."""
+    record = both(
+        """
+units: natural
+grid: {x: {from: -60, to: 60, points: 512}}
+packet: {gaussian: {at: -20, sigma: 4, wavenumber: 2}}
+evolve: {until: 28, step: 0.05, record: 0.1}
+observables:
+  - norm
+  - arrival: {name: detector, x: 10, toward: +x}
+  - dwell: {name: stay, from: -5, to: 5}
+classical: {trajectories: 1024}
+"""
+    )
+    slowed = 1 + 0.0625**2 + 3 * 0.0625**4
+    assert value(record, "classical.detector.mean") == pytest.approx(15 * slowed, abs=0.02)
+    assert value(record, "classical.stay.time") == pytest.approx(5 * slowed, abs=0.02)
+    assert value(record, "stay.time") == pytest.approx(5 * slowed, abs=0.02)
 
 
 def test_force_at_sharp_edges_has_no_value() -> None:

@@ -33,8 +33,8 @@ PATH_TOLERANCE = 1e-6  # of the length of the axis
 def with_companion(record: Record) -> Record:
     """The record with the columns and results of F = m a, and its expectations judged on them too.
 
-    Unchanged where the job says `classical: none`. Where trajectories cannot be drawn or followed, the figures
-    are there and say so: a run is not lost for that.
+    Unchanged where the job says `classical: none`. Where trajectories cannot be drawn or followed, the
+    figures are there and say so: a run is not lost for that.
     """
     plan = record.plan
     if isinstance(plan.job.keys.classical, str):

@@ -65,7 +65,7 @@ def drawn(plan: Plan, number: int) -> Start:
 
 
 def follow(plan: Plan, start: Start, meters: Sequence[ClassicalMeter], times: Array) -> Followed:
-    """Trajectories from `start`, seen by the meters at `times`. Raises RunError where one meets too many edges."""
+    """Trajectories from `start`, seen by the meters at `times`. RunError where one meets too many edges."""
     size = start.x.shape[1]
     watch = Watch(tuple({meter.place for meter in meters if meter.place is not None}), plan.axis.length)
     motion = _motion(plan, watch.places, watch.see)

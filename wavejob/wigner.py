@@ -50,7 +50,7 @@ def gaussian(at: float, sigma: float, k: float, number: int, seed: int) -> Start
 
 
 def sampled(x: Array, psi: Array, number: int, seed: int) -> Start:
-    """`number` trajectories for a field at evenly spaced places. Raises WignerError where that is too hard."""
+    """`number` trajectories for a field at evenly spaced places. WignerError where that is too hard."""
     places, momenta, wigner = function(x, psi)
     cell = (places[1] - places[0]) * (momenta[1] - momenta[0])
     total = float(np.abs(wigner).sum()) * cell
