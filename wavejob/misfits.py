@@ -7,7 +7,7 @@ from collections.abc import Iterator, Sequence
 
 from .grid import Axis
 from .job import Job
-from .misfit_terms import span, term_misfits
+from .misfit_terms import span, term_misfits, too_fine
 from .models import Item
 from .packets.base import Packet, PacketError
 from .packets.file import FilePacket
@@ -17,7 +17,7 @@ from .reading.quantities import QuantityError
 from .reading.validation import problem_at
 from .reading.yaml_tree import dotted
 from .results import Column
-from .settings import Absorb
+from .settings import MAX_POINTS, Absorb
 
 HEAD_ROOM = 1.25  # largest wave number of the grid over the largest of the packet, at the least
 FINEST = 1e-11  # a spacing, over the distance from 0, below which places lose their digits
@@ -101,11 +101,14 @@ def _grid(job: Job) -> Iterator[Problem]:
             "the grid is so far from 0 that its places lose their digits",
             "move 0 nearer to the grid",
         )
+    if keys.points or keys.spacing:
+        yield from too_fine(job, axis)
 
 
 def _edges(job: Job) -> Iterator[Problem]:
     axis, ends = axis_as_written(job), job.keys.edges.x
-    depths = [end.absorb if isinstance(end, Absorb) else 0.0 for end in (ends.low, ends.high)]
+    layers = [end for end in (ends.low, ends.high) if isinstance(end, Absorb)]
+    depths = [layer.absorb for layer in layers if isinstance(layer.absorb, float)]
     if sum(depths) > 0.8 * axis.length:
         taken, whole = job.write(sum(depths), "length"), job.write(axis.length, "length")
         said = f"the absorbing layers take {taken} of the {whole} of the grid"
@@ -138,19 +141,22 @@ def _packet(job: Job, packet: Packet, where: Key) -> Iterator[Problem]:
         )
     k = packet.widest_wavenumber(job.particle.mass)
     if k is not None and (keys.points or keys.spacing) and k * HEAD_ROOM > axis.k_max:
-        needed = math.ceil(k * HEAD_ROOM * axis.length / math.pi)
-        fix = (
-            f"give at least {needed} points"
-            if keys.points
-            else f"give at most {job.write(axis.length / needed, 'length')}"
-        )
         key = "points" if keys.points else "spacing"
         yield job.problem(
             ("grid", "x", key),
             f"the packet has wave numbers up to {job.write(k, 'wavenumber')}, the grid holds "
             f"{job.write(axis.k_max, 'wavenumber')}",
-            f"{fix}, or leave `{key}` out",
+            _finer(job, k * HEAD_ROOM * axis.length / math.pi, axis, key),
         )
+
+
+def _finer(job: Job, needed: float, axis: Axis, key: str) -> str:
+    """What to write for a grid of `needed` points."""
+    if needed > MAX_POINTS:
+        return "make the packet slower or wider, or the grid shorter"
+    points = math.ceil(needed)
+    what = f"{points} points" if key == "points" else job.write(axis.length / points, "length")
+    return f"give at {'least' if key == 'points' else 'most'} {what}, or leave `{key}` out"
 
 
 def _observables(job: Job) -> Iterator[Problem]:

@@ -95,8 +95,11 @@ class Quantity:
     above: float | None = None
     at_least: float | None = None
     at_most: float | None = None
+    word: str | None = None  # may stand instead of a quantity
 
-    def read(self, value: Any, reader: Reader) -> float:
+    def read(self, value: Any, reader: Reader) -> float | str:
+        if self.word is not None and value == self.word:
+            return self.word
         if isinstance(value, bool) or not isinstance(value, (int, float, str)):
             raise refuse(f"{shown(value)} is no quantity", f"write {self.wanted()}")
         try:
@@ -114,7 +117,8 @@ class Quantity:
         return number
 
     def wanted(self) -> str:
-        return "a number" if self.dimension == "number" else f"{phrase(self.dimension)} such as `{example(self.dimension)}`"
+        said = "a number" if self.dimension == "number" else f"{phrase(self.dimension)} such as `{example(self.dimension)}`"
+        return f"{said}, or `{self.word}`" if self.word else said
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> core_schema.CoreSchema:
         return core_schema.with_info_plain_validator_function(lambda value, info: self.read(value, info.context))

@@ -16,7 +16,7 @@ from .evolve.step_choice import choose_step, largest_step
 from .grid import Axis, Grid, fast_size
 from .hamiltonian import Hamiltonian, Layer
 from .job import Job
-from .limits import refuse_grid, refuse_run, refuse_steps
+from .limits import refuse_grid, refuse_run, refuse_spacings, refuse_steps
 from .misfit_terms import too_fine
 from .misfits import axis_as_written, exact_time
 from .observables.base import Bench
@@ -33,6 +33,8 @@ OVERSAMPLING = 8  # samples per shortest period of what is integrated over time
 SPARSEST = 256  # steps between samples at the most: to sample more often costs nothing then
 OUT_OF_REACH = 100  # times the error wanted: an estimate no run need be tried for
 ROUNDED = 1e-6  # estimated errors below this may be rounding
+DEEPEST, SHALLOWEST = 1e-9, 1e-5  # limits of what a layer whose depth is chosen may send back
+LONGEST_LAYER = 0.4  # of the axis
 TAIL = 1e-10  # probability left out of the range of wave numbers
 
 
@@ -131,7 +133,8 @@ def make_plan(job: Job, memory: int | None = None) -> Plan:
     splitting, longest, notes["step"] = _step(job, hamiltonian, psi)
     shortest = _sampling(job, hamiltonian, psi)
     step, steps, record, sample = _timetable(job, longest, shortest)
-    refuse_steps(job, step, steps)
+    refuse_steps(job, steps)
+    refuse_spacings(job, step)
     plan = Plan(job, axis, psi, hamiltonian, endings, splitting, step, steps, record, sample, notes)
     refuse_run(job, axis.points, plan.recorded, plan.sampled, plan.frames, step, memory)
     _refuse_unfit(plan)
@@ -262,29 +265,54 @@ def _refuse_unfit(plan: Plan) -> None:
 
 
 def _endings(job: Job, axis: Axis, psi: Array) -> tuple[Ending, ...]:
-    mass, found = job.particle.mass, []
-    k, weight = wave_numbers(axis, psi)
+    """The absorbing ends, each layer as deep as written, or as deep as the accuracy wanted needs."""
+    found = []
     for side in ("low", "high"):
         end = getattr(job.keys.edges.x, side)
-        if not isinstance(end, Absorb):
-            continue
-        if end.energies is not None:
-            momenta = Momenta.of_energies(end.energies.start, end.energies.stop, mass)
-        else:
-            momenta = _arriving(job, axis, k, weight, side)
-        shape = tuned(end.absorb, mass, momenta, axis.spacing)
-        found.append(Ending(side, shape, momenta, axis.spacing))
+        if isinstance(end, Absorb):
+            momenta = _arriving(job, axis, psi, side, end)
+            depth = end.absorb if isinstance(end.absorb, float) else _needed_depth(job, axis, momenta, side)
+            shape = tuned(depth, job.particle.mass, momenta, axis.spacing)
+            found.append(Ending(side, shape, momenta, axis.spacing))
     return tuple(found)
 
 
 def retuned(plan: Plan, axis: Axis) -> tuple[Ending, ...]:
     """The absorbing ends of a plan on another grid: the same depths, tuned anew."""
-    return _endings(plan.job, axis, initial_state(plan.job, axis))
+    job, psi, found = plan.job, initial_state(plan.job, axis), []
+    for ending in plan.endings:
+        momenta = _arriving(job, axis, psi, ending.side, getattr(job.keys.edges.x, ending.side))
+        shape = tuned(ending.shape.depth, job.particle.mass, momenta, axis.spacing)
+        found.append(Ending(ending.side, shape, momenta, axis.spacing))
+    return tuple(found)
 
 
-def _arriving(job: Job, axis: Axis, k: Array, weight: Array, side: str) -> Momenta:
-    """The wave numbers that may come to one end: the packet's, turned back or let through, at the end's potential."""
+def _needed_depth(job: Job, axis: Axis, momenta: Momenta, side: str) -> float:
+    """The depth that sends back so little that it changes probabilities by less than the accuracy wanted.
+
+    A share R that comes back changes a probability by up to 2 sqrt(R) times the amplitude it meets, which is
+    small by then: 2 accuracy^2 leaves room for a tenth.
+    """
+    limit = min(max(2 * job.accuracy.first**2, DEEPEST), SHALLOWEST)
+    depth = recommended_depth(job.particle.mass, momenta, axis.spacing, limit)
+    if depth > LONGEST_LAYER * axis.length:
+        fix = "give `energies:` of what it must absorb, extend the grid, or give a depth"
+        if math.isfinite(depth):
+            wanted = job.write(depth, "length")
+            said = f"a layer at x.{side} that sends back less than {limit:.0e} needs {wanted}, too much of this grid"
+        else:
+            said = f"no layer at x.{side} absorbs waves as slow as some of this packet's"
+        raise JobFileError([job.problem(("edges", "x"), said, fix)])
+    return depth
+
+
+def _arriving(job: Job, axis: Axis, psi: Array, side: str, end: Absorb) -> Momenta:
+    """The wave numbers that may come to one end: those of the energies given, or the packet's, turned back or let
+    through, at the end's potential."""
     mass, landscape, start = job.particle.mass, job.landscape, job.evolve.start
+    if end.energies is not None:
+        return Momenta.of_energies(end.energies.start, end.energies.stop, mass)
+    k, weight = wave_numbers(axis, psi)
     if not landscape.terms:
         return Momenta.of_density(k, weight, "low" if side == "low" else "high")
     extent = job.packet.extent()
@@ -307,6 +335,7 @@ def _step(job: Job, hamiltonian: Hamiltonian, psi: Array) -> tuple[Splitting, fl
     accuracy = job.accuracy.first
     duration = evolve.until - evolve.start
     choice = choose_step(hamiltonian, psi, evolve.start, duration, accuracy, orders)
+    refuse_steps(job, duration / choice.step)
     if choice.error > max(OUT_OF_REACH * accuracy, ROUNDED):
         said = f"errors of {min(choice.error, 1.0):.1g} are left even with a step of {job.write(choice.step, 'time')}"
         fix = "make the potential or its changes in time gentler, or write a `step` to go on all the same"

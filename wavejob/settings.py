@@ -21,6 +21,7 @@ from .models import (
     Model,
     Name,
     PositiveEnergy,
+    Quantity,
     Time,
     in_order,
     refuse,
@@ -89,7 +90,9 @@ class Energies(Model):
 class Absorb(Model):
     """An absorbing layer (Manolopoulos 2002)."""
 
-    absorb: Extent = Field(description="depth of the layer, measured inwards from the end")
+    absorb: Annotated[float | Literal["auto"], Quantity("length", above=0, word="auto")] = Field(
+        description="depth of the layer, measured inwards from the end; `auto`: as deep as the accuracy needs"
+    )
     energies: Energies | None = Field(None, description="kinetic energies it must absorb; left out: the packet's")
 
 

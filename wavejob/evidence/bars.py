@@ -17,6 +17,9 @@ Array = np.ndarray
 SMOOTH = 1.0  # times the difference to a coarser companion; by trial on the catalogue in tests/truth
 SHARP = 2.0  # the same where the potential has sharp edges: errors then shrink less regularly
 FINER = 1.5  # times the difference to a finer companion, which is itself not free of error
+KIN = 0.1  # of the largest difference over value of all probabilities, below which none counts: one of them may pass
+# through zero where two errors cancel, while those of its kin do not
+TRACE = 1e-3
 HOPELESS = 0.5  # of the scale: a difference beyond this is no error bar
 LEFT = 0.5  # probability on the grid at the end, below which mean values of the rest do not count
 NEIGHBOURS = 2  # rows on both sides whose largest difference counts: a difference that changes sign is not small
@@ -64,10 +67,11 @@ def weight(record: Record, *, coarser: bool = True) -> float:
 def with_bars(record: Record, differences: Sequence[Difference], *, recording: bool = True) -> Record:
     """`record` with the error of every result, column and curve: the sum of all parts."""
     floor = record.norm_drift + 1e-15
+    shared = {d.part: 0.0 if d.skips else _largest_share(record, d) for d in differences}
     series = floor * np.maximum(np.abs(record.series), _scales(record))
     return replace(
         record,
-        results=tuple(_barred(record, result, differences, recording) for result in record.results),
+        results=tuple(_barred(record, result, differences, shared, recording) for result in record.results),
         series_errors=series + sum(d.of_series() for d in differences),
         curve_errors={curve.name: _curve_errors(curve, differences, floor) for curve in record.curves},
     )
@@ -109,11 +113,28 @@ def counted(record: Record) -> list[Result]:
     ]
 
 
-def _barred(record: Record, result: Result, differences: Sequence[Difference], recording: bool) -> Result:
+def _is_probability(result: Result) -> bool:
+    return result.dimension == "number" and result.name.partition(".")[2] not in ("drift", "position", "momentum")
+
+
+def _largest_share(record: Record, difference: Difference) -> float:
+    """The largest difference over value of all probabilities that are no mere trace."""
+    shares = [
+        (difference.of(r.name) or 0.0) / abs(r.value)
+        for r in record.results
+        if r.value is not None and _is_probability(r) and abs(r.value) > TRACE
+    ]
+    return max(shares, default=0.0)
+
+
+def _barred(
+    record: Record, result: Result, differences: Sequence[Difference], shared: dict[str, float], recording: bool
+) -> Result:
     if result.value is None:
         return result
     found = {d.part: d.of(result.name) for d in differences}
-    parts = {part: value for part, value in found.items() if value is not None}
+    least = {d.part: KIN * shared[d.part] * abs(result.value) * _is_probability(result) for d in differences}
+    parts = {part: max(value, least[part]) for part, value in found.items() if value is not None}
     if len(parts) < len(found):
         return replace(result, error_status="not_converging", note="a companion run has no such value")
     scale = result.scale or 1.0

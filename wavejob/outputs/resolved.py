@@ -31,6 +31,8 @@ def write_resolved(path: Path, plan: Plan) -> None:
     axis = resolved["grid"]["x"]
     axis.pop("spacing", None)
     axis["points"] = plan.axis.points
+    for ending in plan.endings:
+        resolved["edges"]["x"][ending.side]["absorb"] = _quantity(ending.shape.depth, "length", job.units)
     evolve = resolved["evolve"]
     evolve.pop("accuracy", None)
     evolve["step"] = _quantity(plan.step, "time", job.units)
