@@ -22,14 +22,15 @@ potential:
   - POTENTIAL
 edges: {x: {absorb: 80}}
 packet: {gaussian: {at: -60, sigma: 3, wavenumber: 1.2}}
-evolve: {until: 450, step: 0.025}
+evolve: {until: 600, step: 0.025}
 film: none
+error_bars: {box: no}
 observables:
-  - transmission: {name: T, x: 20, energies: {from: 0.2, to: 1.6, points: 57}}
-  - transmission: {name: near, x: 1.5, energies: {from: 0.2, to: 1.6, points: 57}}
+  - transmission: {name: T, x: 20, energies: {from: 0.3, to: 1.7, points: 57}}
+  - transmission: {name: near, x: 1.5, energies: {from: 0.3, to: 1.7, points: 57}}
 """
 BARRIER = SHARP.replace("POTENTIAL", "barrier: {from: 0, to: 2, height: 1}")
-STEP = SHARP.replace("POTENTIAL", "step: {at: 0, height: 0.3}").replace("from: 0.2, to: 1.6", "from: 0.35, to: 1.75")
+STEP = SHARP.replace("POTENTIAL", "step: {at: 0, height: 0.3}").replace("from: 0.3, to: 1.7", "from: 0.4, to: 1.8")
 
 SMOOTH = """
 units: natural
@@ -38,10 +39,11 @@ potential:
   - POTENTIAL
 edges: {x: {absorb: 60}}
 packet: {gaussian: {at: -50, sigma: 3, wavenumber: 1.25}}
-evolve: {until: 400, step: 0.02}
+evolve: {until: 500, step: 0.02}
 film: none
+error_bars: {box: no}
 observables:
-  - transmission: {name: T, x: 30, energies: {from: 0.2, to: 1.6, points: 57}, peaks: 0}
+  - transmission: {name: T, x: 30, energies: {from: 0.3, to: 2.3, points: 51}, peaks: 0}
 """
 TOP = SMOOTH.replace("POTENTIAL", "sech2: {at: 0, width: 1, height: 1}")
 ASYMMETRIC = SMOOTH.replace("POTENTIAL", "eckart: {at: 0, width: 0.5, A: -0.4, B: 4}")
@@ -73,8 +75,8 @@ def test_a_step_counts_the_ratio_of_velocities() -> None:
     """T = 4 k k' / (k + k')^2 (Landau and Lifshitz, section 25, problem 1), to a lower velocity beyond."""
     k, after = np.sqrt(2 * energies(STEP)), np.sqrt(2 * (energies(STEP) - 0.3))
     wanted = 4 * k * after / (k + after) ** 2
-    within_bars(STEP, "T", "T", wanted)
-    within_bars(STEP, "T", "R", 1 - wanted)
+    within_bars(STEP, "T", "T", wanted, 1e-2)
+    within_bars(STEP, "T", "R", 1 - wanted, 1e-2)
 
 
 def test_the_phase_of_a_step_is_that_of_the_wave_at_the_detector() -> None:
@@ -137,12 +139,13 @@ def test_bars_widen_where_the_packet_has_no_weight() -> None:
 RESONANCE = """
 units: {length: nm, time: fs, energy: meV}
 particle: {mass: 0.067 electron_mass}
-grid: {x: {from: -260, to: 200, points: 1840}}
+grid: {x: {from: -260, to: 200, points: 920}}
 potential: [{barrier: {from: 0, to: 3, height: 300}}, {barrier: {from: 8, to: 11, height: 300}}]
 edges: {x: {absorb: 100}}
 packet: {gaussian: {at: -40, sigma: 5, energy: 92 meV, toward: +x}}
-evolve: {until: 2400, step: 0.1}
+evolve: {until: 2400, step: 0.08}
 film: none
+error_bars: {box: no}
 observables:
   - transmission: {name: T, x: 40, energies: {from: 75, to: 105, points: 61}}
   - transmission: {name: well, x: 5.25, energies: {from: 75, to: 105, points: 61}}
@@ -179,7 +182,7 @@ def test_a_resonance_seen_from_beyond_and_from_the_well(name: str) -> None:
 
 def test_a_run_that_ends_before_the_resonance_has_rung_down_says_so() -> None:
     """The lifetime is 140 fs: after 300 fs of ringing much is still inside, and the bars hold it."""
-    run = exact.record(RESONANCE.replace("until: 2400", "until: 450"))
+    run = exact.record(RESONANCE.replace("until: 2400", "until: 480"))
     check = next(check for check in run.checks if check.name == "T: run length")
     assert not check.passed
     assert "`evolve.until`" in check.advice
@@ -217,9 +220,9 @@ def test_a_packet_from_the_other_side() -> None:
         ("x: 20,", "x: -30,", "between the start and the structure", "beyond"),
         ("x: 20,", "x: -61,", "starts beyond the detector", "move one"),
         ("at: -60", "at: -8", "not flat where the packet starts", "farther"),
-        ("wavenumber: 1.2", "wavenumber: -1.2", "energies", "give the packet another energy"),
+        ("wavenumber: 1.2", "wavenumber: -1.2", "nothing of the packet moves", "turn"),
         ("barrier: {from: 0", "barrier: {from: -100, to: -99, height: 1}\n  - barrier: {from: 0", "behind the start", "flat"),
-        ("from: 0.2, to: 1.6", "from: 4.2, to: 5.6", "holds only energies from", "ask for those"),
+        ("from: 0.3, to: 1.7", "from: 4.2, to: 5.6", "holds only energies from", "ask for those"),
         ("height: 1}", "height: 1}\n    in_time: {sine: {amplitude: 1, frequency: 1}}", "changes in time", "crossing"),
     ],
 )
@@ -235,8 +238,8 @@ def test_what_cannot_be_had_is_refused_with_place_and_cure(old: str, new: str, s
 
 
 def test_energies_of_which_there_is_too_little_stay_empty_and_are_told_before() -> None:
-    text = BARRIER.replace("from: 0.2, to: 1.6", "from: 0.2, to: 9")
-    plan = make_plan(parse(text.replace("until: 450", "until: 10")))
+    text = BARRIER.replace("from: 0.3, to: 1.7", "from: 0.3, to: 9")
+    plan = make_plan(parse(text.replace("until: 600", "until: 10")))
     said = [p for p in doubts(plan) if "stay without a value" in p.message]
     assert said
     assert said[0].severity == "warning"

@@ -17,27 +17,31 @@ NOTHING = 1e-14  # probability left that is not worth following
 class Remainder:
     """The integral from the end of the run to infinity of psi(x, t) e^(iEt), t from the start of the run.
 
-    It is i (E - H)^(-1) psi(end) e^(iE(end - start)): one tridiagonal system an energy, with outgoing waves
-    at both ends of `span`. Second order in the cells, so good to about a per cent: it serves error bars.
+    It is i (E - H)^(-1) psi(end) e^(iE(end - start)): one tridiagonal system an energy, absorbing layers
+    included, with outgoing waves at both ends. Second order in the cells, so good to about a per cent: it
+    serves error bars.
     """
 
-    def __init__(self, bench: Bench, psi: Array, t: float, span: tuple[float, float], highest: float) -> None:
-        """The state psi (points,) at time t is followed within `span`, at energies up to `highest`."""
+    def __init__(self, bench: Bench, psi: Array, t: float, highest: float) -> None:
+        """The state psi (points,) at time t is followed at energies up to `highest`."""
         from scipy.interpolate import make_interp_spline
 
         axis = bench.axis
-        within = (axis.x > span[0]) & (axis.x < span[1])
-        self.empty = float(np.sum(np.abs(psi[within]) ** 2) * axis.spacing) < NOTHING
+        self.empty = float(np.sum(np.abs(psi) ** 2) * axis.spacing) < NOTHING
         self.mass, self.duration = bench.mass, t - bench.start
-        deepest = float(bench.landscape.value(axis.x[within], t).min())
+        deepest = float(bench.landscape.value(axis.x, t).min())
         fastest = np.sqrt(2 * bench.mass * max(highest - deepest, 1e-300))
-        cells = int(np.clip(FINENESS * fastest * (span[1] - span[0]), 4 * within.sum(), LARGEST))
-        self.h = (span[1] - span[0]) / cells
-        self.x = span[0] + (np.arange(cells) + 0.5) * self.h
+        cells = int(np.clip(FINENESS * fastest * axis.length, 4 * axis.points, LARGEST))
+        self.h = axis.length / cells
+        self.x = axis.low + (np.arange(cells) + 0.5) * self.h
         if self.empty:
             return
         inside = (np.arange(WITHIN_CELL) + 0.5) / WITHIN_CELL - 0.5
-        self.potential = np.mean([bench.landscape.value(self.x + s * self.h, t) for s in inside], axis=0)
+        taken = np.zeros(axis.points)
+        for layer in bench.hamiltonian.layers:
+            taken[layer.first : layer.first + layer.rate.size] = layer.rate
+        averaged = np.mean([bench.landscape.value(self.x + s * self.h, t) for s in inside], axis=0)
+        self.potential = averaged - 1j * np.interp(self.x, axis.x, taken)
         self.source = 1j * make_interp_spline(axis.x, psi, k=5)(self.x)
 
     def at(self, energies: Array, places: tuple[float, ...]) -> Array:
@@ -79,8 +83,10 @@ class Remainder:
         return here + away * first + away**2 / 2 * second, (first + away * second) / self.h
 
 
-def _outgoing(turn: float) -> complex:
+def _outgoing(turn: complex) -> complex:
     """e^(iqh) of the wave that leaves, or dies away, where cos(qh) = `turn`."""
-    if abs(turn) <= 1:
-        return complex(turn, np.sqrt(1 - turn**2))
-    return complex(turn - np.sign(turn) * np.sqrt(turn**2 - 1))
+    root = complex(np.sqrt(turn**2 - 1 + 0j))
+    first, second = turn + root, turn - root
+    if abs(abs(first) - abs(second)) < 1e-12:  # both run on for ever: the one that moves outwards
+        return first if first.imag > 0 else second
+    return first if abs(first) < abs(second) else second

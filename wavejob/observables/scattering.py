@@ -65,7 +65,7 @@ class TransmissionMeter(Meter):
     @cached_property
     def remainder(self) -> Remainder:
         """What has not passed the places at the end of the run."""
-        return Remainder(self.bench, self.last, self.ended, self.approach.span, float(self.energies[-1]))
+        return Remainder(self.bench, self.last, self.ended, float(self.energies[-1]))
 
     @cached_property
     def asked_flow(self) -> tuple[Flow, Flow, Incoming]:
