@@ -8,9 +8,11 @@ from pathlib import Path
 
 import pytest
 
-from wavejob import reference
+from wavejob import checks, job, plan, reference, wigner
+from wavejob.evidence import assess, bars, companions
 from wavejob.loading import parse
 from wavejob.outputs.folder import OWNER
+from wavejob.reading import merging
 from wavejob.run import run_job
 
 PAGES = Path(reference.__file__).parent
@@ -79,3 +81,28 @@ def test_every_part_of_an_error_is_described(folder: Path) -> None:
     parts = {part for result in results.values() for part in result["error_parts"]}
     assert {"rounding", "recording", "run length"} < parts
     assert [part for part in parts if f"`{part}`" not in page] == []
+
+
+@pytest.mark.parametrize(
+    ("page", "said", "value"),
+    [
+        ("error-bars", r"factor (\S+) for smooth", bars.SMOOTH),
+        ("error-bars", r"smooth potentials, (\S+) where there are sharp edges", bars.SHARP),
+        ("error-bars", r"finer and the factor (\S+)\. ", bars.FINER),
+        ("error-bars", r"and (\S+) of the points", round(companions.COARSER_POINTS, 1)),
+        ("error-bars", r"more than (\S+) of the accuracy", assess.EDGE_SHARE),
+        ("error-bars", r"a grid (\S+) % longer", 100 * companions.EXTENSION),
+        ("grid-ends", r"judged against\s(\S+);", checks.REFLECTION_LIMIT),
+        ("grid-ends", r"more than (\S+) is in the outermost", checks.EDGE_LIMIT),
+        ("verdict", r"more than (\S+) of the packet is beyond 0.8", checks.HEAD_ROOM_LIMIT),
+        ("verdict", r"beyond (\S+) of the largest that the points", checks.RESOLVED),
+        ("bases", r"(\d+) files below", merging.LONGEST_CHAIN),
+        ("choices", r"`evolve.accuracy` \| (\S+) \|", job.DEFAULT_ACCURACY),
+        ("choices", r"about (\d+) rows", plan.ROWS),
+        ("choices", r"about (\d+) frames", plan.FRAMES),
+        ("classical-companion", r"spread of (\d+) groups", wigner.GROUPS),
+    ],
+)
+def test_numbers_are_those_of_the_code(page: str, said: str, value: float) -> None:
+    (number,) = re.findall(said, reference.text(page))
+    assert float(number) == pytest.approx(value)
