@@ -1,4 +1,4 @@
-"""What is refused before anything large is begun: more memory than there is, more steps than anyone waits for."""
+"""What is refused before anything large is begun: more memory than there is, endless runs."""
 
 from __future__ import annotations
 
@@ -35,7 +35,7 @@ class Need:
 
 
 def refuse_grid(job: Job, points: int, allowed: int | None = None) -> None:
-    """Raises JobFileError where a grid of `points` does not fit in `allowed` bytes (default: what there is)."""
+    """Raises JobFileError where `points` do not fit in `allowed` bytes (default: what there is)."""
     _refuse(job, [grid_need(job, points)], allowed)
 
 
@@ -45,21 +45,35 @@ def grid_need(job: Job, points: int) -> Need:
     key = "points" if keys.points else "spacing" if keys.spacing else ""
     where: Key = ("grid", "x", key) if key else ("grid", "x")
     chosen = "" if key else ", as many as the packet and the potential ask for,"
-    return Need(POINT_BYTES * points, f"{points} points{chosen}", where, "take fewer points" if key else "shorten the grid")
+    cure = "take fewer points" if key else "shorten the grid"
+    return Need(POINT_BYTES * points, f"{points} points{chosen}", where, cure)
 
 
-def refuse_steps(job: Job, step: float, steps: int) -> None:
-    """Raises JobFileError where there are more steps than anyone waits for, or too few for what is wanted of them."""
+def refuse_steps(job: Job, steps: float) -> None:
+    """Raises JobFileError where there are more steps than anyone waits for."""
     if steps > MOST_STEPS:
-        key: Key = ("evolve", "step") if job.evolve.step is not None else ("evolve", "until")
-        cure = "take a larger step" if job.evolve.step is not None else "end it earlier, or ask for less accuracy"
+        key, cure = _cause(job)
         said = f"the run has {steps:.1e} steps, which take {_years(steps * STEP_SECONDS)} at the least"
         raise JobFileError([job.problem(key, said, cure)])
-    short = [(key, every) for key, every in _spacings(job) if every < 0.999 * step]
+
+
+def refuse_spacings(job: Job, step: float) -> None:
+    """Raises JobFileError where less than a step lies between two frames, stored fields or densities."""
+    short = [key for key, every in _spacings(job) if every < 0.999 * step]
     if short:
         said = f"this is shorter than a time step, {job.write(step, 'time')}"
         fix = "take a longer time, or fix a shorter `evolve.step`"
-        raise JobFileError([job.problem(key, said, fix) for key, _ in short])
+        raise JobFileError([job.problem(key, said, fix) for key in short])
+
+
+def _cause(job: Job) -> tuple[Key, str]:
+    """The key that makes a run so long, and what to do about it."""
+    evolve = job.evolve
+    if evolve.step is not None:
+        return ("evolve", "step"), "take a larger step"
+    if evolve.record is not None and (evolve.until - evolve.start) / evolve.record > MOST_STEPS:
+        return ("evolve", "record"), "record less often"
+    return ("evolve", "until"), "end it earlier, or ask for less accuracy"
 
 
 def _spacings(job: Job) -> Iterator[tuple[Key, float]]:
@@ -74,11 +88,28 @@ def _spacings(job: Job) -> Iterator[tuple[Key, float]]:
 
 
 def refuse_run(
-    job: Job, points: int, recorded: Schedule, sampled: Schedule, frames: Schedule | None, step: float, allowed: int | None
+    job: Job,
+    points: int,
+    recorded: Schedule,
+    sampled: Schedule,
+    frames: Schedule | None,
+    step: float,
+    allowed: int | None,
 ) -> None:
     """Raises JobFileError where what a run keeps does not fit in `allowed` bytes (default: what there is)."""
-    needs = [grid_need(job, points), *_kept(job, points, recorded, sampled, frames, step)]
-    _refuse(job, needs, allowed)
+    _refuse(job, needs(job, points, recorded, sampled, frames, step), allowed)
+
+
+def needs(
+    job: Job, points: int, recorded: Schedule, sampled: Schedule, frames: Schedule | None, step: float
+) -> list[Need]:
+    """The memory for all that a run holds and keeps."""
+    return [grid_need(job, points), *_kept(job, points, recorded, sampled, frames, step)]
+
+
+def total(needs: list[Need]) -> float:
+    """Bytes for all of `needs` and for the program itself."""
+    return BYTES_TO_START + sum(need.size for need in needs)
 
 
 def _kept(
@@ -90,10 +121,17 @@ def _kept(
     yield Need(rows * ROW_BYTES * (1 + len(job.columns)), f"{rows} recorded times", key, "record less often")
     users = sum(item.kind in SAMPLED for item in job.keys.observables or [])
     samples = _count(sampled)
-    yield Need(samples * SAMPLE_BYTES * users, f"{samples} samples of integrals over time", ("observables",), "drop some")
+    yield Need(
+        samples * SAMPLE_BYTES * users,
+        f"{samples} samples of integrals over time",
+        ("observables",),
+        "drop some",
+    )
     if frames is not None:
         count, kept = _count(frames), min(points, FRAME_POINTS)
-        yield Need(count * kept * FRAME_BYTES, f"{count} frames of the film", ("film", "every"), "take fewer frames")
+        yield Need(
+            count * kept * FRAME_BYTES, f"{count} frames of the film", ("film", "every"), "take fewer frames"
+        )
     if job.keys.snapshots is not None:
         count = _count(_every(job.keys.snapshots.every, step, recorded.last))
         what = f"{count} stored fields of {points} points"
@@ -117,17 +155,17 @@ def _count(schedule: Schedule) -> int:
 
 def _refuse(job: Job, needs: list[Need], allowed: int | None) -> None:
     limit = memory() if allowed is None else allowed
-    total = BYTES_TO_START + sum(need.size for need in needs)
-    if total > limit:
+    if total(needs) > limit:
         most = max(needs, key=lambda need: need.size)
-        raise JobFileError([_too_much(job, most, total, limit)])
+        raise JobFileError([_too_much(job, most, total(needs), limit)])
 
 
-def _too_much(job: Job, most: Need, total: float, limit: int) -> Problem:
+def _too_much(job: Job, most: Need, taken: float, limit: int) -> Problem:
     said = f"{most.what} take {readable(most.size)} of memory"
-    if total > 1.1 * most.size:
-        said += f", and the job {readable(total)} in all"
-    return job.problem(most.key, f"{said}, but {readable(limit)} may be used", f"{most.cure}, or allow more with --memory")
+    if taken > 1.1 * most.size:
+        said += f", and the job {readable(taken)} in all"
+    said += f", but {readable(limit)} may be used"
+    return job.problem(most.key, said, f"{most.cure}, or allow more with --memory")
 
 
 def readable(size: float) -> str:

@@ -11,10 +11,11 @@ from .grid import Axis
 from .job import Job
 from .problems import Problem
 from .reading.merging import Key
+from .settings import MAX_POINTS
 from .shapes import Term
 from .time_shapes import TimeShape
 
-LARGEST = 1e100  # of a potential or a function of time: its square and its products are numbers still
+LARGEST = 1e60  # of a potential or a function of time: its square and its products are numbers still
 PLACES, TIMES, INSTANTS = 2001, 2001, 41  # looked at: along x, along t, and along t for all x at once
 
 
@@ -38,6 +39,18 @@ def term_misfits(job: Job, axis: Axis) -> Iterator[Problem]:
             yield job.problem(where, *wrong)
         elif not of_time:
             yield from _term(job, where, item.term(job.setting), axis)
+
+
+def too_fine(job: Job, axis: Axis) -> Iterator[Problem]:
+    """Details of the potential that the points of `axis` cannot show."""
+    for index, item in enumerate(job.keys.potential):
+        detail = item.body.detail()
+        if detail is None or detail[1] >= axis.spacing:
+            continue
+        points = math.ceil(axis.length / detail[1])
+        said = f"this is finer than the grid, whose points are {job.write(axis.spacing, 'length')} apart"
+        fix = f"give at least {points} points, or a wider one" if points <= MAX_POINTS else "give a wider one"
+        yield job.problem(("potential", index, item.kind, detail[0]), said, fix)
 
 
 def _in_time(job: Job, key: Key, shape: TimeShape) -> Iterator[Problem]:

@@ -21,11 +21,12 @@ SMALLEST = 2.0**-14  # of the coarsest step: where accuracy is beyond reach, rou
 
 @dataclass(frozen=True)
 class StepChoice:
-    """A splitting, the longest step it may take, and why."""
+    """A splitting, the longest step it may take, why, and the estimated error in probabilities."""
 
     splitting: Splitting
     step: float
     reason: str
+    error: float
 
 
 def largest_step(hamiltonian: Hamiltonian) -> float:
@@ -62,8 +63,12 @@ def choose_step(
             # The order is read off what halving does, not assumed; never less than halve, never more than 8 times.
             step /= min(max((error / accuracy) ** (1 / splitting.order), 2.0), 8.0) if error > accuracy else 2
         limited = "the kinetic phase of pi" if step == longest else f"an estimated error of {error:.1e}"
-        choices.append(StepChoice(splitting, step, f"order {splitting.order}, step limited by {limited}"))
-    return min(choices, key=lambda choice: choice.splitting.stages / choice.step)
+        reason = f"order {splitting.order}, step limited by {limited}"
+        choices.append(StepChoice(splitting, step, reason, error if math.isfinite(error) else math.inf))
+    good = [choice for choice in choices if choice.error <= accuracy]
+    if not good:
+        return min(choices, key=lambda choice: choice.error)
+    return min(good, key=lambda choice: choice.splitting.stages / choice.step)
 
 
 def _trial_packets(hamiltonian: Hamiltonian, psi: Array) -> Array:

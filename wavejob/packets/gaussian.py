@@ -10,12 +10,25 @@ from pydantic import Field, GetJsonSchemaHandler, model_validator
 from pydantic.json_schema import JsonSchemaValue
 
 from ..grid import Axis
-from ..models import Angle, Extent, Length, Model, Momentum, Number, PositiveEnergy, Velocity, Wavenumber, refuse
+from ..models import (
+    Angle,
+    Extent,
+    Length,
+    Model,
+    Momentum,
+    Number,
+    PositiveEnergy,
+    Velocity,
+    Wavenumber,
+    refuse,
+)
 from ..potentials.base import Toward, sign
 from .base import Array, Packet, PacketError, Surroundings, normalised, waves
 
 LEAST_LEFT = 1e-10  # of the probabilities of a sum's packets, below which they are said to cancel
-ROOM = 6.0  # standard deviations a packet needs on both sides, in place and in wave number: 2e-9 is left outside
+ROOM = (
+    6.0  # standard deviations a packet needs on both sides, in place and in wave number: 2e-9 is left outside
+)
 
 
 class GaussianPacket(Packet):
@@ -34,7 +47,9 @@ class GaussianPacket(Packet):
     @model_validator(mode="after")
     def _one_motion(self) -> GaussianPacket:
         given = [
-            name for name in ("energy", "wavenumber", "momentum", "velocity") if getattr(self, name) is not None
+            name
+            for name in ("energy", "wavenumber", "momentum", "velocity")
+            if getattr(self, name) is not None
         ]
         if len(given) > 1:
             listed = " and ".join(f"`{name}`" for name in given)
@@ -71,7 +86,9 @@ def overlaps(packets: Sequence[GaussianPacket], mass: float) -> Array:
     # Phases are counted from the first packet of a pair, which keeps them small.
     middle = -narrow * apart / total
     phase = turning * middle + k * apart
-    size = np.sqrt(2 * np.sqrt(product) / total) * np.exp(-product / total * apart**2 - turning**2 / (4 * total))
+    size = np.sqrt(2 * np.sqrt(product) / total) * np.exp(
+        -product / total * apart**2 - turning**2 / (4 * total)
+    )
     return np.asarray(size * np.exp(1j * phase))
 
 
@@ -104,19 +121,28 @@ class SumPacket(Packet):
             raise refuse("all weights of the sum are 0", "give one packet a weight")
         return self
 
+    @property
+    def amplitudes(self) -> Array:
+        """Complex amplitudes of the packets, the largest of modulus 1."""
+        weights = np.array([part.weight for part in self.parts])
+        return np.asarray(
+            weights / np.abs(weights).max() * np.exp(1j * np.array([part.phase for part in self.parts]))
+        )
+
     def field(self, axis: Axis, surroundings: Surroundings) -> Array:
         total = np.zeros(axis.points, complex)
-        for part in self.parts:
+        for part, amplitude in zip(self.parts, self.amplitudes, strict=True):
             one = part.gaussian
-            amplitude = part.weight * np.exp(1j * part.phase)
             total += amplitude * waves(axis.x, one.at, one.sigma, one.mean_wavenumber(surroundings.mass))
         return normalised(total, axis)
 
     def check(self, mass: float) -> None:
-        amplitudes = np.array([part.weight * np.exp(1j * part.phase) for part in self.parts])
+        amplitudes = self.amplitudes
         norm = (amplitudes.conj() @ overlaps([part.gaussian for part in self.parts], mass) @ amplitudes).real
         if not norm > LEAST_LEFT * np.sum(np.abs(amplitudes) ** 2):
-            raise PacketError("the packets of the sum cancel each other", "change a weight, a phase or a packet")
+            raise PacketError(
+                "the packets of the sum cancel each other", "change a weight, a phase or a packet"
+            )
 
     def extent(self) -> tuple[float, float]:
         extents = [part.gaussian.extent() for part in self.parts]

@@ -32,6 +32,10 @@ class Potential(Model):
         """Value and slope as functions of x and t in scaled units."""
         raise NotImplementedError
 
+    def detail(self) -> tuple[str, float] | None:
+        """The key and the size of the finest detail, which must not be finer than a grid's spacing."""
+        return None
+
     def misfit(self, setting: Setting, low: float, high: float) -> tuple[str, str] | None:
         """What is wrong with this potential on an axis from `low` to `high`, and the cure."""
         return None

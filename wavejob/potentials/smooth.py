@@ -33,6 +33,9 @@ class Gaussian(Potential):
     sigma: Extent = Field(description="standard deviation")
     height: Energy = Field(description="value at the top; negative for a dip")
 
+    def detail(self) -> tuple[str, float]:
+        return "sigma", self.sigma
+
     def shape(self, setting: Setting) -> Shape:
         def value(x: Array, t: float) -> Array:
             return np.asarray(self.height * np.exp(-(((x - self.at) / self.sigma) ** 2) / 2))
@@ -114,6 +117,9 @@ class Morse(Potential):
     depth: PositiveEnergy = Field(description="energy of the dissociated limit above the bottom")
     reach: Extent = Field(alias="range", description="length over which the bond weakens")
 
+    def detail(self) -> tuple[str, float]:
+        return "range", self.reach
+
     def shape(self, setting: Setting) -> Shape:
         def decay(x: Array) -> Array:
             return np.asarray(np.exp(-(x - self.at) / self.reach))
@@ -131,6 +137,9 @@ class Eckart(Potential):
     width: Extent = Field(description="length scale")
     A: Energy = Field(description="value far to the right")
     B: Energy = Field(description="sets the barrier; its top is (A + B)^2 / 4B where abs(A) < B")
+
+    def detail(self) -> tuple[str, float]:
+        return "width", self.width
 
     def shape(self, setting: Setting) -> Shape:
         def share(x: Array) -> Array:  # u / (1 + u), without overflow
@@ -155,6 +164,9 @@ class Sech2(Potential):
     at: Length = Field(description="place of the top")
     width: Extent = Field(description="length scale")
     height: Energy = Field(description="value at the top; negative for a well")
+
+    def detail(self) -> tuple[str, float]:
+        return "width", self.width
 
     def shape(self, setting: Setting) -> Shape:
         def value(x: Array, t: float) -> Array:
@@ -190,6 +202,9 @@ class Lattice(Potential):
     period: Extent = Field(description="distance between minima")
     depth: Energy = Field(description="height of the maxima above the minima")
 
+    def detail(self) -> tuple[str, float]:
+        return "period", self.period / 2
+
     def shape(self, setting: Setting) -> Shape:
         turn = np.pi / self.period
         return Shape(
@@ -204,6 +219,9 @@ class SoftCoulomb(Potential):
     at: Length = Field(description="place of the centre")
     strength: EnergyLength = Field(description="negative where it attracts")
     softening: Extent = Field(description="keeps the centre finite")
+
+    def detail(self) -> tuple[str, float]:
+        return "softening", self.softening
 
     def shape(self, setting: Setting) -> Shape:
         def away(x: Array) -> Array:

@@ -11,7 +11,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any, NamedTuple, TypeVar
 
-from ..problems import nearest
+from ..problems import nearest, shown
 from . import constants
 from .dimensions import DIMENSIONS, Powers, accepted, kind_of
 from .quantity_text import QuantityError, Term, is_unit, pint_notation, terms, unit_words
@@ -56,7 +56,7 @@ class Units:
         if isinstance(system, str):
             raise QuantityError(f"`{system[:40]}` is no system of units", fix)
         if system is not None and not isinstance(system, Mapping):
-            raise QuantityError("this is no system of units", fix)
+            raise QuantityError(f"{shown(system)} is no system of units", fix)
         given = {kind: _base_unit(kind, unit) for kind, unit in (system or {}).items()}
         return cls("file", **(_PRINTED | given), stated=frozenset(given))
 

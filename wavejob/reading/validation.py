@@ -12,6 +12,12 @@ from ..problems import Problem, nearest, shown
 from .merging import Key, Merged
 from .yaml_tree import dotted
 
+BOUNDS = {
+    "greater_than": ("greater than", "gt"),
+    "greater_than_equal": ("at least", "ge"),
+    "less_than": ("less than", "lt"),
+    "less_than_equal": ("at most", "le"),
+}
 M = TypeVar("M", bound=BaseModel)
 
 
@@ -149,7 +155,16 @@ def _plain(kind: str, detail: Any) -> tuple[str, str]:
         count, least, most = limits.get("actual_length"), limits.get("min_length"), limits.get("max_length")
         if kind == "too_long":
             return f"the list has {count} items", f"at most {most} are accepted"
-        return f"the list has {count or 'no'} item{'s' if count != 1 else ''}", f"at least {least} needed"
+        items = "one item" if count == 1 else f"{count or 'no'} items"
+        return f"the list has {items}", f"at least {least} needed"
+    if kind in BOUNDS:
+        word, name = BOUNDS[kind]
+        return f"must be {word} {limits.get(name):g}, got {given}", ""
+    if kind.startswith(("int", "float")):
+        return (
+            f"{given} is no {'whole ' if kind.startswith('int') else ''}number",
+            "write digits, without a unit",
+        )
     return f"{given} is not accepted", "see `wavejob explain` for what is"
 
 
