@@ -115,7 +115,7 @@ class Morse(Potential):
 
     at: Length = Field(description="place of the bottom")
     depth: PositiveEnergy = Field(description="energy of the dissociated limit above the bottom")
-    reach: Extent = Field(alias="range", description="length over which the bond weakens")
+    reach: Extent = Field(alias="range", description="length over which the bond weakens", examples=["50 nm"])
 
     def detail(self) -> tuple[str, float]:
         return "range", self.reach
