@@ -54,7 +54,6 @@ class Record:
     times: Array  # (rows,)
     series: Array  # (rows, columns)
     results: tuple[Result, ...]
-    plain_results: tuple[Result, ...]  # the same without what companions add
     curves: tuple[Curve, ...]
     checks: tuple[Check, ...]
     judgements: tuple[Judgement, ...]
@@ -74,10 +73,6 @@ class Record:
     series_errors: Array | None = None  # like `series`
     curve_errors: dict[str, dict[str, Array]] | None = None  # curve -> column -> errors
     classical: Answer | None = None  # what F = m a says
-
-    def bare(self) -> Record:
-        """The record with no error parts but those the observables themselves state."""
-        return replace(self, results=self.plain_results)
 
     def column(self, name: str) -> Array:
         """One column of the time series."""
@@ -145,7 +140,6 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
         times=np.array(rows.times),
         series=np.concatenate([series.values for series in table], axis=1) if table else np.empty((len(rows.times), 0)),
         results=tuple(results),
-        plain_results=tuple(results),
         curves=tuple(curve for meter in meters for curve in meter.curves()),
         checks=(*judge_run(plan, watch, outcome.n), *(check for meter in meters for check in meter.checks())),
         judgements=(),

@@ -22,6 +22,8 @@ MOST_COST = 200.0  # of the first run's, that finer runs may cost together
 STALLED = 1.5  # by which a finer plan must lower the bars; else they do not converge
 EDGE_SHARE = 0.3  # of the accuracy wanted, above which what comes back from the edges is measured by a run
 
+TRACE = 1e-12  # a change of probabilities not worth a word
+
 Tell = Callable[[Progress], None]
 
 
@@ -46,25 +48,31 @@ def assess(plan: Plan, progress: Tell | None = None) -> Assessed:
     record = simulate(plan, progress)
     notes: list[str] = []
     differences = _first(record, parts, notes)
-    barred = with_bars(record, differences, recording=parts.record)
+    box = _box(record, differences, parts, notes)
+    barred = box.added(record, differences, parts)
     if worst(barred, wanted) > 1 and (free_step or free_points) and parts.step and parts.grid:
         differences = _apart(record, differences, notes)
-        barred = with_bars(record, differences, recording=parts.record)
-        barred, differences = _refined(barred, differences, parts, progress, notes)
-    if parts.box != "no":
-        returned = edges.returned(barred)
-        if parts.box == "yes" or returned > wanted.first * EDGE_SHARE:
-            differences = [*differences, *_box(barred, differences, notes)]
-            barred = with_bars(barred.bare(), differences, recording=parts.record)
-        elif returned:
-            notes.append(f"what the edges send back changes probabilities by about {returned:.1e}, as predicted")
-            barred = edges.with_part(barred, returned)
+        barred = box.added(record, differences, parts)
+        barred = _refined(barred, differences, box, parts, progress, notes)
     for note in notes:
         log.info("error bars: %s", note)
     checks = [_recorded(barred, wanted)] if parts.record else []
     if plan.job.evolve.accuracy is not None or free_points:
         checks.append(_reached(barred, wanted))
     return Assessed(judged(barred, tuple(checks)), tuple(notes))
+
+
+@dataclass(frozen=True)
+class _Box:
+    """What the edges add to the bars: measured by a run, or a change of probabilities as predicted."""
+
+    measured: tuple[Difference, ...] = ()
+    predicted: float = 0.0
+
+    def added(self, record: Record, differences: list[Difference], parts: ErrorBarsKeys) -> Record:
+        """`record` with bars from `differences` and from the edges."""
+        barred = with_bars(record, [*differences, *self.measured], recording=parts.record)
+        return edges.with_part(barred, self.predicted) if self.predicted else barred
 
 
 def free(plan: Plan) -> tuple[bool, bool]:
@@ -94,8 +102,13 @@ def _apart(record: Record, differences: list[Difference], notes: list[str]) -> l
 
 
 def _refined(
-    barred: Record, differences: list[Difference], parts: ErrorBarsKeys, progress: Tell | None, notes: list[str]
-) -> tuple[Record, list[Difference]]:
+    barred: Record,
+    differences: list[Difference],
+    box: _Box,
+    parts: ErrorBarsKeys,
+    progress: Tell | None,
+    notes: list[str],
+) -> Record:
     """Finer runs until the bars are what is wanted, do not shrink, or cost too much."""
     plan, wanted = barred.plan, barred.plan.job.accuracy
     free_step, free_points = free(plan)
@@ -119,13 +132,13 @@ def _refined(
         kept = [] if step and points else [d for d in differences if d.part not in (name, "step and grid")]
         factor = weight(run)
         differences = [Difference(name, run, barred, factor), *kept]
-        before, barred = barred, with_bars(run, differences, recording=parts.record)
+        before, barred = barred, box.added(run, differences, parts)
         notes.append(_note(Companion(before.plan, 1 / better.step, 1 / better.points, "the run before"), factor))
         if worst(barred, wanted) > 1 and worst(barred, wanted) > worst(before, wanted) / STALLED:
             notes.append("a finer plan does not lower the bars: they do not converge")
             barred = replace(barred, results=tuple(_stalled(r, wanted) for r in barred.results))
             break
-    return barred, differences
+    return barred
 
 
 def _grid_ratio(record: Record) -> float:
@@ -138,15 +151,25 @@ def _cost(plan: Plan) -> float:
     return plan.steps * plan.splitting.stages * plan.axis.points * math.log2(plan.axis.points)
 
 
-def _box(record: Record, differences: list[Difference], notes: list[str]) -> list[Difference]:
-    """What a larger grid changes, measured on the cheapest run there is: it hardly depends on step and spacing."""
+def _box(record: Record, differences: list[Difference], parts: ErrorBarsKeys, notes: list[str]) -> _Box:
+    """What a larger grid changes, measured on the cheapest run there is: it hardly depends on step and spacing.
+
+    Left to itself (`auto`) it is measured only where the prediction is no small share of what is wanted.
+    """
+    if parts.box == "no":
+        return _Box()
+    predicted = edges.returned(record)
+    if parts.box == "auto" and predicted <= record.plan.job.accuracy.first * EDGE_SHARE:
+        if predicted > TRACE:
+            notes.append(f"what the edges send back changes probabilities by about {predicted:.1e}, as predicted")
+        return _Box(predicted=predicted)
     cheapest = min([record, *(d.theirs for d in differences)], key=lambda r: _cost(r.plan))
     companion = larger(cheapest.plan, until=cheapest.steps)
     if companion is None:
-        return []
+        return _Box(predicted=predicted)
     notes.append(_note(companion, FINER))
     wider = simulate(companion.plan, alone=False)
-    return [Difference("box", cheapest, wider, FINER, edges.of_what_is_left(record))]
+    return _Box((Difference("box", cheapest, wider, FINER, edges.of_what_is_left(record)),))
 
 
 def _too_large(record: Record, part: str) -> bool:
