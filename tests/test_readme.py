@@ -13,6 +13,7 @@ from tests.test_layers import LAYERS, PACKAGE
 from wavejob import reference
 from wavejob.cli.arguments import Chosen, read
 from wavejob.cli.explain import explanations
+from wavejob.evidence import bars
 from wavejob.kinds import FAMILIES
 from wavejob.loading import load, parse
 from wavejob.plan import make_plan
@@ -109,6 +110,11 @@ def test_the_picture_is_small() -> None:
 def test_the_number_of_potentials_is_right() -> None:
     (said,) = re.findall(r"(\d+) kinds of potential", README)
     assert int(said) == len(FAMILIES["potential"])
+
+
+def test_the_factors_of_error_bars_are_those_of_the_code() -> None:
+    said = re.findall(r"times (\S+) for smooth potentials and times (\S+) for sharp edges", README)
+    assert [tuple(map(float, pair)) for pair in said] == [(bars.SMOOTH, bars.SHARP)]
 
 
 def test_the_house_lists_the_layers_in_their_order() -> None:
