@@ -7,6 +7,8 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from .fourier import even_sums, sums
+
 Array = np.ndarray
 
 BETA = 14.0  # of the Kaiser window
@@ -16,7 +18,6 @@ SPREAD = 0.17  # a doublet of equal lines s apart differs from one line by 0.17 
 PER_LOBE = 8  # energies looked at in half a main lobe
 ROUNDS, ENOUGH = 12, 1e-12  # of Newton's method; and its last step, in half lobes
 MOST = 400  # lines fitted together
-AT_ONCE = 2**22  # complex exponentials held at a time
 
 
 def resolution(duration: float) -> float:
@@ -75,17 +76,13 @@ class Signal:
 
     def intensity(self, low: float, step: float, count: int) -> Array:
         """The windowed spectrum at low + j step, shape (count,)."""
-        from scipy.signal import czt
-
-        turn = self.spacing * 1j
-        return np.asarray(czt(self.windowed(), count, np.exp(step * turn), np.exp(-low * turn)).real)
+        return np.asarray(even_sums(self.spacing, self.windowed(), low, step, count).real)
 
     def intensity_at(self, energies: Array) -> tuple[Array, Array]:
         """The windowed spectrum and its slope at any energies."""
         values, times = self.windowed(), self.times
         signals = np.stack([values, 1j * times * values], axis=1)
-        batches = np.array_split(energies, max(len(energies) * len(times) // AT_ONCE, 1))
-        found = np.concatenate([np.exp(1j * np.outer(batch, times)) @ signals for batch in batches]).real
+        found = sums(times, signals, energies).real
         return found[:, 0], found[:, 1]
 
     def lines(self, low: float, high: float, lightest: float) -> Lines:

@@ -11,7 +11,7 @@ Array = np.ndarray
 Curve = Callable[[Array], Array]  # energies (n,) -> values (n,), nan where there is none
 
 STANDING_OUT = 0.1  # of its height, by which a peak must rise above the valleys beside it
-ZOOMS, PLACES = 4, 9  # each look closer at a stretch takes 9 places and leaves a quarter or an eighth of it
+ZOOMS, PLACES = 3, 9  # each look closer at a stretch takes 9 places and leaves a quarter or an eighth of it
 FLATTEST = 1e-9  # of the height: a summit that bends by less is not seen above rounding
 
 
@@ -30,15 +30,13 @@ class Peak:
 
 def find_peaks(curve: Curve, energies: Array, count: int) -> list[Peak]:
     """The `count` lowest peaks between the first and the last of `energies`, which must be close enough to see them."""
-    from scipy import signal
-
     values = curve(energies)
     stretch = _longest(np.isfinite(values))
     energies, values = energies[stretch], values[stretch]
     if len(values) < 3:
         return []
-    tops, found = signal.find_peaks(values, prominence=0.0)
-    tops = tops[found["prominences"] >= STANDING_OUT * values[tops]]
+    tops = np.flatnonzero((values[1:-1] > values[:-2]) & (values[1:-1] >= values[2:])) + 1
+    tops = tops[[_prominence(values, int(top)) >= STANDING_OUT * values[top] for top in tops]]
     return [peak_near(curve, energies, values, int(top)) for top in tops[:count]]
 
 
@@ -52,6 +50,15 @@ def peak_near(curve: Curve, energies: Array, values: Array, top: int) -> Peak:
     left = _crossing(curve, half, energies[below[-1]], energies[below[-1] + 1])
     right = _crossing(curve, half, energies[top + 1 + above[0]], energies[top + above[0]])
     return Peak(energy, height, (left, right))
+
+
+def _prominence(values: Array, top: int) -> float:
+    """How far one must go down from a local maximum before it goes up higher than it."""
+    valleys = []
+    for side in (values[top::-1], values[top:]):
+        higher = np.flatnonzero(side > values[top])
+        valleys.append(side[: higher[0]].min() if higher.size else side.min())
+    return float(values[top] - max(valleys))
 
 
 def _longest(valid: Array) -> slice:

@@ -15,7 +15,7 @@ from .approach import SMALLEST_WEIGHT, Approach, Incoming
 from .base import Bench, Meter, Series
 from .peaks import Peak, find_peaks, peak_near
 from .remainder import Remainder
-from .stationary import Probe
+from .stationary import Probes
 
 if TYPE_CHECKING:
     from .transmission import Transmission
@@ -49,14 +49,12 @@ class TransmissionMeter(Meter):
         self.energies = transmission.energies.values
 
     def start(self, look: Look) -> None:
-        start = self.bench.start
         self.approach = Approach(self.bench, look.psi[0, 0].copy(), self.asked.x)
         self.places = (self.asked.x, self.approach.behind, self.approach.beyond)
-        self.probes = [Probe(self.bench.axis, x, start) for x in self.places]
+        self.probes = Probes(self.bench.axis, self.places, self.bench.start)
 
     def sample(self, look: Look) -> None:
-        for probe in self.probes:
-            probe.add(look.t, look.psi[0, 0])
+        self.probes.add(look.t, look.psi[0, 0])
 
     def row(self, look: Look) -> Sequence[float]:
         self.last, self.ended = look.psi[0, 0].copy(), look.t
@@ -78,7 +76,7 @@ class TransmissionMeter(Meter):
         """What flows at `energies`; `completed` counts what is still under way at the end of the run."""
         came = self.approach.incoming(energies)
         held = self.approach.weight_of(came) >= SMALLEST_WEIGHT
-        fields = np.stack([probe.at(energies, stride) for probe in self.probes])
+        fields = self.probes.at(energies, stride)
         if completed:
             fields = fields + self.remainder.at(np.where(held, energies, np.nan), self.places)
         with np.errstate(divide="ignore", invalid="ignore"):
