@@ -61,7 +61,7 @@ def _seconds(plan: Plan, bars: bool, frames: Schedule | None) -> float:
     looks = (_count(plan.recorded) + _count(plan.sampled)) * (ALWAYS_LOOKED + len(plan.job.observables))
     loop = stages * stage + looks * (LOOK_SECONDS + LOOK_PAIRS * pair)
     pictures = IMPORT_SECONDS + FRAME_SECONDS * (_count(frames) if frames else 0)
-    return PLAN_SECONDS + loop * (BARS if bars and plan.job.keys.error_bars is None else 1) + pictures
+    return PLAN_SECONDS + loop * (BARS if bars and plan.job.keys.error_bars != "none" else 1) + pictures
 
 
 def _work(points: int) -> float:

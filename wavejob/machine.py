@@ -16,7 +16,7 @@ def cores() -> int:
     """Cores this process may use, at least 1."""
     allowed = len(os.sched_getaffinity(0)) if hasattr(os, "sched_getaffinity") else os.cpu_count() or 1
     shares = [share for folder in _groups("cpu") for share in _core_limits(folder)]
-    return max(1, min([allowed, *(int(share) for share in shares if share >= 1)]))
+    return min([allowed, *(max(int(share), 1) for share in shares)])
 
 
 def memory() -> int:

@@ -1,4 +1,4 @@
-"""How long commands take to start, in times of importing the libraries they need: `python -m tests.speed.start`.
+"""How long commands take to start, in times of what the libraries take: `python -m tests.speed.start`.
 
 Each contestant is a Python of its own; the first one only imports numpy, pint, pydantic and yaml.
 """

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import ast
 from collections.abc import Iterator
+from functools import cache
 from pathlib import Path
 
 PACKAGE = Path(__file__).parents[1]
 REASON = 4  # place of the reason among the arguments of a check
 
 
+@cache
 def checks() -> dict[str, str]:
     """Name -> reason. What a name says of the job at hand, such as the name of a detector, is left out."""
     found: dict[str, str] = {}

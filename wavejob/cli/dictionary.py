@@ -5,6 +5,7 @@ from __future__ import annotations
 import types
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import cache
 from typing import Annotated, Any, Literal, Union, get_args, get_origin
 
 from annotated_types import Ge, Le
@@ -48,9 +49,10 @@ class Words:
     words: tuple[Any, ...]
 
 
-def entries() -> list[Entry]:
+@cache
+def entries() -> tuple[Entry, ...]:
     """Every key and kind, in the order of the models."""
-    return list(_walk(JobKeys, (), set()))
+    return tuple(_walk(JobKeys, (), set()))
 
 
 def _walk(model: type[Model], path: tuple[str, ...], seen: set[type[Model]]) -> Iterator[Entry]:
