@@ -1,7 +1,7 @@
 """The classical companion against closed forms.
 
-F = m a carries the Wigner function exactly in potentials up to the second power (E. Wigner, Phys. Rev. 40, 749,
-1932): there both answers agree to the statistical error.
+F = m a carries the Wigner function exactly in potentials up to the second power (E. Wigner, Phys. Rev. 40,
+749, 1932): there both answers agree to the statistical error.
 """
 
 from __future__ import annotations
