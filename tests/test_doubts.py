@@ -58,7 +58,7 @@ def test_detectors_and_regions_inside_a_layer(observable: str, key: str) -> None
 
 
 def test_a_packet_that_starts_inside_a_layer() -> None:
-    """What a normal distribution holds beyond the distance from its mean to the layer, 85 whole cells deep."""
+    """What a normal distribution holds farther from its mean than the layer, which is 85 whole cells deep."""
     (doubt,) = found(packet="{gaussian: {at: -31, sigma: 3, wavenumber: 2}}")
     distance = -31 - (-60 + 85 * 120 / 512)
     assert doubt.key == "packet"

@@ -15,7 +15,7 @@ from ..problems import JobFileError, Place, Problem, nearest
 from ..version import __version__
 
 COMMANDS = {
-    "check": "read job files, report every mistake, forecast time and memory; run nothing",
+    "check": "read job files, report every mistake, forecast time and memory",
     "run": "run job files or whole folders",
     "explain": "describe a key, kind, observable, unit or check, with an example",
     "schema": "print the JSON Schema of the job file, for editors",
