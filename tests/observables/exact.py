@@ -1,4 +1,4 @@
-"""What published formulas say about transmission, and jobs run once for several tests. hbar = m = 1 unless said."""
+"""What published formulas say about transmission, and jobs run once for all tests. hbar = m = 1."""
 
 from __future__ import annotations
 
@@ -31,8 +31,8 @@ def curve(run: Record, name: str, column: str) -> tuple[Array, Array]:
 def layered(k: Array, heights: list[float], edges: list[float]) -> tuple[Array, Array, Array]:
     """Amplitudes t and r, and v_after / v_before, for 1 coming in from the left over constant potentials.
 
-    `heights` are 2 m V of the stretches between and beyond `edges`, the first one 0: psi = A e^(iqx) + B e^(-iqx) in
-    each, matched in value and slope (textbook, Tsu and Esaki 1973).
+    `heights` are 2 m V of the stretches between and beyond `edges`, the first one 0: psi = A e^(iqx) +
+    B e^(-iqx) in each, matched in value and slope (textbook, Tsu and Esaki 1973).
     """
     k = np.asarray(k, dtype=complex)
     waves = [np.sqrt(k**2 - height) for height in heights]

@@ -112,14 +112,16 @@ def test_bound_states_beside_a_continuum_that_leaves() -> None:
 
 def test_a_resolution_that_the_run_is_too_short_for_is_refused() -> None:
     text = HARMONIC.replace("lines: 7", "lines: 7, resolution: 0.1")
-    with pytest.raises(JobFileError, match="tells lines apart only from 0.1435 on") as caught:
+    with pytest.raises(JobFileError, match=r"tells lines apart only from 0\.1435 on") as caught:
         make_plan(parse(text))
     assert "`evolve.until: 143.6`" in caught.value.problems[0].fix
     make_plan(parse(text.replace("until: 100", "until: 144")))
 
 
 def test_a_potential_that_changes_in_time_has_no_levels() -> None:
-    text = HARMONIC.replace("omega: 1}", "omega: 1}, in_time: {sine: {offset: 1, amplitude: 0.1, frequency: 1}}")
+    text = HARMONIC.replace(
+        "omega: 1}", "omega: 1}, in_time: {sine: {offset: 1, amplitude: 0.1, frequency: 1}}"
+    )
     with pytest.raises(JobFileError, match="changes in time"):
         make_plan(parse(text))
 

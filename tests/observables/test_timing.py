@@ -53,7 +53,9 @@ def test_the_series_is_a_density() -> None:
 
 def test_a_flux_that_turns_back_is_doubtful() -> None:
     """A packet that a step throws back crosses a detector before the step twice (textbook)."""
-    text = FREE.replace("packet:", "potential: [{step: {at: 40, height: 20}}]\npacket:").replace("points: 650", "points: 1300")
+    text = FREE.replace("packet:", "potential: [{step: {at: 40, height: 20}}]\npacket:").replace(
+        "points: 650", "points: 1300"
+    )
     check = next(c for c in exact.record(text).checks if c.name == "t: flux backwards")
     assert not check.passed
     assert exact.record(text).verdict == "doubtful"

@@ -30,7 +30,9 @@ observables:
   - transmission: {name: near, x: 1.5, energies: {from: 0.3, to: 1.7, points: 57}}
 """
 BARRIER = SHARP.replace("POTENTIAL", "barrier: {from: 0, to: 2, height: 1}")
-STEP = SHARP.replace("POTENTIAL", "step: {at: 0, height: 0.3}").replace("from: 0.3, to: 1.7", "from: 0.4, to: 1.8")
+STEP = SHARP.replace("POTENTIAL", "step: {at: 0, height: 0.3}").replace(
+    "from: 0.3, to: 1.7", "from: 0.4, to: 1.8"
+)
 
 SMOOTH = """
 units: natural
@@ -109,7 +111,7 @@ def test_reflection_and_transmission_are_measured_apart_and_add_up() -> None:
 
 
 def test_the_phase_time_of_a_rectangular_barrier() -> None:
-    """Buettiker 1983, eq. 3.3, is d arg(t e^(ikd)) / dE: the delay and the free time d / v. At E = 0.5: 1.92805516."""
+    """Buettiker 1983, eq. 3.3, is d arg(t e^(ikd)) / dE: the delay and d / v. At E = 0.5: 1.92805516."""
     run, e = exact.record(BARRIER), energies(BARRIER)
     below = e < 0.95
     delay, errors = exact.curve(run, "T", "phase_time")
@@ -221,9 +223,19 @@ def test_a_packet_from_the_other_side() -> None:
         ("x: 20,", "x: -61,", "starts beyond the detector", "move one"),
         ("at: -60", "at: -8", "not flat where the packet starts", "farther"),
         ("wavenumber: 1.2", "wavenumber: -1.2", "nothing of the packet moves", "turn"),
-        ("barrier: {from: 0", "barrier: {from: -100, to: -99, height: 1}\n  - barrier: {from: 0", "behind the start", "flat"),
+        (
+            "barrier: {from: 0",
+            "barrier: {from: -100, to: -99, height: 1}\n  - barrier: {from: 0",
+            "behind the start",
+            "flat",
+        ),
         ("from: 0.3, to: 1.7", "from: 4.2, to: 5.6", "holds only energies from", "ask for those"),
-        ("height: 1}", "height: 1}\n    in_time: {sine: {amplitude: 1, frequency: 1}}", "changes in time", "crossing"),
+        (
+            "height: 1}",
+            "height: 1}\n    in_time: {sine: {amplitude: 1, frequency: 1}}",
+            "changes in time",
+            "crossing",
+        ),
     ],
 )
 def test_what_cannot_be_had_is_refused_with_place_and_cure(old: str, new: str, said: str, cure: str) -> None:

@@ -10,7 +10,7 @@ AT_ONCE = 2**22  # complex exponentials held at a time
 
 
 def sums(times: Array, signals: Array, energies: Array) -> Array:
-    """Sum over times of e^(i E t) signals, shape (energies, signals); `signals` has shape (times, signals)."""
+    """Sum over times of e^(i E t) signals, (energies, signals); `signals` has shape (times, signals)."""
     batches = np.array_split(energies, max(len(energies) * len(times) // AT_ONCE, 1))
     return np.concatenate([np.exp(1j * np.outer(batch, times)) @ signals for batch in batches])
 

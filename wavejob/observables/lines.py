@@ -105,7 +105,7 @@ class Signal:
         return Lines(found[kept][order], weights[kept][order], deviations[order])
 
     def _fitted(self, energies: Array, weights: Array) -> tuple[Array, Array]:
-        """Energies and weights for which all line shapes together have the spectrum's value and slope at each.
+        """Energies and weights for which all lines together have the spectrum's value and slope at each.
 
         So the side lobes of one line do not shift another: Newton's method from the tops.
         """

@@ -17,7 +17,7 @@ FLATTEST = 1e-9  # of the height: a summit that bends by less is not seen above 
 
 @dataclass(frozen=True)
 class Peak:
-    """`width` is None where the curve does not fall to half the top on both sides; `sides` are the half-way places."""
+    """`sides` are the places at half the height; None where the curve does not fall to it on both sides."""
 
     energy: float
     height: float
@@ -29,7 +29,7 @@ class Peak:
 
 
 def find_peaks(curve: Curve, energies: Array, count: int) -> list[Peak]:
-    """The `count` lowest peaks between the first and the last of `energies`, which must be close enough to see them."""
+    """The `count` lowest peaks of the curve; `energies` must be close enough to see them."""
     values = curve(energies)
     stretch = _longest(np.isfinite(values))
     energies, values = energies[stretch], values[stretch]

@@ -45,7 +45,7 @@ class Remainder:
         self.source = 1j * make_interp_spline(axis.x, psi, k=5)(self.x)
 
     def at(self, energies: Array, places: tuple[float, ...]) -> Array:
-        """Its psi, psi' and t psi at each place, complex, shape (places, 3, energies); 0 at energies that are nan.
+        """Its psi, psi' and t psi at each place, complex, (places, 3, energies); 0 at energies that are nan.
 
         The integral of t psi is the derivative by iE of that of psi.
         """

@@ -213,7 +213,7 @@ class TransmissionMeter(Meter):
                 largest <= LATE_LIMIT,
                 largest,
                 LATE_LIMIT,
-                "change of T or R by what has not left the structure or not reached the detector when the run ends",
+                "change of T or R by what has not left the structure or not arrived when the run ends",
                 "" if largest <= LATE_LIMIT else advice,
             ),
             Check(

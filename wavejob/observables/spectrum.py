@@ -28,14 +28,14 @@ Lightest = Annotated[float, Quantity("number", at_least=1e-5, at_most=1.0)]
 class Spectrum(Observable):
     """The lines of the packet: energies of the states it is made of, and the probability of each.
 
-    The overlap <psi(0), psi(t)> is multiplied by a Kaiser window (beta 14) and Fourier transformed. A line leaks at
-    most 5.1e-6 of its height to other energies. What the lines found leak into each other is taken off by fitting
-    all their heights and places together. Lines closer than `.resolution` = 14.35 hbar / duration are not
-    told apart; a line whose shape differs from that of one line by more than 1e-3 is said to be unresolved (two
-    lines, or a state that decays), and its error bar covers the splitting that this shape allows.
+    The overlap <psi(0), psi(t)>, times a Kaiser window (beta 14), is Fourier transformed. A line leaks at
+    most 5.1e-6 of its height to other energies, and what the lines found leak into each other is taken off
+    by fitting all their heights and places together. Lines closer than `.resolution` = 14.35 hbar / duration
+    may not be told apart: a line whose shape differs from that of one line by more than 1e-3 is said to be
+    unresolved (two lines, or a state that decays), and its error bar covers the splitting this allows.
 
-    `.line[i]` are the energies of the `lines` lowest lines of weight above `weight_above`, in rising order, `.weight[i]`
-    their probabilities. A state that the packet does not contain is not seen: i is no quantum number.
+    `.line[i]` are the energies of the `lines` lowest lines of weight above `weight_above`, in rising order,
+    `.weight[i]` their probabilities. A state the packet does not contain is not seen: i is no quantum number.
     """
 
     name: Name = Field("spectrum", description="name in the outputs")
@@ -48,7 +48,7 @@ class Spectrum(Observable):
     )
 
     def figures(self, outline: Outline) -> tuple[Column, ...]:
-        closest = "lines closer than this are not told apart"
+        closest = "lines closer than this may not be told apart"
         lines = tuple(
             column
             for i in range(self.lines)
@@ -178,7 +178,7 @@ class SpectrumMeter(Meter):
                 passed,
                 float(deviations[worst]),
                 ONE_LINE,
-                f"deviation from the shape of one line, of which at most {LEAKAGE:.1e} is leakage of the window",
+                f"deviation from the shape of one line; the window leaks at most {LEAKAGE:.1e}",
                 ""
                 if passed
                 else f"not resolved: {unresolved} is more than one line within {closest}, or decays; "

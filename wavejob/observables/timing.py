@@ -22,8 +22,8 @@ LATE_LIMIT = 1e-3  # share that is still to come
 class Arrival(Crossing):
     """The distribution of arrival times at a detector: its flux over the integral of the flux.
 
-    `.mean` and `.sigma` are mean and standard deviation of this distribution. Where probability also flows back
-    through the detector, the flux is no distribution of times and the figures are doubtful.
+    `.mean` and `.sigma` are mean and standard deviation of this distribution. Where probability also flows
+    back through the detector, the flux is no distribution of times and the figures are doubtful.
     """
 
     def columns(self, outline: Outline) -> tuple[Column, ...]:
@@ -98,7 +98,7 @@ class ArrivalMeter(CrossingMeter):
     def checks(self) -> list[Check]:
         figures = super().results(Series(np.empty(0), np.empty((0, 1))))
         total, backward = figures[f"{self.name}.total"] or 0.0, figures[f"{self.name}.backward"] or 0.0
-        share, late = backward / total if total > NOTHING else 0.0, self._late()
+        share, late = backward / max(total, backward, NOTHING), self._late()
         return [
             Check(
                 f"{self.name}: flux backwards",

@@ -47,12 +47,12 @@ class Transmission(Observable):
     and the absorbing layer or end of the grid behind it. Nothing ties R to T, so that R + T = 1 is a check.
 
     The stationary flux does not depend on the place: the detector may stand inside the structure or anywhere
-    beyond, on a potential of any height, but not in an absorbing layer, in the packet, or before the structure.
+    beyond, on a potential of any height, but not in an absorbing layer, the packet, or before the structure.
 
     `phase` is that of the field at the detector against the field the same packet would have there without
     any potential but that of its start: arg t where the potential is the same on both sides, and
-    arg t + (k' - k) x where t e^(ik'x) goes out of e^(ikx) coming in. `phase_time` is hbar d(phase)/dE: by how
-    much the packet comes later than without potential; a structure of length d takes phase_time + d/v
+    arg t + (k' - k) x where t e^(ik'x) goes out of e^(ikx) coming in. `phase_time` is hbar d(phase)/dE: by
+    how much the packet comes later than without potential; a structure of length d takes phase_time + d/v
     (Wigner 1955). `weight` is abs(phi(k))^2 over its largest value; below 1e-8 of it there are no values.
 
     `.peak[i]` are the lowest peaks of T: energy of the top, full width at half of it, lifetime hbar / width.
