@@ -13,20 +13,24 @@ from .classical import first_step
 from .newton import Motion, Passages, Trajectories
 from .observables.swarm import ClassicalMeter, History, Swarm
 from .packets.gaussian import GaussianPacket
-from .plan import Ending, Plan, fastest
+from .plan import Ending, Plan, fastest, wave_numbers
 from .shapes import Breaks, Landscape, Shape, Term
 from .wigner import GROUPS, Start, gaussian, sampled
 
 Array = np.ndarray
 
 SHARE = 0.25  # of the time of the run that trajectories may take, where their number is left out
-FEWEST, MOST = 16 * GROUPS, 256 * GROUPS  # where their number is left out
+FEWEST, MOST = 64 * GROUPS, 512 * GROUPS  # where their number is left out; fewer would hardly be quicker
 LONGER = 2.0  # steps over those that follow a path to all digits: far more digits than a mean has
 NOTHING = 1e-9  # of a weight: what is left in a layer is then absorbed as well
 PER_CHANGE = 16  # steps in the shortest time over which a term changes
 # Seconds of one step, measured on one core of 2020: only their ratio matters.
-POINT, PAIR = 3e-8, 2e-5  # of the wave function: for each point and stage, and beside
-STRAIGHT, CURVED, STRIDE = 4e-7, 2.2e-6, 4e-4  # of trajectories: for each without and with force, and beside
+POINT, PAIR = 9e-9, 4e-6  # of the wave function: for each point and stage, and beside
+STRAIGHT, CURVED, STRIDE = (
+    1.4e-7,
+    2.5e-7,
+    3e-4,
+)  # of trajectories: for each without and with force, and beside
 
 
 @dataclass(frozen=True)
@@ -47,9 +51,11 @@ def trajectories(plan: Plan) -> int:
     if wanted is None:
         run = plan.steps * plan.splitting.stages * (POINT * plan.axis.points + PAIR)
         motion = _motion(plan, (), None)
-        rows = plan.steps / plan.record
+        times = np.array([plan.job.evolve.start, plan.job.evolve.until])
+        a_row = max(1.0, plan.record * plan.step / _longest(plan, motion, _extremes(plan), times))
+        strides = a_row * plan.steps / plan.record
         each = STRAIGHT if motion.straight else CURVED * max(len(plan.job.landscape.terms), 1)
-        wanted = round((SHARE * run / rows - STRIDE) / each)
+        wanted = round((SHARE * run / strides - STRIDE) / each)
         wanted = min(max(wanted, FEWEST), MOST)
     return math.ceil(wanted / (2 * GROUPS)) * 2 * GROUPS
 
@@ -70,8 +76,7 @@ def follow(plan: Plan, start: Start, meters: Sequence[ClassicalMeter], times: Ar
     watch = Watch(tuple({meter.place for meter in meters if meter.place is not None}), plan.axis.length)
     motion = _motion(plan, watch.places, watch.see)
     now = Trajectories.start(start.x.ravel(), start.p.ravel(), start.weight.ravel())
-    step = first_step(motion, now, times) * (1.0 if motion.exact else LONGER)
-    step = min(step, fastest(plan.job) / PER_CHANGE)
+    step = _longest(plan, motion, now, times)
     absorbed = {layer.name: np.zeros(now.x.size) for layer in plan.hamiltonian.layers}
     rows = [_row(plan, meters, now, absorbed, size, float(times[0]))]
     for t, until in pairwise(times.tolist()):
@@ -91,6 +96,21 @@ def follow(plan: Plan, start: Start, meters: Sequence[ClassicalMeter], times: Ar
     ]
     pooled = History(times, {name: values[:, 0] for name, values in table.items()}, whole)
     return Followed(now.x.size, pooled, tuple(histories))
+
+
+def _longest(plan: Plan, motion: Motion, now: Trajectories, times: Array) -> float:
+    """The longest step that trajectories with the energies of `now` allow."""
+    step = first_step(motion, now, times) * (1.0 if motion.exact else LONGER)
+    return min(step, fastest(plan.job) / PER_CHANGE)
+
+
+def _extremes(plan: Plan) -> Trajectories:
+    """The slowest and the fastest that may be drawn, at the mean place."""
+    density = np.abs(plan.psi) ** 2 * plan.axis.spacing
+    k, weight = wave_numbers(plan.axis, plan.psi)
+    mean = float(weight @ k)
+    spread = math.sqrt(max(float(weight @ (k - mean) ** 2), 0.0))
+    return Trajectories.start(float(density @ plan.axis.x), mean + 3 * spread * np.array([-1.0, 1.0]))
 
 
 class Watch:
