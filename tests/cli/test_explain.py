@@ -41,6 +41,11 @@ def test_every_example_is_read_as_a_job(entry: Entry) -> None:
         assert {"table", "file", "based_on"} & set(entry.path)
 
 
+@pytest.mark.parametrize("name", checks())
+def test_every_check_is_explained(name: str) -> None:
+    assert any(text.startswith(f"{name}: a check") for text in explanations(name))
+
+
 @pytest.mark.parametrize("word", sorted({entry.path[-1] for entry in KNOWN.values()}))
 def test_every_word_is_explained(word: str) -> None:
     told = explanations(word)

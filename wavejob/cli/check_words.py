@@ -12,12 +12,17 @@ REASON = 4  # place of the reason among the arguments of a check
 
 
 @cache
-def checks() -> dict[str, str]:
-    """Name -> reason. What a name says of the job at hand, such as the name of a detector, is left out."""
+def checks(word: str = "") -> dict[str, str]:
+    """Name -> reason, of all checks or of those whose text has a string with `word` at its start or end.
+
+    What a name says of the job at hand, such as the name of a detector, is left out.
+    """
     found: dict[str, str] = {}
     for path in sorted(PACKAGE.rglob("*.py")):
         text = path.read_text(encoding="utf-8")
-        if "Check(" in text and path != Path(__file__):
+        folded = text.lower()
+        mentioned = not word or f'"{word}' in folded or f'{word}"' in folded
+        if mentioned and "Check(" in text and path != Path(__file__):
             found |= dict(_in_module(ast.parse(text)))
     return found
 

@@ -80,7 +80,7 @@ def explanations(word: str) -> list[str]:
         told.append(_units())
     told += [
         paragraph(f"a check that every run makes of itself: {reason}.", f"{name}: ", "  ")
-        for name, reason in checks().items()
+        for name, reason in checks("" if word in ("check", "checks") else word.lower()).items()
         if word.lower() in (name.lower(), "check", "checks")
     ]
     page = word.lower().replace(" ", "-")
