@@ -15,6 +15,7 @@ Array = np.ndarray
 SITES = 24  # places along the axis where a packet is tried
 WORST = 4  # of them that are followed over WINDOW steps
 WINDOW = 48
+ROOM = 5.0  # widths that trial packets keep from the ends
 ENERGIES = 4.0  # standard deviations of energy above the mean that count for what is reached
 PRESENT = 1e-6  # of the largest density: where the packet is
 LEAST_CHANGE, MOST_CHANGE = 1.25, 8.0  # by which a step that errs too much is divided
@@ -87,6 +88,8 @@ def _trial_packets(hamiltonian: Hamiltonian, psi: Array, start: float) -> Array:
     scatter = math.sqrt(max(float(np.vdot(applied, applied).real / np.vdot(psi, psi).real) - energy**2, 0.0))
     low, high = _reach(axis.x, potential, density, energy + ENERGIES * scatter)
     width = min(spread, axis.length / 12)
+    inset = ROOM * width  # a packet over an end that wraps would feel a jump that the run never meets
+    low, high = max(low, min(axis.low + inset, mean)), min(high, max(axis.high - inset, mean))
     places = low + (high - low) * (np.arange(SITES) + 0.5) / SITES
     within = (axis.x >= low) & (axis.x <= high)
     steepest = axis.x[np.argsort(np.abs(np.gradient(potential)) * within)[::-1][:4]]
