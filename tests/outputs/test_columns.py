@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import example, given
 from hypothesis import strategies as st
 
 from wavejob.outputs.choices import CarpetScale
@@ -84,6 +84,7 @@ def test_ticks_are_round_and_their_labels_short(low, high, most, values, labels,
     assert shown.power == power
 
 
+@example(1.0, 2.0**-24, 2)
 @given(st.floats(-1e12, 1e12), st.floats(1e-9, 1e12), st.integers(1, 12))
 def test_ticks_lie_on_the_axis_and_are_told_apart(low, length, most):
     high = low + length

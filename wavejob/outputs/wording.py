@@ -14,6 +14,7 @@ SUPERSCRIPTS = str.maketrans(
     "-0123456789", "\u207b\u2070\u00b9\u00b2\u00b3\u2074\u2075\u2076\u2077\u2078\u2079"
 )
 MINUS = "\u2212"
+MOST_DECIMALS = 12  # of a tick: told apart on the finest axis there is
 
 
 def clean(text: str) -> str:
@@ -106,7 +107,9 @@ def ticks(low: float, high: float, most: int) -> Ticks:
     power = exponent if exponent >= 5 or exponent < -1 else 0
     scaled_step = step / 10.0**power
     decimals = next(
-        d for d in range(8) if abs(round(scaled_step, d) - scaled_step) < 1e-6 * scaled_step or d == 7
+        d
+        for d in range(MOST_DECIMALS + 1)
+        if abs(round(scaled_step, d) - scaled_step) < 1e-6 * scaled_step or d == MOST_DECIMALS
     )
     labels = tuple(fixed(v / 10.0**power, decimals) for v in values)
     return Ticks(values, labels, power)
