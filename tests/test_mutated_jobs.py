@@ -179,7 +179,7 @@ def mutated_values(draw: st.DrawFn) -> str:
 class NoAliases(yaml.SafeDumper):
     """Writes doubled values out."""
 
-    def ignore_aliases(self, data: Any) -> bool:  # noqa: ARG002  (as the base class has it)
+    def ignore_aliases(self, data: Any) -> bool:
         return True
 
 

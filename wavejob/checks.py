@@ -6,8 +6,8 @@ import math
 
 import numpy as np
 
-from .job import Job
 from .grid import fast_size
+from .job import Job
 from .plan import Plan, wave_numbers
 from .recording import Watch
 from .results import Check, Judgement, Result, Verdict
@@ -111,7 +111,7 @@ def _reflection(plan: Plan, index: int) -> Check:
     if math.isfinite(ending.recommended):
         cure = f"set `absorb: {plan.job.write(ending.recommended, 'length')}` at x.{ending.side}"
     else:
-        cure = f"no depth absorbs waves this slow: give `energies:` at x.{ending.side}, or end the run before they arrive"
+        cure = f"no depth absorbs waves this slow: give `energies:` at x.{ending.side}, or end before they arrive"
     return Check(
         f"absorber reflection x.{ending.side}",
         passed,

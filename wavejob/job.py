@@ -27,7 +27,6 @@ from .settings import EvolveKeys, JobKeys
 from .shapes import Landscape
 from .version import NUMERICS
 
-
 DEFAULT_ACCURACY = 1e-4
 
 

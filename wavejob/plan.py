@@ -13,7 +13,7 @@ from .edges import LayerShape, Momenta, layer, recommended_depth, tuned
 from .evolve.schedule import Schedule
 from .evolve.splittings import SPLITTINGS, Splitting
 from .evolve.step_choice import choose_step, largest_step
-from .grid import Axis, Grid, fast_size
+from .grid import Axis, fast_size
 from .hamiltonian import Hamiltonian, Layer
 from .job import Job
 from .limits import refuse_grid, refuse_run, refuse_spacings, refuse_steps

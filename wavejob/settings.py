@@ -19,7 +19,6 @@ from .models import (
     Length,
     Mass,
     Model,
-    Name,
     PositiveEnergy,
     Quantity,
     Time,
@@ -104,7 +103,7 @@ def word_or(words: tuple[str, ...], model: type[Model], what: str) -> Any:
             return value
         listed = ", ".join(f"`{word}`" for word in words)
         near = nearest(value, words) if isinstance(value, str) else None
-        keys = ", ".join(f"{key}: ..." for key in model.keys())
+        keys = ", ".join(f"{key}: ..." for key in list(model.keys()))
         fix = f"did you mean `{near}`?" if near else f"write {listed} or {{{keys}}}"
         raise refuse(f"{shown(value)} is no {what}", fix)
 
@@ -358,7 +357,9 @@ class ErrorBarsKeys(Model):
     grid: Flag = Field(True, description="another number of points")
     record: Flag = Field(True, description="every second row and sample")
     box: Annotated[
-        Literal["yes", "no", "auto"], BeforeValidator(_box), WithJsonSchema({"enum": ["yes", "no", "auto", True, False]})
+        Literal["yes", "no", "auto"],
+        BeforeValidator(_box),
+        WithJsonSchema({"enum": ["yes", "no", "auto", True, False]}),
     ] = Field("auto", description="a larger grid with deeper layers; auto: where the edges matter")
 
 

@@ -138,7 +138,7 @@ def _series(
 
 def missed(axis: Axis, mass: float) -> float:
     """Strength of the peak at a jump of 1 that stands for its short waves; see MISSED."""
-    return -2 * mass * MISSED / axis.k_max**3
+    return float(-2 * mass * MISSED / axis.k_max**3)
 
 
 @dataclass(frozen=True)

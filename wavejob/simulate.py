@@ -5,6 +5,7 @@ from __future__ import annotations
 import time
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 
@@ -32,6 +33,7 @@ class Progress:
     t: float  # scaled units
     norm: float
     probabilities: tuple[tuple[str, float], ...]
+    stage: str = ""  # "companion" and the like, where it is not the run itself
 
 
 @dataclass(frozen=True)
@@ -223,9 +225,10 @@ def _stopper(plan: Plan, rows: Rows) -> Callable[[Look], str | None]:
     names = [column.name for o in job.measured for column in o.columns(job.outline)]
     bounds: list[tuple[str, int, float, float]] = []
     for name, bound in job.evolve.stop_when.items():
-        side = -1.0 if bound.below is not None else 1.0
-        limit = bound.below if bound.below is not None else bound.above
-        bounds.append((name, names.index(name), side, job.units.read(limit, job.columns[name].dimension)))
+        below = bound.below is not None
+        limit: Any = bound.below if below else bound.above
+        size = job.units.read(limit, job.columns[name].dimension)
+        bounds.append((name, names.index(name), -1.0 if below else 1.0, size))
 
     def control(look: Look) -> str | None:
         if not bounds or not recorded.due(look.n):

@@ -22,13 +22,14 @@ def mirror() -> dict[str, float]:
     """A neutron dropped at rest from 30 um, 4 um wide, above a mirror; after 30 ms."""
     scale = (HBAR**2 / (2 * M_N**2 * G_N)) ** (1 / 3) * 1e6
     rate = M_N * G_N * scale * 1e-6 / HBAR * 1e-3
-    levels = bouncer(scale, rate, 30, np.linspace(0, 150, 6001))
+    levels = bouncer(scale, rate, 60, np.linspace(0, 300, 24001))
     start = gaussian(levels.x, 30, 4)
     density = np.abs(levels.at(start, 30.0)) ** 2 * levels.weight
-    below = density[levels.x <= 20]
+    below = density[levels.x < 20.01]
     return {
         "position.x.final": float(density @ levels.x),
         "below_slit.final": float(below.sum() - below[-1] / 2),
+        **{f"levels.energy[{n}]": float(levels.rates[n] * HBAR / EV * 1e15) for n in (0, 1)},
     }
 
 
@@ -58,7 +59,7 @@ def knock() -> dict[str, float]:
 
 
 def hum() -> dict[str, float]:
-    return disturbed(lambda t: 0.6e-6 * np.sin(2 * np.pi * 50 * t), 33e-3)
+    return disturbed(lambda t: 0.6e-6 * np.sin(2 * np.pi * 50 * t), 33.6e-3)
 
 
 def floor_heights() -> tuple[np.ndarray, np.ndarray]:

@@ -42,7 +42,7 @@ def one_monolayer() -> dict[str, float]:
 def clear_well() -> dict[str, float]:
     """A well of 300 meV and 8.1 nm met from above by 40 meV and 25 nm."""
     k0 = np.sqrt(gaas(0.04))
-    return {"transmitted.total": packet_average(lambda k: window(k, 8.1, gaas(0.3)), k0, 25)}
+    return {"passed.final": packet_average(lambda k: window(k, 8.1, gaas(0.3)), k0, 25)}
 
 
 def graded() -> dict[str, float]:

@@ -32,10 +32,10 @@ class FileUnits:
 class NaturalUnits:
     """hbar 1 and no labels."""
 
-    def to_file(self, x: Any, dimension: str) -> Any:  # noqa: ARG002 the interface has it
+    def to_file(self, x: Any, dimension: str) -> Any:
         return x
 
-    def label(self, dimension: str) -> str:  # noqa: ARG002 the interface has it
+    def label(self, dimension: str) -> str:
         return ""
 
 

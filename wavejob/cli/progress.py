@@ -49,7 +49,8 @@ class Silent:
 def state(job: Job, progress: Progress) -> str:
     """Time, norm and probabilities of the moment, `t = 340 fs, norm 0.99874, transmitted 0.1213`."""
     shares = [f"{name} {value:.4g}" for name, value in progress.probabilities]
-    return ", ".join([f"t = {job.write(progress.t, 'time')}", f"norm {progress.norm:.6g}", *shares])
+    stage = [progress.stage] if progress.stage else []
+    return ", ".join([*stage, f"t = {job.write(progress.t, 'time')}", f"norm {progress.norm:.6g}", *shares])
 
 
 def log_line(text: str) -> None:

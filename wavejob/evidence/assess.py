@@ -47,13 +47,14 @@ def assess(plan: Plan, progress: Tell | None = None) -> Assessed:
     wanted, free_step, free_points = plan.job.accuracy, *free(plan)
     record = simulate(plan, progress)
     notes: list[str] = []
-    differences = _first(record, parts, notes)
-    box = _box(record, differences, parts, notes)
+    tell = _staged(progress, "companion")
+    differences = _first(record, parts, tell, notes)
+    box = _box(record, differences, parts, tell, notes)
     barred = box.added(record, differences, parts)
     if worst(barred, wanted) > 1 and (free_step or free_points) and parts.step and parts.grid:
-        differences = _apart(record, differences, notes)
+        differences = _apart(record, differences, tell, notes)
         barred = box.added(record, differences, parts)
-        barred = _refined(barred, differences, box, parts, progress, notes)
+        barred = _refined(barred, differences, box, parts, _staged(progress, "finer run"), notes)
     for note in notes:
         log.info("error bars: %s", note)
     checks = [_recorded(barred, wanted)] if parts.record else []
@@ -75,13 +76,18 @@ class _Box:
         return edges.with_part(barred, self.predicted) if self.predicted else barred
 
 
+def _staged(progress: Tell | None, stage: str) -> Tell | None:
+    """Tells of a run that is not the first one."""
+    return None if progress is None else lambda told: progress(replace(told, stage=stage))
+
+
 def free(plan: Plan) -> tuple[bool, bool]:
     """Whether the job leaves step and points to be chosen."""
     axis = plan.job.keys.grid.x
     return plan.job.evolve.step is None, axis.points is None and axis.spacing is None
 
 
-def _first(record: Record, parts: ErrorBarsKeys, notes: list[str]) -> list[Difference]:
+def _first(record: Record, parts: ErrorBarsKeys, tell: Tell | None, notes: list[str]) -> list[Difference]:
     """The difference to one companion that changes all that bars are wanted for."""
     if not (parts.step or parts.grid):
         return []
@@ -89,15 +95,15 @@ def _first(record: Record, parts: ErrorBarsKeys, notes: list[str]) -> list[Diffe
     factor = weight(record, coarser=companion.coarser)
     notes.append(_note(companion, factor))
     name = "step and grid" if parts.step and parts.grid else "step" if parts.step else "grid"
-    return [Difference(name, record, simulate(companion.plan, alone=False), factor)]
+    return [Difference(name, record, simulate(companion.plan, tell, alone=False), factor)]
 
 
-def _apart(record: Record, differences: list[Difference], notes: list[str]) -> list[Difference]:
+def _apart(record: Record, differences: list[Difference], tell: Tell | None, notes: list[str]) -> list[Difference]:
     """The same difference in two parts, by a second companion that changes the step alone."""
     both = differences[0]
     companion = coarser(record.plan, points=False, until=record.steps)
     notes.append(_note(companion, both.weight))
-    between = simulate(companion.plan, alone=False)
+    between = simulate(companion.plan, tell, alone=False)
     return [Difference("step", record, between, both.weight), Difference("grid", between, both.theirs, both.weight)]
 
 
@@ -151,7 +157,9 @@ def _cost(plan: Plan) -> float:
     return plan.steps * plan.splitting.stages * plan.axis.points * math.log2(plan.axis.points)
 
 
-def _box(record: Record, differences: list[Difference], parts: ErrorBarsKeys, notes: list[str]) -> _Box:
+def _box(
+    record: Record, differences: list[Difference], parts: ErrorBarsKeys, tell: Tell | None, notes: list[str]
+) -> _Box:
     """What a larger grid changes, measured on the cheapest run there is: it hardly depends on step and spacing.
 
     Left to itself (`auto`) it is measured only where the prediction is no small share of what is wanted.
@@ -168,7 +176,7 @@ def _box(record: Record, differences: list[Difference], parts: ErrorBarsKeys, no
     if companion is None:
         return _Box(predicted=predicted)
     notes.append(_note(companion, FINER))
-    wider = simulate(companion.plan, alone=False)
+    wider = simulate(companion.plan, tell, alone=False)
     return _Box((Difference("box", cheapest, wider, FINER, edges.of_what_is_left(record)),))
 
 

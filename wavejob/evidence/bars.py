@@ -45,7 +45,7 @@ class Difference:
     def of_series(self) -> Array:
         """The weighted difference of all columns at the recorded times, (rows, columns)."""
         known = np.array([column.name not in self.skips for column in self.mine.columns])
-        return self.weight * known * _envelope(np.abs(self.mine.series - self.theirs.series))
+        return np.asarray(self.weight * known * _envelope(np.abs(self.mine.series - self.theirs.series)))
 
     def of_curve(self, curve: Curve, index: int) -> Array:
         """The weighted difference of one column of a curve, at the places of `curve`."""

@@ -50,9 +50,9 @@ def with_part(record: Record, change: float) -> Record:
 def of_what_is_left(record: Record) -> frozenset[str]:
     """Results and columns that speak of what is on the grid: another grid holds something else, and rightly so."""
     names = {"norm", "norm.final", "norm.drift", "energy.drift", "ehrenfest.position", "ehrenfest.momentum"}
-    for column in (*record.results, *record.columns):
-        kind = column.name.split(".")[0]
+    for name in [*(result.name for result in record.results), *(column.name for column in record.columns)]:
+        kind = name.split(".")[0]
         moment = kind in ("position", "momentum", "width", "force", "energy")
-        if kind == "absorbed" or column.name.endswith(".undecided") or (moment and record.plan.endings):
-            names.add(column.name)
+        if kind == "absorbed" or name.endswith(".undecided") or (moment and record.plan.endings):
+            names.add(name)
     return frozenset(names)

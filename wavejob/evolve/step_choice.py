@@ -99,7 +99,7 @@ def _trial_packets(hamiltonian: Hamiltonian, psi: Array, start: float) -> Array:
         here = float(np.interp(place, axis.x, potential))
         packets.append(local * np.exp(1j * math.sqrt(max(2 * mass * (energy - here), 0.0)) * (axis.x - place)))
     table = np.array(packets)
-    return table / np.linalg.norm(table, axis=1, keepdims=True)
+    return np.asarray(table / np.linalg.norm(table, axis=1, keepdims=True))
 
 
 def _reach(x: Array, potential: Array, density: Array, energy: float) -> tuple[float, float]:

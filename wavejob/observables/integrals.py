@@ -39,7 +39,7 @@ def spline(times: Array, values: Array) -> Any:
     """
     from scipy.interpolate import make_interp_spline
 
-    return make_interp_spline(times, values, k=min(5, 2 * ((len(times) - 1) // 2) + 1) if len(times) > 2 else 1)
+    return make_interp_spline(times, values, k=min(5, len(times) - 1))
 
 
 def running(times: Array, values: Array) -> Array:

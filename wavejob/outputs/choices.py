@@ -49,7 +49,7 @@ class CarpetScale:
             share = (np.log10(np.maximum(density, self.low)) - floor) / (math.log10(self.high) - floor)
         else:
             share = density / self.high
-        return (np.clip(share, 0, 1) * 255).round().astype(np.uint8)
+        return np.asarray((np.clip(share, 0, 1) * 255).round(), dtype=np.uint8)
 
 
 @dataclass(frozen=True)
@@ -251,7 +251,7 @@ def _comes_back(scene: Scene, energies: tuple[float, float], low: float, high: f
     cut = np.clip(np.nan_to_num(v, posinf=energies[1], neginf=energies[0]), *energies)
     start, end = np.interp([low, high], x, cut)
     within = np.concatenate([[start], cut[(x >= low) & (x <= high)], [end]])
-    return abs(end - start) < 0.6 * float(np.ptp(within))
+    return bool(abs(end - start) < 0.6 * float(np.ptp(within)))
 
 
 def _changes(x: Array, v: Array, edges: Array, energies: tuple[float, float]) -> Array:

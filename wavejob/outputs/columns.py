@@ -58,7 +58,7 @@ class Columns:
         """Phases (M,) at the middle of each column, shape (width,), radians."""
         left, share = self._neighbours()
         turned = np.exp(1j * values[left]) * (1 - share) + np.exp(1j * values[left + 1]) * share
-        return np.angle(turned)
+        return np.asarray(np.angle(turned))
 
     def _neighbours(self) -> tuple[Array, Array]:
         """The point left of each column's middle and the share of the point right of it."""
@@ -69,7 +69,7 @@ class Columns:
 
     def _inside(self) -> Array:
         half = (self.x[1] - self.x[0]) / 2
-        return (self.centres > self.x[0] - half) & (self.centres < self.x[-1] + half)
+        return np.asarray((self.centres > self.x[0] - half) & (self.centres < self.x[-1] + half))
 
 
 def rows_in_time(values: Array, times: Array, height: int) -> Array:
@@ -79,4 +79,4 @@ def rows_in_time(values: Array, times: Array, height: int) -> Array:
     wanted = times[0] + (np.arange(height) + 0.5) / height * (times[-1] - times[0])
     after = np.clip(np.searchsorted(times, wanted), 1, times.size - 1)
     share = ((wanted - times[after - 1]) / (times[after] - times[after - 1]))[:, None].astype(np.float32)
-    return values[after - 1] * (1 - share) + values[after] * share
+    return np.asarray(values[after - 1] * (1 - share) + values[after] * share)

@@ -56,10 +56,9 @@ class PacketPanel:
         self.x = panel.rect.left + np.arange(panel.rect.width) + 0.5
         draw_places(sheet, scene, panel, fine)
         self._draw_potential(fine)
-        within, moving = panel.rect, True
-        self.curve = sheet.line([], [], INK, 1.2 * fine, within=within, moving=moving, order=5)
-        self.large_curve = sheet.line([], [], DETECTOR, 1.5 * fine, within=within, moving=moving, order=5)
-        self.mean = sheet.line([], [], ENERGY, 1.0 * fine, dash=(0, (5, 3)), within=within, moving=moving)
+        self.curve = sheet.line([], [], INK, 1.2 * fine, within=panel.rect, moving=True, order=5)
+        self.large_curve = sheet.line([], [], DETECTOR, 1.5 * fine, within=panel.rect, moving=True, order=5)
+        self.mean = sheet.line([], [], ENERGY, 1.0 * fine, dash=(0, (5, 3)), within=panel.rect, moving=True)
         self.front: list[Artist] = [self.outline, self.mean, *draw_detectors(sheet, scene, panel, fine)]
 
     def _draw_potential(self, fine: float) -> None:
