@@ -79,7 +79,7 @@ class Job:
     @cached_property
     def landscape(self) -> Landscape:
         """The potential as it is meant."""
-        return Landscape(tuple(item.term(self.setting) for item in self.keys.potential))  # type: ignore[attr-defined]
+        return Landscape(tuple(item.term(self.setting) for item in self.keys.potential))
 
     @property
     def surroundings(self) -> Surroundings:

@@ -108,6 +108,7 @@ class Plan:
             start=job.evolve.start,
             stop=job.evolve.until,
             scales=scales(self),
+            accuracy=job.accuracy.first,
             fastest=fastest(job),
         )
 

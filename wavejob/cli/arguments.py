@@ -177,6 +177,9 @@ def add_reading(parser: ArgumentParser) -> None:
         "--memory", type=_size, metavar="SIZE", help="refuse jobs that need more, such as `8 GB`"
     )
     parser.add_argument(
+        "--limit", type=_duration, metavar="TIME", help="refuse jobs forecast to take longer, such as `2h`"
+    )
+    parser.add_argument(
         "--trust-paths", action="store_true", help="let files name others outside the job tree"
     )
     parser.add_argument(
@@ -213,6 +216,15 @@ def _size(text: str) -> int:
 
     try:
         return read_size(text)
+    except SizeError as error:
+        raise ArgumentTypeError(str(error)) from None
+
+
+def _duration(text: str) -> float:
+    from .sizes import SizeError, read_duration
+
+    try:
+        return read_duration(text)
     except SizeError as error:
         raise ArgumentTypeError(str(error)) from None
 

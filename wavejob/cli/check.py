@@ -21,7 +21,7 @@ def add_arguments(parser: ArgumentParser) -> None:
 
 def run(options: Namespace) -> int:
     found = gather(options)
-    ready, refused = prepare(found.jobs, options.memory)
+    ready, refused = prepare(found.jobs, options.memory, options.limit)
     warnings = [warning for one in ready for warning in one.warnings]
     mistakes = in_order(found.problems + refused)
     if options.format == "json":

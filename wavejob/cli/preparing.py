@@ -10,6 +10,7 @@ from ..forecast import Forecast, forecast
 from ..job import Job
 from ..plan import Plan, make_plan
 from ..problems import JobFileError, Problem
+from .sizes import duration
 
 
 @dataclass(frozen=True)
@@ -23,9 +24,15 @@ class Ready:
 
 
 def prepare(
-    jobs: Iterable[Job], memory: int | None, *, bars: bool = True, film: bool = True
+    jobs: Iterable[Job],
+    memory: int | None,
+    limit: float | None = None,
+    *,
+    bars: bool = True,
+    film: bool = True,
 ) -> tuple[list[Ready], list[Problem]]:
-    """Plans every job; what cannot be carried out, or needs more than `memory` bytes, becomes a problem."""
+    """Plans every job; what cannot be carried out, or needs more than `memory` bytes or `limit` seconds, becomes a
+    problem."""
     ready, problems = [], []
     for job in jobs:
         try:
@@ -33,5 +40,17 @@ def prepare(
         except JobFileError as error:
             problems += error.problems
             continue
-        ready.append(Ready(job, plan, forecast(plan, bars=bars, film=film), tuple(doubts(plan))))
+        needed = forecast(plan, bars=bars, film=film)
+        if limit is not None and needed.seconds > limit:
+            problems.append(_too_long(plan, needed.seconds, limit))
+        ready.append(Ready(job, plan, needed, tuple(doubts(plan))))
     return ready, problems
+
+
+def _too_long(plan: Plan, needed: float, limit: float) -> Problem:
+    """A run forecast to take longer than allowed."""
+    return plan.job.problem(
+        ("evolve",),
+        f"{plan.steps} steps on {plan.axis.points} points take about {duration(needed)}, more than {duration(limit)}",
+        "ask for less accuracy, shorten the run, or raise --limit",
+    )

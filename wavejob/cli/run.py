@@ -90,7 +90,7 @@ def _tasks(found: Gathered, options: Namespace) -> tuple[list[Task], list[Proble
     tasks = [Task(job, options.runs or job.tree.root / "runs") for job in found.jobs]
     by_job = {id(task.job): task for task in tasks}
     fresh = [task.job for task in tasks if options.again or task.folder.finished() is None]
-    ready, refused = prepare(fresh, options.memory, bars=not options.quick, film=not options.no_film)
+    ready, refused = prepare(fresh, options.memory, options.limit, bars=not options.quick, film=not options.no_film)
     found.problems += refused
     for one in ready:
         task = by_job[id(one.job)]

@@ -37,6 +37,17 @@ def read_size(text: str) -> int:
     return int(size)
 
 
+TIMES = {"s": 1, "min": 60, "h": 3600, "d": 86400}
+
+
+def read_duration(text: str) -> float:
+    """Seconds in a time such as `90s`, `30 min` or `2h`. Raises SizeError."""
+    found = re.fullmatch(r"\s*([0-9]+(?:\.[0-9]+)?)\s*([a-z]+)\s*", text)
+    if found is None or found[2] not in TIMES or float(found[1]) <= 0:
+        raise SizeError(f"`{text}` is no time; write a number and a unit, such as `90s`, `30min` or `2h`")
+    return float(found[1]) * TIMES[found[2]]
+
+
 def size(count: float) -> str:
     """`count` bytes in two or three digits."""
     for unit, worth in reversed([(u, w) for u, w in UNITS.items() if not u.endswith("iB")]):

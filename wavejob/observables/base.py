@@ -50,6 +50,7 @@ class Bench:
     start: float
     stop: float
     scales: Mapping[str, float]  # by dimension: initial width, initial momentum width, ...
+    accuracy: float  # error wanted, of the scale
     fastest: float  # shortest time over which a time-dependent term changes; infinity without one
 
     @property

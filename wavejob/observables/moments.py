@@ -7,7 +7,7 @@ from typing import ClassVar
 
 import numpy as np
 
-from ..results import Column
+from ..results import Check, Column
 from ..state import Look
 from .base import Bench, Meter, Observable, Outline, Series, over_time, summary
 from .integrals import Samples, running
@@ -15,6 +15,7 @@ from .interpolant import gradient
 from .swarm import ClassicalMeter, History, Swarm
 
 Array = np.ndarray
+LEAST_ENERGY_LIMIT = 1e-8  # what rounding leaves of a balance over many steps
 ABSORBED_TOO_MUCH = 1e-8  # beyond this, Ehrenfest's theorem does not hold for what is left
 
 
@@ -244,6 +245,24 @@ class EnergyMeter(Meter):
         self.open = bool(bench.hamiltonian.layers) or bench.hamiltonian.depends_on_time
         self.total, self.gain = Samples(), Samples()
         self.largest_kinetic = 0.0
+        self.drift: float | None = None
+
+    def checks(self) -> list[Check]:
+        """Whether energy change, work done and energy absorbed add up."""
+        if self.drift is None:
+            return []
+        limit = max(self.bench.accuracy, LEAST_ENERGY_LIMIT)
+        passed = self.drift <= limit
+        return [
+            Check(
+                "energy",
+                passed,
+                self.drift,
+                limit,
+                "energy change, work done and energy absorbed add up to the accuracy wanted",
+                "" if passed else "give a smaller `evolve.accuracy`, or half the `evolve.step` where it is fixed",
+            )
+        ]
 
     def sample(self, look: Look) -> None:
         kinetic = kinetic_energy(look, self.bench)
@@ -291,6 +310,7 @@ class EnergyMeter(Meter):
         if self.open:
             change = change - running(*self.gain.thinned(stride))
         drift = float(np.max(np.abs(change))) / self.largest_kinetic if self.largest_kinetic > 0 else None
+        self.drift = drift if stride == 1 else self.drift
         return {"energy.final": float(series.values[-1, 0]), "energy.drift": drift}
 
 

@@ -78,7 +78,7 @@ class PacketPanel:
 
     def tops(self, frame: int) -> Array:
         """Pixel row of the curve in each column, shape (width,)."""
-        return self.base[frame] - self.heights[frame]
+        return np.asarray(self.base[frame] - self.heights[frame])
 
     def paint(self, frame: int, pixels: Array, *, shadow: int | None = None) -> None:
         """Paints one frame onto the pixels of the sheet, shape (height, width, 4), before a frame in grey."""
@@ -102,7 +102,7 @@ class PacketPanel:
         if self.phases is None or self.scene.phase is None:
             return rgb(ENVELOPE)
         turns = self.columns.phase(self.scene.phase[frame]) / (2 * np.pi) + 0.5
-        return self.phases[np.minimum((turns * 256).astype(int), 255)]
+        return np.asarray(self.phases[np.minimum((turns * 256).astype(int), 255)])
 
 
 def fill_columns(pixels: Array, rect: Rect, tops: Array, base: float, colours: Array) -> None:
