@@ -12,6 +12,7 @@ from .job import Job
 from .misfits import axis_as_written
 from .packets.base import PacketError
 from .problems import JobFileError
+from .settings import MAX_POINTS
 
 Array = np.ndarray
 
@@ -55,7 +56,16 @@ def choose_points(job: Job, axis: Axis) -> tuple[int, str]:
     if job.landscape.depends_on_time:
         room *= 1.25
     points = max(fast_size(math.ceil(room * needed * axis.length / math.pi)), 64)
+    shown = fast_size(math.ceil(axis.length / finest_detail(job)) + 1)  # else a chosen grid would be refused
+    if points < shown <= MAX_POINTS:
+        return shown, "as many as show the finest detail of the potential"
     return points, f"{room:.3g} times the largest wave number that matters, {job.write(needed, 'wavenumber')}{why}"
+
+
+def finest_detail(job: Job) -> float:
+    """The size of the finest detail of the potential; infinity where no term has one."""
+    details = [item.body.detail() for item in job.keys.potential]
+    return min((detail[1] for detail in details if detail), default=math.inf)
 
 
 def potential_wavenumber(job: Job, axis: Axis, accuracy: float) -> float:
