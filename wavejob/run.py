@@ -36,7 +36,7 @@ from .plan import Plan, make_plan
 from .reader import Run
 from .results import Verdict
 from .simulate import Progress, Record, simulate
-from .standing import BARS, FILM, film_name, made_before, pictures, stands
+from .standing import BARS, FILM, film_name, has_bars, made_before, pictures, stands
 
 log = logging.getLogger(__name__)
 
@@ -101,7 +101,7 @@ def _carried_out(
         for key, why in plan.notes.items():
             log.info("%s: %s", key, why)
         planned = time.perf_counter()
-        no_bars, no_film = isinstance(job.keys.error_bars, str), film_name(job) is None
+        no_bars, no_film = not has_bars(job), film_name(job) is None
         record = assess(plan, progress).record if bars and not no_bars else simulate(plan, progress)
         swarmed = time.perf_counter()
         record = with_companion(record)

@@ -27,6 +27,12 @@ def made_before(folder: RunFolder) -> tuple[bool, bool]:
     return BARS not in folder.partial, FILM not in folder.partial
 
 
+def has_bars(job: Job) -> bool:
+    """Whether the job asks for error bars: rounding and recording alone are none."""
+    parts = job.keys.error_bars
+    return not isinstance(parts, str) and (parts.step or parts.grid or parts.box == "yes")
+
+
 def stands(job: Job, folder: RunFolder, *, bars: bool, film: bool) -> bool:
     """Whether a finished run has all that is wanted: with `bars` its error bars, with `film` the film as it is now."""
     done = folder.finished()
