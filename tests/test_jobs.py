@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 import json
+from collections.abc import Callable
 from functools import cache
 from pathlib import Path
 
+import numpy as np
 import pytest
 
+from tests.jobs_reference import atoms, electrons, molecules
 from tests.jobs_reference.table import REFERENCES
 from wavejob.job import Job
 from wavejob.kinds import FAMILIES
@@ -63,6 +66,24 @@ def test_expected_values_are_those_of_the_formula(name: str) -> None:
 
 def test_every_reference_belongs_to_a_job() -> None:
     assert set(REFERENCES) == set(IDS)
+
+
+@pytest.mark.parametrize(
+    ("table", "rows"),
+    [
+        ("atoms/floor.csv", atoms.floor_heights),
+        ("atoms/lattice_start.csv", atoms.bloch_start),
+        ("molecules/transfer_scan.csv", molecules.scan),
+        ("beam/pulse_trace.csv", electrons.trace_rows),
+        ("beam/model_atom.csv", electrons.model_atom),
+    ],
+)
+def test_table_holds_what_it_says(table: str, rows: Callable[[], tuple[np.ndarray, np.ndarray]]) -> None:
+    """Each table is filled from a formula, to the digits it is written with."""
+    at, values = rows()
+    stored = np.loadtxt(JOBS / table, delimiter=",", skiprows=2)
+    np.testing.assert_allclose(stored[:, 0], at, atol=1e-9)
+    np.testing.assert_allclose(stored[:, 1], values, rtol=1e-6, atol=1e-6)
 
 
 def test_every_kind_is_used() -> None:

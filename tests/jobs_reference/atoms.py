@@ -147,7 +147,7 @@ def bloch_start() -> tuple[np.ndarray, np.ndarray]:
     off = np.full(len(n) - 1, -DEPTH / 4)
     matrix = np.diag((2.0 * n) ** 2 + DEPTH / 2) + np.diag(off, 1) + np.diag(off, -1)
     share = np.linalg.eigh(matrix)[1][:, 0]
-    x = np.arange(-820, 821) * 0.04
+    x = np.arange(-1440, 1441) * 0.02
     wave = np.cos(2 * np.pi / (PERIOD * 1e6) * np.outer(x, n)) @ share * np.sign(share[15])
     return x, wave * np.exp(-((x / 8.0) ** 2))
 

@@ -87,6 +87,19 @@ def trace(t: float) -> float:
     return envelope(t, 300, 200) * float(np.cos(2 * np.pi * 1.5e-3 * (t - 300)))
 
 
+def trace_rows() -> tuple[np.ndarray, np.ndarray]:
+    """The rows of beam/pulse_trace.csv."""
+    t = np.arange(-20, 841, 20.0)
+    return t, np.array([trace(value) for value in t])
+
+
+def model_atom() -> tuple[np.ndarray, np.ndarray]:
+    """The rows of beam/model_atom.csv: the state of `kick`, not normalised."""
+    x = np.arange(-300, 301) * 0.1
+    r = np.sqrt(x**2 + 2)
+    return x, (1 + r) * np.exp(-r)
+
+
 def streak() -> dict[str, float]:
     """An electron of 1 eV and 5 nm from -150 nm in 2 V/um times the trace and 0.2 V/um exp(-t / 250 fs), for 800 fs."""
     force = EV / M_E
