@@ -45,12 +45,15 @@ def _rows(rows: Sequence[tuple[str, str, str]]) -> list[str]:
 
 
 def _value(entry: dict[str, Any]) -> str:
+    return figure_text(entry["value"], entry["error"], entry["unit"])
+
+
+def figure_text(value: float | None, error: float | None, unit: str) -> str:
     """`0.1589 +- 0.0003 nm`; the error to two digits, the value to as many decimals."""
-    value, error = entry["value"], entry["error"]
     if value is None:
         return "none"
     text = f"{value:.6g}" if error is None else _with_error(value, error)
-    return f"{text} {entry['unit']}".rstrip()
+    return f"{text} {unit}".rstrip()
 
 
 def _with_error(value: float, error: float) -> str:

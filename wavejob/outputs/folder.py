@@ -37,7 +37,7 @@ class RunFolder:
 
     def finished(self) -> dict[str, Any] | None:
         """The manifest of a finished run of this very job; None where there is none."""
-        manifest = _document(self.path / MANIFEST)
+        manifest = document(self.path / MANIFEST)
         return manifest if self._is_mine(manifest) else None
 
     @property
@@ -68,7 +68,7 @@ class RunFolder:
                     "move that folder away, or choose another place with --runs DIR",
                 )
             write_json(note, {"job": self.job, "fingerprint": self.fingerprint})
-        owner = _document(note)
+        owner = document(note)
         if not self._is_mine(owner):
             whose = f"job `{owner.get('job')}`" if owner else "something else"
             raise RunError(
@@ -95,7 +95,7 @@ def _is_own_or_folder(entry: Path) -> bool:
     return entry.is_dir() or entry.name.startswith(f".{OWNER}.")
 
 
-def _document(path: Path) -> dict[str, Any] | None:
+def document(path: Path) -> dict[str, Any] | None:
     """The JSON object in a file; None where it is missing or damaged."""
     try:
         document = json.loads(path.read_bytes())
