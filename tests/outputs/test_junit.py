@@ -60,7 +60,9 @@ def test_any_text_can_be_read_back(tmp_path_factory: pytest.TempPathFactory, tex
     folder = tmp_path_factory.mktemp("junit")
     case = Case(f"a/{text}", text, assertions=(Assertion(text, "missed", text, failed=True),))
     (failure,) = written(folder, case).iter("failure")
-    kept = "".join(c for c in text if c in "\t\n\r" or " " <= c <= "\ud7ff" or "\ue000" <= c <= "\ufffd" or c > "\uffff")
+    kept = "".join(
+        c for c in text if c in "\t\n\r" or " " <= c <= "\ud7ff" or "\ue000" <= c <= "\ufffd" or c > "\uffff"
+    )
     if kept == text:  # line ends are read as XML has it
         said = f"{text}, missed: {text}".replace("\r\n", "\n").replace("\r", "\n")
         assert failure.text == said

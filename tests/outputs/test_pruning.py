@@ -141,6 +141,15 @@ def test_a_run_that_was_begun_again_stays(runs: Path) -> None:
     assert (folder / "results.json").is_file()
 
 
+def test_a_run_that_is_gone_already_is_no_failure(runs: Path) -> None:
+    folder = stored(runs, "a", "f1", days=5)
+    stored(runs, "a", "f2")
+    (entry,) = outdated(claimed_runs(runs, runs), 1, NOW)
+    assert remove(runs, entry)
+    assert not folder.exists()
+    assert not remove(runs, entry)
+
+
 def test_a_removal_cut_short_leaves_an_unfinished_run(runs: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     folder = stored(runs, "a", "f1", days=5)
     stored(runs, "a", "f2")
@@ -153,6 +162,6 @@ def test_a_removal_cut_short_leaves_an_unfinished_run(runs: Path, monkeypatch: p
         unlink(path, missing_ok=missing_ok)
 
     monkeypatch.setattr(Path, "unlink", refuse)
-    with pytest.raises(RunError, match="could not remove .*: Permission denied; check its permissions"):
+    with pytest.raises(RunError, match=r"could not remove .*: Permission denied; check its permissions"):
         remove(runs, entry)
     assert sorted(path.name for path in folder.iterdir()) == [OWNER, "results.json"]

@@ -6,6 +6,7 @@ from argparse import ArgumentParser, Namespace
 from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass
+from os.path import exists, isdir, isfile
 from pathlib import Path
 
 from ..evidence.comparison import Comparison, Outcome, compare
@@ -135,13 +136,10 @@ def _both(paths: Sequence[Path]) -> list[Side]:
 
 def _side(path: Path) -> Side:
     """The figures that a name stands for. Raises JobFileError."""
-    try:
-        if path.is_file():
-            return Side(read_baseline(path), {})
-        if not path.is_dir():
-            raise _mistake(path, "there is no such file or folder", f"name {SIDES}")
-    except (OSError, ValueError):  # too long, or with a zero byte
-        raise _mistake(path, "is no name of a file", f"name {SIDES}") from None
+    if isfile(path):  # which also takes names that are too long, or hold a zero byte
+        return Side(read_baseline(path), {})
+    if not isdir(path):
+        raise _mistake(path, "there is no such file or folder", f"name {SIDES}")
     runs = finished_runs(path / RUNS if is_marked(path / RUNS) else path)
     if not runs:
         raise _mistake(path, "holds no finished run", "name a folder below `runs/`, or a job tree that was run")
@@ -164,9 +162,9 @@ def _write(options: Namespace) -> int:
         )
     if target.suffix != ".json":
         raise UsageError("wavejob compare", f"`{target}` does not end in .json", "write e.g. `baseline.json`")
-    if not target.parent.is_dir():
+    if not isdir(target.parent):
         raise UsageError("wavejob compare", f"there is no folder `{target.parent}`", "make it first")
-    if target.exists():
+    if exists(target):
         read_baseline(target)  # or another file would be lost
     jobs = _side(Path(options.sides[0])).jobs
     write_baseline(target, jobs)

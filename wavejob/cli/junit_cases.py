@@ -24,9 +24,9 @@ def check_target(options: Namespace) -> None:
         return
     if path.suffix != ".xml":
         raise UsageError("wavejob run", f"--junit: `{path}` does not end in .xml", "write e.g. `--junit jobs.xml`")
-    if not path.parent.is_dir():
+    if not os.path.isdir(path.parent):
         raise UsageError("wavejob run", f"--junit: there is no folder `{path.parent}`", "make it first")
-    if path.is_dir() or not os.access(path.parent, os.W_OK):
+    if os.path.isdir(path) or not os.access(path.parent, os.W_OK):
         raise UsageError("wavejob run", f"--junit: `{path}` can't be written", "choose another file")
 
 
@@ -55,7 +55,5 @@ def refused_cases(problems: Iterable[Problem], jobs: Sequence[Job]) -> list[Case
     cases = [Case(path, path, error="\n".join(one.text() for one in found)) for path, found in by_file]
     files = {case.file for case in cases}
     return cases + [
-        Case(job.id, shown(job.path), skipped="nothing was started")
-        for job in jobs
-        if shown(job.path) not in files
+        Case(job.id, shown(job.path), skipped="nothing was started") for job in jobs if shown(job.path) not in files
     ]

@@ -59,9 +59,11 @@ def _place(options: Namespace) -> tuple[Path, Path]:
     """The marked folder, and the part of it that is looked through. Raises PathError."""
     tree = find_tree(options.folder, options.tree)
     here = located(options.folder)
+    if not here.is_dir():
+        raise PathError("is no folder", "name a job tree, or a folder of runs", options.folder)
     for below in (here, tree.root / RUNS):
         kept = marked_folder(below)
-        if kept is not None and below.is_dir():
+        if kept is not None:
             return kept, below
     raise PathError("keeps no runs", "name a job tree that was run, or the folder given to --runs", options.folder)
 

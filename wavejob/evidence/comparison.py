@@ -53,9 +53,7 @@ def compare(before: Mapping[str, Measured], after: Mapping[str, Measured]) -> li
         compare_result(name, figure, after[name]) if name in after else Comparison(name, "vanished", figure, None)
         for name, figure in before.items()
     ]
-    return found + [
-        Comparison(name, "appeared", None, figure) for name, figure in after.items() if name not in before
-    ]
+    return found + [Comparison(name, "appeared", None, figure) for name, figure in after.items() if name not in before]
 
 
 def compare_result(name: str, before: Measured, after: Measured) -> Comparison:

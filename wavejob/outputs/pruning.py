@@ -54,7 +54,7 @@ def remove(kept: Path, old: Outdated) -> bool:
     Runs of another job that lie below stay. Raises RunError where the system refuses.
     """
     path = old.run.path
-    if old.run not in claimed_runs(kept, path) or _weighed(old.run, old.reason) != old:
+    if not path.is_dir() or old.run not in claimed_runs(kept, path) or _weighed(old.run, old.reason) != old:
         return False
     try:
         (path / MANIFEST).unlink(missing_ok=True)

@@ -98,4 +98,6 @@ def _moment(manifest: dict[str, Any]) -> datetime | None:
 
 
 def _unsearchable(error: OSError) -> None:
+    if isinstance(error, FileNotFoundError):  # removed meanwhile
+        return
     raise PathError(f"can't be searched: {error.strerror}", "check its permissions", Path(error.filename))
