@@ -40,7 +40,8 @@ def stored(
 ) -> Path:
     """The folder of a run that ended `days` before NOW."""
     folder = RunFolder(runs, job, fingerprint)
-    folder.begin()
+    with folder.held():
+        folder.begin()
     whose = {"job": job, "fingerprint": fingerprint}
     found = {"format": 1, **whose, "verdict": verdict, "results": results or {}, "checks": [], "expectations": []}
     write_json(folder.path / "results.json", found)

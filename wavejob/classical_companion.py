@@ -12,7 +12,8 @@ import numpy as np
 from .classical import Answer, Path, path
 from .ensemble import Followed, drawn, follow, trajectories
 from .observables.swarm import OWN_FIGURES, PREFIX, ClassicalMeter, by_newton
-from .plan import Plan, wave_numbers
+from .plan import Plan
+from .points import wave_numbers
 from .problems import RunError
 from .results import Column, Result
 from .simulate import Record, judged

@@ -146,8 +146,9 @@ class Job:
                 for name in ("grid", "potential", "edges", "packet", "evolve", "observables", "snapshots")
             },
         }
-        if "classical" in keys.model_fields_set:
-            decisive["classical"] = plain(keys.classical)
+        for name in ("classical", "error_bars"):
+            if name in keys.model_fields_set:
+                decisive[name] = plain(getattr(keys, name))
         text = json.dumps(decisive, sort_keys=True, allow_nan=False)
         return hashlib.sha256(text.encode()).hexdigest()[:10]
 

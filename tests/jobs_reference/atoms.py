@@ -78,7 +78,7 @@ def floor() -> dict[str, float]:
 def squeeze() -> dict[str, float]:
     """A second beam of 300 Hz comes on over 1 ms, on top of 100 Hz; after 6 ms."""
     def stiffness(t: float) -> float:
-        return RB87 * (TRAP**2 + (2 * np.pi * 300) ** 2 * min(max((t - 1e-3) / 1e-3, 0.0), 1.0))
+        return RB87 * (TRAP**2 + (2 * np.pi * 300) ** 2 * smooth_ramp((t - 1e-3) / 1e-3))
 
     return {"width.x.final": breathing(stiffness, RB87, 0.763e-6, 6e-3, 1e-5) * 1e6}
 

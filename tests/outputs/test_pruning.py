@@ -9,7 +9,7 @@ from pathlib import Path
 import pytest
 
 from tests.stored_runs import NOW, runs_of, stored
-from wavejob.outputs.folder import OWNER
+from wavejob.outputs.folder import LOCK, OWNER, RunFolder
 from wavejob.outputs.pruning import outdated, remove
 from wavejob.outputs.run_tree import claimed_runs
 from wavejob.problems import RunError
@@ -72,6 +72,25 @@ def test_one_file_written_to_of_late_keeps_an_unfinished_run(runs: Path) -> None
     (folder / "run.log").write_text("still at it", encoding="utf-8")
     os.utime(folder, (0, 0))
     assert may_go(runs) == []
+
+
+def test_a_run_at_work_stays_however_long_it_takes(runs: Path) -> None:
+    folder = stored(runs, "a", "f1", finished=False)
+    aged(folder, 9)
+    with RunFolder(runs, "a", "f1").held():
+        assert may_go(runs) == []
+    assert may_go(runs) == ["a/f1"]
+
+
+def test_a_finished_run_that_is_held_stays(runs: Path) -> None:
+    folder = stored(runs, "a", "f1", days=5)
+    stored(runs, "a", "f2")
+    (entry,) = outdated(claimed_runs(runs, runs), 1, NOW)
+    with RunFolder(runs, "a", "f1").held():
+        assert not remove(runs, entry)
+    assert (folder / "results.json").is_file()
+    assert remove(runs, entry)
+    assert not folder.exists()
 
 
 def test_a_finished_run_is_judged_by_its_manifest(runs: Path) -> None:
@@ -164,4 +183,4 @@ def test_a_removal_cut_short_leaves_an_unfinished_run(runs: Path, monkeypatch: p
     monkeypatch.setattr(Path, "unlink", refuse)
     with pytest.raises(RunError, match=r"could not remove .*: Permission denied; check its permissions"):
         remove(runs, entry)
-    assert sorted(path.name for path in folder.iterdir()) == [OWNER, "results.json"]
+    assert sorted(path.name for path in folder.iterdir()) == [OWNER, LOCK, "results.json"]

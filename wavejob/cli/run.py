@@ -18,6 +18,7 @@ from ..plan import Plan
 from ..problems import JobFileError, Problem, RunError, in_order
 from ..reader import Run
 from ..reading.tree import shown
+from ..standing import stands
 from . import terminal
 from .annotations import about, annotate, judged
 from .arguments import add_not_yet, add_paths, add_reading
@@ -104,8 +105,9 @@ def _tasks(found: Gathered, options: Namespace) -> tuple[list[Task], list[Proble
     """What is to be run, the most urgent first, and doubts about it; mistakes are added to those found."""
     tasks = [Task(job, options.runs or job.tree.root / "runs") for job in found.jobs]
     by_job = {id(task.job): task for task in tasks}
-    fresh = [task.job for task in tasks if options.again or task.folder.finished() is None]
-    ready, refused = prepare(fresh, options.memory, options.limit, bars=not options.quick, film=not options.no_film)
+    bars, film = not options.quick, not options.no_film
+    fresh = [t.job for t in tasks if options.again or not stands(t.job, t.folder, bars=bars, film=film)]
+    ready, refused = prepare(fresh, options.memory, options.limit, bars=bars, film=film)
     found.problems += refused
     for one in ready:
         task = by_job[id(one.job)]

@@ -13,7 +13,8 @@ from itertools import groupby
 from pathlib import Path
 
 from ..problems import RunError
-from .folder import MANIFEST, OWNER
+from .folder import LOCK, MANIFEST, OWNER
+from .lock import locked
 from .run_tree import StoredRun, claimed_runs, in_time
 
 VARIANTS = "variants.csv"  # beside the runs of a varied job: those that belong to it now
@@ -43,7 +44,7 @@ def outdated(runs: Iterable[StoredRun], keep: int, now: datetime) -> list[Outdat
         for run in ended[: max(len(ended) - keep, 0)]:
             found.append(_weighed(run, f"{keep} newer" if keep > 1 else "a newer one"))
         unfinished = [_weighed(run, "unfinished") for run in of_job if not (run.path / MANIFEST).exists()]
-        found += [entry for entry in unfinished if now - entry.touched >= AT_REST]
+        found += [old for old in unfinished if now - old.touched >= AT_REST and not _held(old.run.path / LOCK)]
     return found
 
 
@@ -54,17 +55,17 @@ def remove(kept: Path, old: Outdated) -> bool:
     Runs of another job that lie below stay. Raises RunError where the system refuses.
     """
     path = old.run.path
-    if not path.is_dir() or old.run not in claimed_runs(kept, path) or _weighed(old.run, old.reason) != old:
+    if not path.is_dir() or _weighed(old.run, old.reason) != old:
         return False
     try:
-        (path / MANIFEST).unlink(missing_ok=True)
-        for entry in sorted(path.iterdir()):
-            if entry.is_dir() and not entry.is_symlink():
-                if not any(entry.rglob(OWNER)):
-                    shutil.rmtree(entry)
-            elif entry.name != OWNER:
-                entry.unlink()
-        (path / OWNER).unlink()
+        lock = locked(path / LOCK)
+        if lock is None:
+            return False
+        with lock:
+            if old.run not in claimed_runs(kept, path):
+                return False
+            _emptied(path)
+        (path / LOCK).unlink()
     except OSError as error:
         raise RunError(f"could not remove `{path}`: {error.strerror}", "check its permissions") from error
     for folder in (path, *path.parents):
@@ -73,6 +74,32 @@ def remove(kept: Path, old: Outdated) -> bool:
         with contextlib.suppress(OSError):  # other runs are in it
             folder.rmdir()
     return True
+
+
+def _emptied(path: Path) -> None:
+    """Removes all but the lock, which some systems do not let go of while it is held, and runs of other jobs."""
+    (path / MANIFEST).unlink(missing_ok=True)
+    for entry in sorted(path.iterdir()):
+        if entry.is_dir() and not entry.is_symlink():
+            if not any(entry.rglob(OWNER)):
+                shutil.rmtree(entry)
+        elif entry.name not in (OWNER, LOCK):
+            entry.unlink()
+    (path / OWNER).unlink()
+
+
+def _held(lock: Path) -> bool:
+    """Whether a process is at work in a folder, or may be: its lock cannot be tried."""
+    if not lock.exists():
+        return False
+    try:
+        mine = locked(lock)
+    except OSError:
+        return True
+    if mine is None:
+        return True
+    with mine:
+        return False
 
 
 def _weighed(run: StoredRun, reason: str) -> Outdated:
