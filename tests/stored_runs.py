@@ -37,6 +37,7 @@ def stored(
     days: float = 0,
     finished: bool = True,
     verdict: str = "trusted",
+    variant: Mapping[str, str] | None = None,
 ) -> Path:
     """The folder of a run that ended `days` before NOW."""
     folder = RunFolder(runs, job, fingerprint)
@@ -47,5 +48,5 @@ def stored(
     write_json(folder.path / "results.json", found)
     if finished:
         ended = (NOW - timedelta(days=days)).isoformat()
-        write_json(folder.path / MANIFEST, {"format": 1, **whose, "ended": ended, "partial": []})
+        write_json(folder.path / MANIFEST, {"format": 1, **whose, "ended": ended, "partial": [], "variant": variant})
     return folder.path

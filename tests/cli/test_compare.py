@@ -53,6 +53,18 @@ def test_the_newest_finished_run_of_each_job_counts(call: Call, runs: Path, othe
     assert call("compare", ".", "other").code == 0
 
 
+def test_variants_are_compared_each_with_its_like(call: Call, runs: Path, others: Path) -> None:
+    for name, results, fingerprint in (("2 nm", T, "f1"), ("3 nm", T_FAR, "f2"), ("9 nm", T, "f3")):
+        stored(runs, "a", fingerprint, results, variant={"b2": name})
+    (runs / "a" / "variants.csv").write_text("b2 [nm],T.total,fingerprint\n2,0.1,f1\n3,0.1,f2\n", encoding="utf-8")
+    for name, results, fingerprint in (("2 nm", T_NEAR, "f1"), ("3 nm", T, "f2")):
+        stored(others, "a", fingerprint, results, variant={"b2": name})
+    found = call("compare", ".", "other")
+    assert found.out.startswith("a (b2 = 3 nm)\n  T.total  differs")
+    assert found.err == "2 jobs compared: 3 same, 1 differs\n"
+    assert call("compare", "runs/a/f1", "runs/a/f3").out == ""  # named by itself, an earlier variant counts
+
+
 def test_jobs_and_results_that_only_one_side_has(call: Call, runs: Path, others: Path) -> None:
     stored(runs, "gone", "f1", T)
     stored(runs, "kept", "f1", {"norm.final": figure(1.0), "old": figure(2.0, 0.1, "nm")})

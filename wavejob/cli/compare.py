@@ -141,9 +141,9 @@ def _side(path: Path) -> Side:
     if not isdir(path):
         raise _mistake(path, "there is no such file or folder", f"name {SIDES}")
     runs = finished_runs(path / RUNS if is_marked(path / RUNS) else path)
-    if not runs:
-        raise _mistake(path, "holds no finished run", "name a folder below `runs/`, or a job tree that was run")
     chosen = newest(runs)
+    if not chosen:
+        raise _mistake(path, "holds no finished run", "name a folder below `runs/`, or a job tree that was run")
     figures = {job: read_figures(one) for job, one in chosen.items()}
     folders = {job: shown(one.path) for job, one in chosen.items()}
     return Side(figures, folders, len(chosen) == 1 and _is_named(path, runs))

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import contextlib
 import os
-import re
 import shutil
 from collections.abc import Iterable
 from dataclasses import dataclass
@@ -15,9 +14,8 @@ from pathlib import Path
 from ..problems import RunError
 from .folder import LOCK, MANIFEST, OWNER
 from .lock import locked
-from .run_tree import StoredRun, claimed_runs, in_time
+from .run_tree import StoredRun, claimed_runs, current_variants, in_time
 
-VARIANTS = "variants.csv"  # beside the runs of a varied job: those that belong to it now
 AT_REST = timedelta(days=1)  # an unfinished run that was written to since may still be at work
 
 
@@ -39,7 +37,7 @@ def outdated(runs: Iterable[StoredRun], keep: int, now: datetime) -> list[Outdat
     found = []
     for _, group in groupby(sorted(runs, key=lambda run: run.job), key=lambda run: run.job):
         of_job = list(group)
-        together = _variants(of_job[0].path.parent)
+        together = current_variants(of_job[0].path.parent)
         ended = in_time(run for run in of_job if run.fingerprint not in together)
         for run in ended[: max(len(ended) - keep, 0)]:
             found.append(_weighed(run, f"{keep} newer" if keep > 1 else "a newer one"))
@@ -113,11 +111,3 @@ def _weighed(run: StoredRun, reason: str) -> Outdated:
                 found.append((here / file).lstat())
     touched = datetime.fromtimestamp(max(entry.st_mtime for entry in found), UTC)
     return Outdated(run, reason, touched, sum(entry.st_size for entry in found[1:]))
-
-
-def _variants(job: Path) -> set[str]:
-    """Every word in the table of variants of a job's folder, fingerprints among them; empty where there is none."""
-    try:
-        return set(re.findall(r"\w+", (job / VARIANTS).read_text(encoding="utf-8", errors="replace")))
-    except FileNotFoundError:
-        return set()

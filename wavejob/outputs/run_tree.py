@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Iterable, Iterator
+import re
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
@@ -13,16 +14,24 @@ from ..reading.tree import PathError, is_marked
 from .folder import MANIFEST, OWNER, RunFolder, document
 
 RUNS = "runs"
+VARIANTS = "variants.csv"  # beside the runs of a varied job: those that belong to it now
 
 
 @dataclass(frozen=True)
 class StoredRun:
-    """One run folder; `ended` is None while it is unfinished."""
+    """One run folder; `ended` is None while it is unfinished, `variant` says what sets it apart in a varied job."""
 
     path: Path
     job: str
     fingerprint: str
     ended: datetime | None
+    variant: tuple[tuple[str, str], ...] = ()
+
+    @property
+    def name(self) -> str:
+        """The job, and what sets a variant apart: `stack/scan (b2 = 2.9 nm)`."""
+        apart = ", ".join(f"{key} = {value}" for key, value in self.variant)
+        return f"{self.job} ({apart})" if apart else self.job
 
 
 def finished_runs(folder: Path) -> list[StoredRun]:
@@ -36,11 +45,16 @@ def finished_runs(folder: Path) -> list[StoredRun]:
     return found
 
 
-def newest(runs: Iterable[StoredRun]) -> dict[str, StoredRun]:
-    """The finished run of each job that ended last, jobs in order of name."""
+def newest(runs: Sequence[StoredRun]) -> dict[str, StoredRun]:
+    """By name, the finished run of each job or variant that ended last, in order of name.
+
+    Variants that the table beside them no longer lists are left out, unless there is no other run.
+    """
     chosen: dict[str, StoredRun] = {}
     for run in in_time(runs):
-        chosen[run.job] = run
+        listed = current_variants(run.path.parent) if run.variant and len(runs) > 1 else set()
+        if not listed or run.fingerprint in listed:
+            chosen[run.name] = run
     return dict(sorted(chosen.items()))
 
 
@@ -69,6 +83,14 @@ def claimed_runs(kept: Path, below: Path) -> list[StoredRun]:
     return found
 
 
+def current_variants(job: Path) -> set[str]:
+    """Every word in the table of variants of a job's folder, fingerprints among them; empty where there is none."""
+    try:
+        return set(re.findall(r"\w+", (job / VARIANTS).read_text(encoding="utf-8", errors="replace")))
+    except FileNotFoundError:
+        return set()
+
+
 def marked_folder(path: Path) -> Path | None:
     """The marked folder that `path` is or lies in."""
     return next((folder for folder in (path, *path.parents) if is_marked(folder)), None)
@@ -83,10 +105,11 @@ def _folders(top: Path) -> Iterator[Path]:
 
 
 def _described(path: Path, note: dict[str, Any] | None, ended: datetime | None) -> StoredRun | None:
-    job, fingerprint = ((note or {}).get(key) for key in ("job", "fingerprint"))
+    job, fingerprint, variant = ((note or {}).get(key) for key in ("job", "fingerprint", "variant"))
     if not isinstance(job, str) or not isinstance(fingerprint, str):
         return None
-    return StoredRun(path, job, fingerprint, ended)
+    apart = tuple((key, str(value)) for key, value in variant.items()) if isinstance(variant, dict) else ()
+    return StoredRun(path, job, fingerprint, ended, apart)
 
 
 def _moment(manifest: dict[str, Any]) -> datetime | None:
