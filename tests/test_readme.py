@@ -63,7 +63,9 @@ def test_commands_are_found_as_continuous_integration_finds_them(mark: str) -> N
 
 def test_commands_are_quoted_everywhere() -> None:
     assert {page for page, _ in QUOTED} >= {"README.md", "DEVELOPERS.md", "fingerprint.md"}
-    assert {command.split()[0] for command in COMMANDS} == {"check", "run", "explain", "schema", "new"}
+    assert {command.split()[0] for command in COMMANDS} == {
+        "check", "run", "compare", "prune", "explain", "schema", "new",
+    }  # fmt: skip
 
 
 @pytest.mark.parametrize("command", COMMANDS)

@@ -9,7 +9,8 @@ from pathlib import Path
 import pytest
 
 from wavejob import checks, job, plan, reference, timetable, wigner
-from wavejob.evidence import assess, bars, companions
+from wavejob.cli import prune
+from wavejob.evidence import assess, bars, companions, comparison
 from wavejob.loading import parse
 from wavejob.outputs.folder import OWNER
 from wavejob.reading import merging
@@ -100,6 +101,8 @@ def test_every_part_of_an_error_is_described(folder: Path) -> None:
         ("choices", r"`evolve.accuracy` \| (\S+) \|", job.DEFAULT_ACCURACY),
         ("choices", r"about (\d+) rows", timetable.ROWS),
         ("choices", r"about (\d+) frames", plan.FRAMES),
+        ("compare", r"agree to (\S+) of themselves", comparison.ROUNDING),
+        ("prune", r"newest first: (\d+) if left out", prune.KEPT),
         ("classical-companion", r"spread of (\d+) groups", wigner.GROUPS),
     ],
 )

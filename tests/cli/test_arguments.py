@@ -16,10 +16,14 @@ MISTAKES = [
     (
         "",
         "wavejob: no command given; "
-        "there are: check, run, explain, schema, new, doctor; see `wavejob --help`",
+        "there are: check, run, compare, prune, explain, schema, new, doctor; see `wavejob --help`",
     ),
     ("chek job.yml", "wavejob: no command `chek`; did you mean `check`?"),
-    ("report", "wavejob: `report` is not available yet; there are: check, run, explain, schema, new, doctor"),
+    (
+        "report",
+        "wavejob: `report` is not available yet; "
+        "there are: check, run, compare, prune, explain, schema, new, doctor",
+    ),
     ("check", "wavejob check: no job file given; name a job file or a folder of them"),
     ("check --memroy 3", "wavejob check: no option `--memroy`; did you mean `--memory`?"),
     ("check -x", "wavejob check: no option `-x`; see `wavejob check --help`"),
@@ -36,7 +40,7 @@ MISTAKES = [
     ("check --strict=yes job.yml", "wavejob check: `--strict` takes no value; write `--strict` alone"),
     ("check --format jsn job.yml", "wavejob check: --format: no `jsn`; did you mean `json`?"),
     ("run --workers 4 job.yml", "wavejob run: `--workers` is not available yet; leave it out"),
-    ("run --junit=a.xml job.yml", "wavejob run: `--junit` is not available yet; leave it out"),
+    ("run --on dask:host job.yml", "wavejob run: `--on` is not available yet; leave it out"),
     (
         "schema job.yml",
         "wavejob schema: does not know what to do with `job.yml`; see `wavejob schema --help`",

@@ -6,6 +6,7 @@ from argparse import ArgumentParser, Namespace
 
 from ..problems import in_order
 from . import terminal
+from .annotations import annotate
 from .arguments import add_paths, add_reading
 from .gathering import gather, tally
 from .json_report import job_entry, show_json
@@ -24,6 +25,7 @@ def run(options: Namespace) -> int:
     ready, refused = prepare(found.jobs, options.memory, options.limit)
     warnings = [warning for one in ready for warning in one.warnings]
     mistakes = in_order(found.problems + refused)
+    annotate(in_order(mistakes + warnings), quiet=options.quiet)
     if options.format == "json":
         jobs = [job_entry(one.job.id, one.job.fingerprint, "checked", forecast=one.forecast) for one in ready]
         show_json("check", in_order(mistakes + warnings), jobs)

@@ -4,23 +4,30 @@ from __future__ import annotations
 
 import time
 from argparse import ArgumentParser, Namespace
-from dataclasses import dataclass
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from ..forecast import Forecast
 from ..job import Job
 from ..outputs.folder import RunFolder
+from ..outputs.junit import Case, write_junit
 from ..plan import Plan
 from ..problems import JobFileError, Problem, RunError, in_order
+from ..reader import Run
 from ..reading.tree import shown
 from ..standing import stands
 from . import terminal
+from .annotations import about, annotate, judged
 from .arguments import add_not_yet, add_paths, add_reading
 from .gathering import Gathered, doubled, gather, tally
 from .json_report import job_entry, show_json
+from .junit_cases import assertions, check_target, refused_cases
 from .preparing import prepare
 from .progress import log_line, watched
+from .results import result_table
 from .sizes import counted, duration
 
 if TYPE_CHECKING:
@@ -37,6 +44,8 @@ class Task:
     forecast: Forecast | None = None
     status: str = "not started"
     verdict: str | None = None
+    seconds: float = 0.0
+    error: str = ""  # why it could not be carried out
 
     @property
     def folder(self) -> RunFolder:
@@ -58,29 +67,35 @@ def add_arguments(parser: ArgumentParser) -> None:
     parser.add_argument("--again", action="store_true", help="compute again what is there already")
     parser.add_argument("--quick", action="store_true", help="no error bars")
     parser.add_argument("--no-film", action="store_true", help="draw no film")
+    parser.add_argument(
+        "--junit", type=Path, metavar="FILE", help="write what became of each job as JUnit XML, for code hosts"
+    )
     add_reading(parser)
-    add_not_yet(parser, "--workers", "--by", "--checkpoint", "--on", "--junit")
+    add_not_yet(parser, "--workers", "--by", "--checkpoint", "--on")
 
 
 def run(options: Namespace) -> int:
+    check_target(options)
+    started = datetime.now(UTC)
     found = gather(options)
     if options.runs:
         found.problems += doubled(found.jobs)
     tasks, warnings = _tasks(found, options)
     if found.problems:
+        if options.junit:
+            write_junit(options.junit, refused_cases(found.problems, found.jobs), started)
         return _refused(found, options)
     if not options.quiet:
         for warning in warnings:
             terminal.say(warning.text())
+    annotate(warnings, quiet=options.quiet)
     try:
         for task in tasks:
             _carry_out(task, options)
     except KeyboardInterrupt as stop:
-        if options.format == "json":
-            show_json("run", warnings, [task.entry for task in tasks])
+        _told(tasks, warnings, options, started)
         raise type(stop)(_kept(tasks)) from None
-    if options.format == "json":
-        show_json("run", warnings, [task.entry for task in tasks])
+    _told(tasks, warnings, options, started)
     if len(tasks) > 1 and not options.quiet:
         terminal.say(_summary(tasks))
     return _exit_code(tasks, strict=options.strict, warned=bool(warnings))
@@ -107,8 +122,24 @@ def _tasks(found: Gathered, options: Namespace) -> tuple[list[Task], list[Proble
     return sorted(tasks, key=lambda task: -task.job.keys.priority), warnings
 
 
+def _told(tasks: list[Task], warnings: list[Problem], options: Namespace, started: datetime) -> None:
+    """What programs read of a batch that has ended."""
+    if options.format == "json":
+        show_json("run", warnings, [task.entry for task in tasks])
+    if options.junit:
+        write_junit(options.junit, [_case(task, strict=options.strict) for task in tasks], started)
+
+
+def _case(task: Task, *, strict: bool) -> Case:
+    case = Case(task.job.id, shown(task.job.path), task.seconds, error=task.error)
+    if task.status in ("done", "up to date"):
+        return replace(case, assertions=assertions(Run(task.folder.path).document, strict=strict))
+    return case if task.error else replace(case, skipped=task.status)
+
+
 def _refused(found: Gathered, options: Namespace) -> int:
     problems = in_order(found.problems)
+    annotate(problems)
     if options.format == "json":
         show_json("run", problems, [])
         return 2
@@ -127,25 +158,37 @@ def _carry_out(task: Task, options: Namespace) -> None:
     task.status = "stopped"  # unless it ends below
     try:
         finished = _run(task, options)
-    except (RunError, JobFileError) as error:
-        task.status, task.verdict = "failed", "failed"
-        terminal.say(f"{task.job.id}: {error}")
+    except JobFileError as error:
+        _failed(task, str(error), error.problems)
+        return
+    except RunError as error:
+        _failed(task, str(error))
         return
     except MemoryError:
-        task.status, task.verdict = "failed", "failed"
-        terminal.say(f"{task.job.id}: the memory is used up; take fewer points, or stop other programs")
+        _failed(task, "the memory is used up; take fewer points, or stop other programs")
         return
     except Exception as error:
         from .bugs import report
 
         task.status, task.verdict = "failed", "failed"
+        task.error = f"an error inside wavejob ({type(error).__name__}: {error})"
         report(error, verbose=options.verbose, doing=task.job.id)
         return
+    finally:
+        task.seconds = time.monotonic() - begun
     task.status, task.verdict, task.plan = finished.status, finished.verdict, None
     if not options.quiet:
-        _say_ended(task, time.monotonic() - begun)
+        _say_ended(task)
     if options.format == "text":
         _show(task)
+    annotate(judged(task.job, Run(task.folder.path).document), quiet=options.quiet)
+
+
+def _failed(task: Task, said: str, problems: Sequence[Problem] = ()) -> None:
+    """Notes and tells why a job could not be carried out."""
+    task.status, task.verdict, task.error = "failed", "failed", said
+    terminal.say(f"{task.job.id}: {said}")
+    annotate(problems or [about(task.job, said)])
 
 
 def _run(task: Task, options: Namespace) -> Finished:
@@ -165,18 +208,15 @@ def _run(task: Task, options: Namespace) -> Finished:
 
 
 def _show(task: Task) -> None:
-    from ..reader import Run
-    from .results import result_table
-
     job = task.job
     title = f"{job.id}: {job.title}" if job.title != job.id else job.id
     terminal.show(result_table(title, shown(task.folder.path), Run(task.folder.path)))
 
 
-def _say_ended(task: Task, seconds: float) -> None:
+def _say_ended(task: Task) -> None:
     said = f"{task.job.id}: {task.status}, {task.verdict}"
     if task.status == "done":
-        said += f", {duration(seconds)}"
+        said += f", {duration(task.seconds)}"
     if terminal.is_live():
         terminal.say(said)
     else:
@@ -207,8 +247,6 @@ def _exit_code(tasks: list[Task], *, strict: bool, warned: bool) -> int:
 
 
 def _undecided(task: Task) -> bool:
-    from ..reader import Run
-
     if task.verdict != "doubtful":
         return False
     return any(entry["outcome"] == "undecided" for entry in Run(task.folder.path).document["expectations"])

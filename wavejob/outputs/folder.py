@@ -41,8 +41,8 @@ class RunFolder:
 
     def finished(self) -> dict[str, Any] | None:
         """The manifest of a finished run of this very job; None where it, or what was found, is missing or damaged."""
-        manifest = _document(self.path / MANIFEST)
-        whole = self._is_mine(manifest) and self._is_mine(_document(self.path / RESULTS))
+        manifest = document(self.path / MANIFEST)
+        whole = self._is_mine(manifest) and self._is_mine(document(self.path / RESULTS))
         return manifest if whole else None
 
     @property
@@ -89,7 +89,7 @@ class RunFolder:
                     "move that folder away, or choose another place with --runs DIR",
                 )
             write_json(note, {"job": self.job, "fingerprint": self.fingerprint})
-        owner = _document(note)
+        owner = document(note)
         if not self._is_mine(owner):
             whose = f"job `{owner.get('job')}`" if owner else "something else"
             raise RunError(
@@ -116,7 +116,7 @@ def _is_own_or_folder(entry: Path) -> bool:
     return entry.is_dir() or entry.name == LOCK or entry.name.startswith(f".{OWNER}.")
 
 
-def _document(path: Path) -> dict[str, Any] | None:
+def document(path: Path) -> dict[str, Any] | None:
     """The JSON object in a file; None where it is missing or damaged."""
     try:
         document = json.loads(path.read_bytes())

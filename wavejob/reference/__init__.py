@@ -24,6 +24,9 @@ TOPICS = (
     "verdict",
     "run-folder",
     "fingerprint",
+    "compare",
+    "prune",
+    "pipelines",
     "commands",
 )
 
