@@ -22,7 +22,8 @@ def free_gaussian(x: Array, t: float, *, at: float, sigma: float, k: float, mass
 
 
 def free_width(t: float, sigma: float, mass: float = 1.0) -> float:
-    """Standard deviation of position (Darwin 1927); the same in a uniform field (E. H. Kennard, Z. Phys. 44 (1927) 326)."""
+    """Standard deviation of position (Darwin 1927); the same in a uniform field (E. H. Kennard,
+    Z. Phys. 44 (1927) 326)."""
     return float(sigma * np.hypot(1, t / (2 * mass * sigma**2)))
 
 

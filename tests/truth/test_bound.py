@@ -10,7 +10,6 @@ import numpy as np
 import pytest
 from scipy.special import mathieu_a, mathieu_b
 
-from tests.truth import formulas as f
 from tests.truth.running import autocorrelation, column, level, resolution, run, value
 
 
@@ -21,7 +20,8 @@ grid: {{x: {{{grid}}}}}
 potential: [{{harmonic: {{at: 0, omega: 1}}}}]
 packet: {{gaussian: {{{packet}}}}}
 evolve: {{until: {until!r}, accuracy: {accuracy}}}
-observables: [norm, position, momentum, width, energy, force, ehrenfest, autocorrelation, {{overlap: {{name: back, with: start}}}}]
+observables:
+  [norm, position, momentum, width, energy, force, ehrenfest, autocorrelation, {{overlap: {{name: back, with: start}}}}]
 """)
 
 
@@ -62,45 +62,83 @@ def test_squeezed_state_breathes():
 LEVELS = {
     # name: (grid, potential, mass, packet, run length, levels by source)
     "oscillator": (
-        "from: -10, to: 10", "harmonic: {at: 0, omega: 1}", 1, "at: 1, sigma: 0.6", 60, [0.5, 1.5, 2.5]
+        "from: -10, to: 10",
+        "harmonic: {at: 0, omega: 1}",
+        1,
+        "at: 1, sigma: 0.6",
+        60,
+        [0.5, 1.5, 2.5],
     ),  # n + 1/2
     # Hioe & Montroll, J. Math. Phys. 16 (1975) 1945, H = p^2 + x^4 and p^2 + x^2 + x^4
     "quartic": (
-        "from: -5, to: 5", "polynomial: {at: 0, coefficients: [0, 0, 0, 0, 1]}", 0.5, "at: 0.9, sigma: 0.45", 60,
+        "from: -5, to: 5",
+        "polynomial: {at: 0, coefficients: [0, 0, 0, 0, 1]}",
+        0.5,
+        "at: 0.9, sigma: 0.45",
+        60,
         [1.06036209048418, 3.79967302980139, 7.45569793798674],
     ),
     "quadratic and quartic": (
-        "from: -5, to: 5", "polynomial: {at: 0, coefficients: [0, 0, 1, 0, 1]}", 0.5, "at: 0.5, sigma: 0.4", 30,
+        "from: -5, to: 5",
+        "polynomial: {at: 0, coefficients: [0, 0, 1, 0, 1]}",
+        0.5,
+        "at: 0.5, sigma: 0.4",
+        30,
         [1.39235164153029, 4.64881270421208],
     ),
     # p^2 / 2 + x^2 / 2 + x^4, same source
     "strong quartic": (
-        "from: -5, to: 5", "polynomial: {at: 0, coefficients: [0, 0, 0.5, 0, 1]}", 1, "at: 0.3, sigma: 0.45", 40,
+        "from: -5, to: 5",
+        "polynomial: {at: 0, coefficients: [0, 0, 0.5, 0, 1]}",
+        1,
+        "at: 0.3, sigma: 0.45",
+        40,
         [0.8037706512343],
     ),
     # G. Poeschl & E. Teller, Z. Phys. 83 (1933) 143: -(lambda - n)^2 / 2 for lambda = 3
     "Poeschl-Teller": (
-        "from: -40, to: 40", "sech2: {at: 0, width: 1, height: -6}", 1, "at: 0.4, sigma: 0.5", 60, [-4.5, -2.0]
+        "from: -40, to: 40",
+        "sech2: {at: 0, width: 1, height: -6}",
+        1,
+        "at: 0.4, sigma: 0.5",
+        60,
+        [-4.5, -2.0],
     ),
     # W.-C. Liu & C. W. Clark, J. Phys. B 25 (1992) L517: exactly -1/2 for a softening of sqrt 2
     "soft Coulomb, exact": (
-        "from: -150, to: 150", "soft_coulomb: {at: 0, strength: -1, softening: 1.4142135623730951}", 1,
-        "at: 0, sigma: 1.3", 150, [-0.5],
+        "from: -150, to: 150",
+        "soft_coulomb: {at: 0, strength: -1, softening: 1.4142135623730951}",
+        1,
+        "at: 0, sigma: 1.3",
+        150,
+        [-0.5],
     ),
     # J. Javanainen, J. H. Eberly & Q. Su, Phys. Rev. A 38 (1988) 3430: -0.67, -0.275; more digits by a dense matrix
     "soft Coulomb": (
-        "from: -150, to: 150", "soft_coulomb: {at: 0, strength: -1, softening: 1}", 1, "at: 0.7, sigma: 1", 150,
+        "from: -150, to: 150",
+        "soft_coulomb: {at: 0, strength: -1, softening: 1}",
+        1,
+        "at: 0.7, sigma: 1",
+        150,
         [-0.669777138, -0.2748913],
     ),
     # V = |x|: zeros of Ai' and Ai over 2^(1/3), NIST DLMF table 9.9.1. A corner of a formula is taken at the points
     # as they are, so they are written: spacing^2 / 12 times |psi(0)|^2 is left, 4e-5
     "wedge": (
-        "from: -12, to: 12, points: 800", "formula: {value: abs(x)}", 1, "at: 1.2, sigma: 0.7", 150,
+        "from: -12, to: 12, points: 800",
+        "formula: {value: abs(x)}",
+        1,
+        "at: 1.2, sigma: 0.7",
+        150,
         [1.018792971647471 / 2 ** (1 / 3), 2.338107410459767 / 2 ** (1 / 3), 3.248197582179837 / 2 ** (1 / 3)],
     ),
     # k tan(k a / 2) = kappa and its odd partner, depth 4, width 2 (Landau & Lifshitz, section 22)
     "rectangular well": (
-        "from: -12, to: 12", "well: {from: -1, to: 1, depth: 4}", 1, "at: 0.4, sigma: 0.6", 60,
+        "from: -12, to: 12",
+        "well: {from: -1, to: 1, depth: 4}",
+        1,
+        "at: 0.4, sigma: 0.6",
+        60,
         [-3.33702286916, -1.50880543887],
     ),
 }
@@ -126,8 +164,8 @@ observables: [norm, autocorrelation]
 
 def test_tunnelling_through_the_wall_of_a_double_well():
     """Source: J. Zinn-Justin & U. D. Jentschura, Ann. Phys. 313 (2004) 197: V = x^2 (1 - sqrt(g) x)^2 / 2 splits its
-    lowest level by (2 / sqrt(pi g)) exp(-1 / 6 g) (1 - 71 g / 12 - ...), good to a few per cent at g = 0.03, where a dense
-    matrix gives 0.0198353011. A packet in one well is in the other after pi / splitting = 158.384."""
+    lowest level by (2 / sqrt(pi g)) exp(-1 / 6 g) (1 - 71 g / 12 - ...), good to a few per cent at g = 0.03, where a
+    dense matrix gives 0.0198353011. A packet in one well is in the other after pi / splitting = 158.384."""
     g, splitting = 0.03, 0.0198353011
     series = 2 / np.sqrt(np.pi * g) * np.exp(-1 / (6 * g))
     series *= 1 - 71 / 12 * g - 6299 / 288 * g**2 - 2691107 / 10368 * g**3
@@ -207,8 +245,8 @@ def lowest_band(x: np.ndarray, depth: float) -> np.ndarray:
 
 @pytest.mark.slow
 def test_bloch_oscillation(tmp_path):
-    """Source: F. Bloch 1929; M. Ben Dahan et al., Phys. Rev. Lett. 76 (1996) 4508: under a force F a packet of the lowest
-    band swings by the band's width (Mathieu) over F, 20.355 here, and is back after 2 pi hbar / F d = 400.
+    """Source: F. Bloch 1929; M. Ben Dahan et al., Phys. Rev. Lett. 76 (1996) 4508: under a force F a packet of the
+    lowest band swings by the band's width (Mathieu) over F, 20.355 here, and is back after 2 pi hbar / F d = 400.
 
     The mean over the packet's wave numbers, 20.3394, was found apart from this package, which reached 20.3372 too: the
     field mixes bands a little. Tolerance: that difference."""

@@ -13,8 +13,8 @@ GROUND = "gaussian: {at: 0, sigma: 0.7071067811865476}"
 
 
 def test_forced_oscillator():
-    """Source: K. Husimi, Prog. Theor. Phys. 9 (1953) 381: a force f(t) = exp(-t^2 / 2) leaves the ground state with a mean
-    of |integral of f exp(i t)|^2 / 2 = pi / e quanta, and the ground state itself with exp(-pi / e)."""
+    """Source: K. Husimi, Prog. Theor. Phys. 9 (1953) 381: a force f(t) = exp(-t^2 / 2) leaves the ground state with a
+    mean of |integral of f exp(i t)|^2 / 2 = pi / e quanta, and the ground state itself with exp(-pi / e)."""
     record = run(f"""
 units: natural
 grid: {{x: {{from: -12, to: 12}}}}
@@ -86,8 +86,8 @@ observables:
 
 
 def test_inverted_oscillator():
-    """Source: G. Barton, Ann. Phys. 166 (1986) 322: <x> = x0 cosh t + k sinh t, sigma^2 = s^2 cosh^2 t + sinh^2 t / 4 s^2,
-    and the probability beyond the top is (1/2) erfc(-<x> / sqrt 2 sigma)."""
+    """Source: G. Barton, Ann. Phys. 166 (1986) 322: <x> = x0 cosh t + k sinh t, sigma^2 = s^2 cosh^2 t +
+    sinh^2 t / 4 s^2, and the probability beyond the top is (1/2) erfc(-<x> / sqrt 2 sigma)."""
     record = run("""
 units: natural
 grid: {x: {from: -50, to: 50}}
@@ -104,8 +104,8 @@ observables: [position, width, energy, {inside: {name: beyond, from: 0, to: 50}}
 
 
 def test_kapitza_dirac():
-    """Source: P. L. Kapitza & P. A. M. Dirac 1933, in the Raman-Nath limit (P. L. Gould et al., Phys. Rev. Lett. 56 (1986)
-    827): a standing wave flashed for a short time sends J_n(theta)^2 into order n, so <p^2> / 2m grows by
+    """Source: P. L. Kapitza & P. A. M. Dirac 1933, in the Raman-Nath limit (P. L. Gould et al., Phys. Rev. Lett. 56
+    (1986) 827): a standing wave flashed for a short time sends J_n(theta)^2 into order n, so <p^2> / 2m grows by
     (2 theta)^2 / 4 for V = V0 cos 2x, theta = V0 tau = 1. The flash lasts 0.01: a correction of (4 tau)^2 = 1.6e-3."""
     record = run(f"""
 units: natural
@@ -126,8 +126,8 @@ observables: [energy, momentum_density, {{overlap: {{name: straight, with: start
 
 def test_a_well_that_moves_carries_its_packet():
     """Source: Galilei: a well that moves by a quintic ramp, its own acceleration F = m a added, keeps its ground state
-    exactly; without, a slow harmonic well carries it (A. Couvert et al., EPL 83 (2008) 13001): the packet is left with the
-    amplitude |integral of x0''(t) exp(i omega t)| / omega."""
+    exactly; without, a slow harmonic well carries it (A. Couvert et al., EPL 83 (2008) 13001): the packet is left with
+    the amplitude |integral of x0''(t) exp(i omega t)| / omega."""
     record = run(f"""
 units: natural
 grid: {{x: {{from: -10, to: 20}}}}

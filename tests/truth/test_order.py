@@ -14,10 +14,14 @@ POTENTIALS = {
     "smooth": ("sech2: {at: 0, width: 1.5, height: 1}", 200, 160),
     "square barrier": ("barrier: {from: -1, to: 1, height: 1}", 400, 625),
     "changing": (
-        "gaussian: {at: 0, sigma: 1, height: 1.5}\n    in_time: {sine: {amplitude: 1, frequency: 0.3, offset: 1}}", 200, 160
+        "gaussian: {at: 0, sigma: 1, height: 1.5}\n    in_time: {sine: {amplitude: 1, frequency: 0.3, offset: 1}}",
+        200,
+        160,
     ),
     "moving edge": (
-        "barrier: {from: -1, to: 1, height: 1}\n    path: {x: {sine: {amplitude: 2, frequency: 0.05}}}", 400, 625
+        "barrier: {from: -1, to: 1, height: 1}\n    path: {x: {sine: {amplitude: 2, frequency: 0.05}}}",
+        400,
+        625,
     ),
 }
 RUN = 10
@@ -41,8 +45,9 @@ observables: [norm]
 @pytest.mark.parametrize("potential", POTENTIALS)
 @pytest.mark.parametrize("order", [2, 4])
 def test_measured_order(potential, order):
-    """Sources: G. Strang, SIAM J. Numer. Anal. 5 (1968) 506; S. A. Chin, Phys. Lett. A 226 (1997) 344; S. A. Chin & C. R.
-    Chen, J. Chem. Phys. 117 (2002) 1409. The slope of the error of psi over halved steps. Reference: order 4 with half of the smallest step, a sixteenth of its error."""
+    """Sources: G. Strang, SIAM J. Numer. Anal. 5 (1968) 506; S. A. Chin, Phys. Lett. A 226 (1997) 344; S. A. Chin &
+    C. R. Chen, J. Chem. Phys. 117 (2002) 1409. The slope of the error of psi over halved steps. Reference: order 4 with
+    half of the smallest step, a sixteenth of its error."""
     limit = end(potential, 4, 8)
     errors = [np.linalg.norm(end(potential, order, factor) - limit) for factor in (1, 2, 4)]
     slope = -np.polyfit(np.log([1, 2, 4]), np.log(errors), 1)[0]

@@ -37,9 +37,18 @@ STILL = {
     "layer and wall": ("sech2: {at: 2, width: 1, height: 3}", "{low: {absorb: 8}, high: wall}"),
 }
 CHANGING = {
-    "pulsing barrier": ("barrier: {from: -0.6, to: 1.1, height: 2}\n    in_time: {sine: {amplitude: 0.5, frequency: 0.4, offset: 1}}", "wrap"),
-    "shaken": ("gaussian: {at: 0, sigma: 1, height: 2}\n    path: {x: {sine: {amplitude: 1, frequency: 0.3}}}", "{absorb: 8}"),
-    "pulse and layers": ("gaussian: {at: 1, sigma: 1, height: 2}\n    in_time: {pulse: {centre: 4, fwhm: 2, frequency: 0.3}}", "{absorb: 8}"),
+    "pulsing barrier": (
+        "barrier: {from: -0.6, to: 1.1, height: 2}\n    in_time: {sine: {amplitude: 0.5, frequency: 0.4, offset: 1}}",
+        "wrap",
+    ),
+    "shaken": (
+        "gaussian: {at: 0, sigma: 1, height: 2}\n    path: {x: {sine: {amplitude: 1, frequency: 0.3}}}",
+        "{absorb: 8}",
+    ),
+    "pulse and layers": (
+        "gaussian: {at: 1, sigma: 1, height: 2}\n    in_time: {pulse: {centre: 4, fwhm: 2, frequency: 0.3}}",
+        "{absorb: 8}",
+    ),
 }
 
 
@@ -78,10 +87,12 @@ def test_dop853(case):
 
 
 @pytest.mark.parametrize("edges", ["wrap", "wall"])
-@pytest.mark.parametrize("potential", ["barrier: {from: -0.6, to: 0.7, height: 2}", "gaussian: {at: 3, sigma: 1, height: 1}"])
+@pytest.mark.parametrize(
+    "potential", ["barrier: {from: -0.6, to: 0.7, height: 2}", "gaussian: {at: 3, sigma: 1, height: 1}"]
+)
 def test_what_crosses_is_what_arrives(edges, potential):
-    """Source: the continuity equation: the integral of the flux is the change of the probability beyond. Points and step
-    left out, accuracy 1e-5; the detector stands inside the smooth potential, or near the sharp one."""
+    """Source: the continuity equation: the integral of the flux is the change of the probability beyond. Points and
+    step left out, accuracy 1e-5; the detector stands inside the smooth potential, or near the sharp one."""
     record = run(f"""
 units: natural
 grid: {{x: {{from: -24, to: 24}}}}

@@ -9,7 +9,13 @@ from tests.truth import formulas as f
 from tests.truth.running import level, resolution, run, value
 
 # CODATA 2022 (P. J. Mohr et al., Rev. Mod. Phys. 97 (2025) 025002)
-HBAR, ELECTRON, DALTON, NEUTRON, CHARGE = 1.054571817e-34, 9.1093837139e-31, 1.66053906892e-27, 1.67492750056e-27, 1.602176634e-19
+HBAR, ELECTRON, DALTON, NEUTRON, CHARGE = (
+    1.054571817e-34,
+    9.1093837139e-31,
+    1.66053906892e-27,
+    1.67492750056e-27,
+    1.602176634e-19,
+)
 
 
 @pytest.mark.parametrize(("sigma", "width", "box"), [("1 angstrom", 0.5874127, 6), ("1 nm", 1.001674, 12)])
@@ -40,7 +46,8 @@ observables: [norm, width]
 
 
 def test_wave_number_of_an_electron_volt():
-    """Source: lambda = h / sqrt(2 m E): 1.2264 nm at 1 eV, so k = 5.1232 / nm; hbar^2 / 2 m_e = 0.0380998211 eV nm^2."""
+    """Source: lambda = h / sqrt(2 m E): 1.2264 nm at 1 eV, so k = 5.1232 / nm. hbar^2 / 2 m_e = 0.0380998211 eV
+    nm^2."""
     record = run("""
 units: {length: nm, time: fs, energy: eV}
 particle: electron
@@ -112,7 +119,8 @@ observables: [norm, autocorrelation]
 
 
 MORSE = {
-    # K. P. Huber & G. Herzberg 1979, through the NIST Chemistry WebBook: omega_e, omega_e x_e in 1/cm; reduced mass in u
+    # K. P. Huber & G. Herzberg 1979, through the NIST Chemistry WebBook: omega_e, omega_e x_e in 1/cm;
+    # reduced mass in u; equilibrium distance in angstrom
     "HCl": (2990.9463, 52.8186, 0.979593, 1.27455),
     "H2": (4401.213, 121.336, 0.50391252, 0.74144),
 }
