@@ -106,7 +106,7 @@ def test_a_full_disk_is_explained() -> None:
     said = str(unwritable(Path("runs/a/series.csv"), caught.value))
     assert said == (
         "could not write `runs/a/series.csv`: the disk is full; "
-        "make room, for instance by removing old runs, or choose another disk with --runs DIR"
+        "make room, for instance with `wavejob prune`, or choose another disk with --runs DIR"
     )
 
 

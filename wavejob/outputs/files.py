@@ -13,7 +13,7 @@ from typing import IO, Any, Literal
 from ..problems import RunError
 
 ELSEWHERE = "choose a folder you may write to with --runs DIR"
-ROOM = "make room, for instance by removing old runs, or choose another disk with --runs DIR"
+ROOM = "make room, for instance with `wavejob prune`, or choose another disk with --runs DIR"
 SHORTER = "shorten the name of the job file or its folders, or choose a shorter --runs DIR"
 CAUSES = {
     errno.ENOSPC: ("the disk is full", ROOM),
