@@ -1,8 +1,8 @@
 """The catalogue of truth: every case at four accuracies, its results against outside values, in one table.
 
-`python -m tests.truth.catalogue [--write FOLDER] [--command] [--only WORD]`. Coverage is the share of results whose actual
-error lies within the error bar, sharpness the median of bar over actual error. Each outside value has one vote at each
-accuracy; it counts where it is known to a tenth of the bar, and where the error is more than rounding.
+`python -m tests.truth.catalogue [--write FOLDER] [--command] [--only WORD]`. Coverage is the share of results whose
+actual error lies within the error bar, sharpness the median of bar over actual error. Each outside value has one vote
+at each accuracy; it counts where it is known to a tenth of the bar, and where the error is more than rounding.
 """
 
 from __future__ import annotations
@@ -28,6 +28,7 @@ import numpy as np
 from tests.truth.cases import CASES
 from tests.truth.cases.case import Case, Outside
 from wavejob.evidence.assess import assess
+from wavejob.grid import fast_size
 from wavejob.loading import parse
 from wavejob.plan import make_plan
 from wavejob.simulate import Record
@@ -35,7 +36,27 @@ from wavejob.simulate import Record
 ACCURACIES = (1e-2, 1e-3, 1e-4, 1e-5)
 KNOWN = 0.1  # of the bar, to which an outside value must be known
 WANTED = {"coverage": 0.98, "three bars": 0.995, "algebraic": 20.0, "spectral": 100.0}
-COLUMNS = ("case", "accuracy", "result", "outside value", "ours", "bar", "actual error", "bar / error", "standing", "source")
+# Fixed points and steps, each finer than the one before: case, result, (points, steps) of the coarsest run.
+SHRINKING = (
+    ("barrier, tunnelling, in the middle", "right.final", 600, 1200),
+    ("step below its top, in the middle", "near.final", 400, 1000),
+    ("sech2 barrier, in the middle", "right.final", 240, 240),
+    ("Morse oscillator", "position.x.final", 60, 480),
+    ("skew oscillator", "width.x.final", 64, 400),
+)
+LEVELS = 3
+COLUMNS = (
+    "case",
+    "accuracy",
+    "result",
+    "outside value",
+    "ours",
+    "bar",
+    "actual error",
+    "bar / error",
+    "standing",
+    "source",
+)
 
 Standing = Literal["counted", "rounding", "not known well enough", "no bar"]
 
@@ -99,9 +120,30 @@ def votes(case: Case, accuracy: float) -> list[Vote]:
 
 def vote(case: Case, accuracy: float, o: Outside, ours: float, bar: float, rounding: float, scale: float) -> Vote:
     return Vote(
-        case.name, case.error, case.harsh, case.source, accuracy, o.result, float(o.value), o.known,
-        ours, bar, rounding, scale,
+        case.name,
+        case.error,
+        case.harsh,
+        case.source,
+        accuracy,
+        o.result,
+        float(o.value),
+        o.known,
+        ours,
+        bar,
+        rounding,
+        scale,
     )
+
+
+def shrinking(case: Case, result: str, points: int, steps: int) -> list[tuple[int, int, Vote]]:
+    """The case with LEVELS fixed settings, each with 1.4 times the points and half the step of the one before."""
+    wanted = next(o for o in case.outside() if o.result == result)
+    found = []
+    for level in range(LEVELS):
+        finer = fast_size(round(points * 2 ** (level / 2)))
+        record = assess(make_plan(parse(case.fixed(finer, steps * 2**level)))).record
+        found.append((finer, steps * 2**level, vote(case, math.nan, wanted, *measured(record, wanted))))
+    return found
 
 
 def command_votes(cases: Sequence[Case], folder: Path) -> list[Vote]:
@@ -112,7 +154,9 @@ def command_votes(cases: Sequence[Case], folder: Path) -> list[Vote]:
             path = folder / f"{number:02d}_{accuracy:.0e}.yml"
             path.write_text(case.job(accuracy), encoding="utf-8")
             named[path.stem] = case, accuracy
-    done = subprocess.run([sys.executable, "-m", "wavejob", "run", str(folder), "--runs", str(folder / "runs")], check=False)
+    done = subprocess.run(
+        [sys.executable, "-m", "wavejob", "run", str(folder), "--runs", str(folder / "runs")], check=False
+    )
     if done.returncode > 1:
         raise SystemExit(f"wavejob run ended with {done.returncode}")
     found = []
@@ -173,7 +217,9 @@ def summary(found: Sequence[Vote]) -> str:
     for name, group in groups:
         f = figures(group)
         sharp = [f"{f[kind]:.1f}" if math.isfinite(f[kind]) else "–" for kind in ("algebraic", "spectral")]
-        lines.append(f"| {name} | {f['values']:.0f} | {f['coverage']:.1%} | {f['three bars']:.1%} | {sharp[0]} | {sharp[1]} |")
+        lines.append(
+            f"| {name} | {f['values']:.0f} | {f['coverage']:.1%} | {f['three bars']:.1%} | {sharp[0]} | {sharp[1]} |"
+        )
     apart = {s: sum(v.standing == s for v in found) for s in ("rounding", "not known well enough", "no bar")}
     within = share(v.error <= max(v.bar, 1e-11 * max(v.scale, 1.0)) for v in found if v.standing == "rounding")
     return "\n".join(lines) + (
@@ -183,10 +229,26 @@ def summary(found: Sequence[Vote]) -> str:
     )
 
 
+def shrunk(found: Sequence[tuple[int, int, Vote]]) -> str:
+    """How bars shrink with step and spacing, as Markdown."""
+    head = "| case | result | points | steps | bar | actual error |\n| --- | --- | --- | --- | --- | --- |\n"
+    return head + "\n".join(
+        f"| {v.case} | {v.result} | {points} | {steps} | {v.bar:.1e} | {v.error:.1e} |" for points, steps, v in found
+    )
+
+
 def row(v: Vote) -> tuple[str, ...]:
     return (
-        v.case, f"{v.accuracy:.0e}", v.result, f"{v.outside:.10g}", f"{v.ours:.10g}", f"{v.bar:.1e}", f"{v.error:.1e}",
-        f"{v.ratio:.2g}", v.standing, v.source,
+        v.case,
+        f"{v.accuracy:.0e}",
+        v.result,
+        f"{v.outside:.10g}",
+        f"{v.ours:.10g}",
+        f"{v.bar:.1e}",
+        f"{v.error:.1e}",
+        f"{v.ratio:.2g}",
+        v.standing,
+        v.source,
     )
 
 
@@ -197,7 +259,7 @@ def table(found: Sequence[Vote]) -> str:
     return "\n".join("  ".join(cell.ljust(w) for cell, w in zip(r, widths, strict=True)).rstrip() for r in rows)
 
 
-def write(found: Sequence[Vote], folder: Path) -> None:
+def write(found: Sequence[Vote], finer: Sequence[tuple[int, int, Vote]], folder: Path) -> None:
     """catalogue.csv with every vote, summary.md with what it comes to."""
     with (folder / "catalogue.csv").open("w", encoding="utf-8", newline="") as file:
         csv.writer(file, lineterminator="\n").writerows([COLUMNS, *map(row, found)])
@@ -207,7 +269,8 @@ def write(found: Sequence[Vote], folder: Path) -> None:
         f"# Error bars against the truth\n\n{values} outside values in {jobs} jobs, each at accuracies "
         f"{', '.join(f'{a:g}' for a in ACCURACIES)}; {harsh:.0%} with short layers, tight boxes or early stops. "
         f"{datetime.now(UTC):%Y-%m-%d}, `python -m tests.truth.catalogue --write tests/truth`; every value, with its "
-        f"source, stands in `catalogue.csv`.\n\n{summary(found)}",
+        f"source, stands in `catalogue.csv`.\n\n{summary(found)}\n"
+        f"Bars shrink as step and spacing do:\n\n{shrunk(finer)}\n",
         encoding="utf-8",
     )
 
@@ -241,8 +304,11 @@ def main() -> None:
     print("\nmisses:")
     print(table([v for v in found if v.standing == "counted" and not v.error <= v.bar]))
     print(f"\n{summary(found)}")
+    named = {case.name: case for case in CASES}
+    finer = [level for name, *settings in SHRINKING for level in shrinking(named[name], *settings)]
+    print(shrunk(finer))
     if asked.write:
-        write(found, asked.write)
+        write(found, finer, asked.write)
 
 
 if __name__ == "__main__":

@@ -7,6 +7,7 @@ walls, all matrix elements by quadrature, every energy exact (P. M. Morse & H. F
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
@@ -20,7 +21,7 @@ def nodes(low: float, high: float, breaks: Sequence[float] = (), panel: float = 
     cuts = [low, *sorted(b for b in breaks if low < b < high), high]
     unit, share = np.polynomial.legendre.leggauss(12)
     places, weights = [], []
-    for start, stop in zip(cuts, cuts[1:], strict=False):
+    for start, stop in itertools.pairwise(cuts):
         count = int(np.ceil((stop - start) / panel))
         half = (stop - start) / count / 2
         middles = start + half * (2 * np.arange(count) + 1)
@@ -71,7 +72,12 @@ class Layers:
             value = forth * np.exp(1j * after * edge) + back * np.exp(-1j * after * edge)
             slope = after / before * (forth * np.exp(1j * after * edge) - back * np.exp(-1j * after * edge))
             found.insert(
-                0, (before, (value + slope) / 2 * np.exp(-1j * before * edge), (value - slope) / 2 * np.exp(1j * before * edge))
+                0,
+                (
+                    before,
+                    (value + slope) / 2 * np.exp(-1j * before * edge),
+                    (value - slope) / 2 * np.exp(1j * before * edge),
+                ),
             )
         incoming = found[0][1]
         return [(q, forth / incoming, back / incoming) for q, forth, back in found]

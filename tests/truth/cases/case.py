@@ -33,9 +33,11 @@ class Case:
         """The job file, for one accuracy."""
         return self.text.replace("ACCURACY", f"{accuracy:g}")
 
-    def fixed(self, points: int, step: float) -> str:
-        """The job file with these points and this step."""
-        return self.text.replace("accuracy: ACCURACY", f"step: {step!r}").replace("}}  # x", f", points: {points}}}}}")
+    def fixed(self, points: int, steps: int) -> str:
+        """The job file with so many points and steps."""
+        until = float(self.text.partition("until: ")[2].partition(",")[0])
+        text = self.text.replace("accuracy: ACCURACY", f"step: {until / steps!r}")
+        return text.replace("}}  # x", f", points: {points}}}}}")
 
 
 def job(

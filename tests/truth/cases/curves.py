@@ -16,7 +16,9 @@ ECKART = "C. Eckart, Phys. Rev. 35 (1930) 1303, eq. 15 (from memory)"
 ESAKI = "R. Tsu & L. Esaki, Appl. Phys. Lett. 22 (1973) 562 (from memory)"
 
 
-def curve(name: str, potential: str, share: Callable[[Array], Array], source: str, depth: str = "auto", harsh: Harsh = "") -> Case:
+def curve(
+    name: str, potential: str, share: Callable[[Array], Array], source: str, depth: str = "auto", harsh: Harsh = ""
+) -> Case:
     """T and R at three energies that a packet of wave number 1.7 holds."""
     at = (0.9, 1.5, 2.4)
 
@@ -28,14 +30,19 @@ def curve(name: str, potential: str, share: Callable[[Array], Array], source: st
         ]
 
     text = job(
-        (-70, 60), gaussian(-20, 2, 1.8), 90, ["transmission: {name: T, x: 10, energies: {from: 0.9, to: 2.4, points: 6}}"],
-        potential, f"x: {{absorb: {depth}{', energies: {from: 0.3, to: 6}' if depth == 'auto' else ''}}}",
+        (-70, 60),
+        gaussian(-20, 2, 1.8),
+        90,
+        ["transmission: {name: T, x: 10, energies: {from: 0.9, to: 2.4, points: 6}}"],
+        potential,
+        f"x: {{absorb: {depth}{', energies: {from: 0.3, to: 6}' if depth == 'auto' else ''}}}",
     )
     return Case(name, text, source, outside, harsh=harsh)
 
 
 def resonance() -> list[Outside]:
     """Top and full width at half of it of the lowest resonance of two barriers."""
+
     def passed(energy: float) -> float:
         return float(f.layered_transmission(np.array(np.sqrt(2 * energy)), [0, 1, 3, 4], [1.5, 0, 1.5]))
 
@@ -48,10 +55,45 @@ def resonance() -> list[Outside]:
 TWO = "stack: {at: 0, layers: [{thickness: 1, height: 1.5}, {thickness: 2, height: 0}, {thickness: 1, height: 1.5}]}"
 
 CASES = (
-    curve("curve, barrier", "barrier: {from: 0, to: 1, height: 2}", lambda k: f.barrier_transmission(k, 2.0, 1.0), LANDAU),
-    curve("curve, sech2", "sech2: {at: 0, width: 0.8, height: 1.5}", lambda k: f.sech2_transmission(k, 1.5, 0.8), LANDAU),
-    curve("curve, Eckart", "eckart: {at: 0, width: 0.5, A: -0.4, B: 4}", lambda k: f.eckart_transmission(k, -0.4, 4, 0.5), ECKART),
-    curve("curve, barrier, short layers of 6", "barrier: {from: 0, to: 1, height: 2}", lambda k: f.barrier_transmission(k, 2.0, 1.0), LANDAU, "6", "short layer"),
-    curve("curve, sech2, short layers of 6", "sech2: {at: 0, width: 0.8, height: 1.5}", lambda k: f.sech2_transmission(k, 1.5, 0.8), LANDAU, "6", "short layer"),
-    Case("curve, resonance", job((-90, 80), gaussian(-24, 2.4, 1.4), 150, ["transmission: {name: T, x: 10, energies: {from: 0.2, to: 1.2, points: 101}}"], TWO, "x: {absorb: 24, energies: {from: 0.1, to: 6}}"), ESAKI, resonance),
+    curve(
+        "curve, barrier", "barrier: {from: 0, to: 1, height: 2}", lambda k: f.barrier_transmission(k, 2.0, 1.0), LANDAU
+    ),
+    curve(
+        "curve, sech2", "sech2: {at: 0, width: 0.8, height: 1.5}", lambda k: f.sech2_transmission(k, 1.5, 0.8), LANDAU
+    ),
+    curve(
+        "curve, Eckart",
+        "eckart: {at: 0, width: 0.5, A: -0.4, B: 4}",
+        lambda k: f.eckart_transmission(k, -0.4, 4, 0.5),
+        ECKART,
+    ),
+    curve(
+        "curve, barrier, short layers of 6",
+        "barrier: {from: 0, to: 1, height: 2}",
+        lambda k: f.barrier_transmission(k, 2.0, 1.0),
+        LANDAU,
+        "6",
+        "short layer",
+    ),
+    curve(
+        "curve, sech2, short layers of 6",
+        "sech2: {at: 0, width: 0.8, height: 1.5}",
+        lambda k: f.sech2_transmission(k, 1.5, 0.8),
+        LANDAU,
+        "6",
+        "short layer",
+    ),
+    Case(
+        "curve, resonance",
+        job(
+            (-90, 80),
+            gaussian(-24, 2.4, 1.4),
+            150,
+            ["transmission: {name: T, x: 10, energies: {from: 0.3, to: 1.1, points: 81}}"],
+            TWO,
+            "x: {absorb: 24, energies: {from: 0.1, to: 6}}",
+        ),
+        ESAKI,
+        resonance,
+    ),
 )

@@ -88,7 +88,9 @@ def squeezed() -> list[Outside]:
     ]
 
 
-def classical(force: Callable[[float, float], float], until: float, x: float = 0.0, v: float = 0.0) -> tuple[float, float]:
+def classical(
+    force: Callable[[float, float], float], until: float, x: float = 0.0, v: float = 0.0
+) -> tuple[float, float]:
     found = solve_ivp(
         lambda t, y: [y[1], force(t, y[0])], (0, until), [x, v], "DOP853", rtol=1e-12, atol=1e-12, max_step=until / 200
     )
@@ -129,7 +131,12 @@ def pumped() -> list[Outside]:
 
 
 def pulsed() -> list[Outside]:
-    x, v = classical(lambda t, x: 0.8 * math.exp(-4 * math.log(2) * ((t - 4) / 2) ** 2) * math.cos(2 * math.pi * 0.4 * (t - 4)) , 9.0, -3.0, 0.7)
+    x, v = classical(
+        lambda t, x: 0.8 * math.exp(-4 * math.log(2) * ((t - 4) / 2) ** 2) * math.cos(2 * math.pi * 0.4 * (t - 4)),
+        9.0,
+        -3.0,
+        0.7,
+    )
     return [
         Outside("position.x.final", x),
         Outside("momentum.x.final", v),
@@ -151,18 +158,21 @@ def inverted() -> list[Outside]:
 
 def ring() -> list[Outside]:
     x = -10 + (np.arange(4000) + 0.5) * 20 / 4000
-    psi = sum(f.free_gaussian(x + 20 * n, 15.0, at=-3, sigma=1, k=2) for n in range(-14, 15))
-    start = sum(f.free_gaussian(x + 20 * n, 0.0, at=-3, sigma=1, k=2) for n in range(-2, 3))
+    psi = sum(f.free_gaussian(x + 20 * n, 15.0, at=-1, sigma=1, k=2) for n in range(-14, 15))
+    start = sum(f.free_gaussian(x + 20 * n, 0.0, at=-1, sigma=1, k=2) for n in range(-2, 3))
     density = np.abs(psi) ** 2 * 0.005
     here = float(density[(x > 2) & (x < 6)].sum())
-    ends = [abs(sum(complex(f.free_gaussian(np.array(e + 20 * n), 15.0, at=-3, sigma=1, k=2)) for n in range(-14, 15))) ** 2 for e in (2 - 1e-6, 2 + 1e-6, 6 - 1e-6, 6 + 1e-6)]
+    ends = [
+        abs(sum(complex(f.free_gaussian(np.array(e + 20 * n), 15.0, at=-1, sigma=1, k=2)) for n in range(-14, 15))) ** 2
+        for e in (2 - 1e-6, 2 + 1e-6, 6 - 1e-6, 6 + 1e-6)
+    ]
     slope = ((ends[3] - ends[2]) - (ends[1] - ends[0])) / 2e-6
     here += 0.005**2 / 24 * slope  # end correction of the midpoint rule: the cells end at 2 and 6
     return [Outside("part.final", here, 1e-9), Outside("back.final", float(abs(np.vdot(start, psi) * 0.005) ** 2))]
 
 
 def cage() -> list[Outside]:
-    box = Box(np.zeros_like, -6, 6, -1.5, 0.7, 2.0, 200)
+    box = Box(np.zeros_like, -6, 6, -0.3, 0.7, 2.0, 200)
     mean, width = box.moments(7.0)
     return [
         Outside("right.final", box.inside(1, 6, 7.0)),
@@ -196,22 +206,171 @@ def leaving() -> list[Outside]:
 
 
 GROUND = math.sqrt(0.5)
+DRIVE = 1.3 / (2 * math.pi)  # cycles per time
 TRAP = "harmonic: {at: 0, omega: 1}"
 
 CASES = (
-    Case("free packet", job((-40, 40), gaussian(-10, 1, 2), 8, [*MOMENTS, inside("window", -2, 1), "crossing: {name: passed, x: 0, toward: +x}"]), DARWIN, free, "spectral"),
-    Case("uniform field", job((-50, 60), gaussian(-10, 1, 1), 6, [*MOMENTS, inside("window", 4, 9)], "linear: {at: 0, slope: -0.5}"), KENNARD, field, "spectral"),
-    Case("coherent state", job((-10, 10), gaussian(2, GROUND), 7.7, [*MOMENTS, START, inside("right", 0, 10)], TRAP), SCHROEDINGER, coherent),
-    Case("squeezed state", job((-12, 12), gaussian(1.5, 0.4), 9, [*MOMENTS, inside("right", 0, 12)], TRAP), HUSIMI, squeezed),
-    Case("forced oscillator", job((-10, 10), gaussian(0, GROUND), 14, [*MOMENTS, START], (TRAP, f"linear: {{at: 0, slope: -0.3}}, in_time: {{sine: {{amplitude: 1, frequency: {1.3 / (2 * math.pi)!r}}}}}")), HUSIMI, forced),
-    Case("moved trap", job((-8, 13), gaussian(0, GROUND), 10, ["position", "momentum", f"overlap: {{name: there, with: {{gaussian: {{at: 5, sigma: {GROUND}, wavenumber: 0}}}}}}"], f"{TRAP}, path: {{x: {{ramp: {{by: 5, start: 1, stop: 7, shape: smooth}}}}}}"), HUSIMI, moved),
-    Case("pumped oscillator", job((-10, 10), gaussian(0, GROUND), 12, ["width", "energy", START], f"{TRAP}, in_time: {{sine: {{amplitude: 0.2, frequency: {1 / math.pi!r}, offset: 1}}}}"), "V. P. Ermakov 1880; H. R. Lewis & W. B. Riesenfeld, J. Math. Phys. 10 (1969) 1458 (from memory)", pumped),
-    Case("light pulse", job((-40, 40), gaussian(-3, 1.2, 0.7), 9, ["position", "momentum", "width", inside("right", 0, 40)], "linear: {at: 0, slope: -0.8}, in_time: {pulse: {centre: 4, fwhm: 2, frequency: 0.4}}"), KENNARD, pulsed),
-    Case("inverted oscillator", job((-50, 50), gaussian(-1, 0.7, 0.8), 2.5, ["position", "width", inside("over", 0, 50)], "polynomial: {at: 0, coefficients: [0, 0, -0.5]}"), HUSIMI, inverted),
-    Case("ring", job((-10, 10), gaussian(-3, 1, 2), 15, [inside("part", 2, 6), START]), IMAGES, ring, "spectral", "tight box"),
-    Case("cage", job((-6, 6), gaussian(-1.5, 0.7, 2), 7, [inside("right", 1, 6), "position", "width"], edges="x: wall"), IMAGES, cage, "spectral", "tight box"),
-    Case("revival between walls", job((-6, 6), gaussian(-2.5, 0.5), 2 * 144 / math.pi, ["position", "overlap: {name: mirror, with: {gaussian: {at: 2.5, sigma: 0.5, wavenumber: 0}}}"], edges="x: wall"), "R. Bluhm, V. A. Kostelecky & J. A. Porter, Am. J. Phys. 64 (1996) 944 (from memory)", revived, "spectral", "tight box"),
-    Case("arrival", job((-60, 90), gaussian(-12, 1.5, 2), 30, ["arrival: {name: gate, x: 4, toward: +x}"]), DARWIN + ", its flux", arrived, "spectral"),
-    Case("free packet, short layers of 4", job((-25, 25), gaussian(-8, 1.5, 2), 9, ["crossing: {name: passed, x: 5, toward: +x}", inside("near", -10, 5)], edges="x: {absorb: 4}"), DARWIN, leaving, "spectral", "short layer"),
-    Case("free packet, short layers of 8", job((-25, 25), gaussian(-8, 1.5, 2), 9, ["crossing: {name: passed, x: 5, toward: +x}", inside("near", -10, 5)], edges="x: {absorb: 8}"), DARWIN, leaving, "spectral", "short layer"),
+    Case(
+        "free packet",
+        job(
+            (-40, 40),
+            gaussian(-10, 1, 2),
+            8,
+            [*MOMENTS, inside("window", -2, 1), "crossing: {name: passed, x: 0, toward: +x}"],
+        ),
+        DARWIN,
+        free,
+        "spectral",
+    ),
+    Case(
+        "uniform field",
+        job((-50, 60), gaussian(-10, 1, 1), 6, [*MOMENTS, inside("window", 4, 9)], "linear: {at: 0, slope: -0.5}"),
+        KENNARD,
+        field,
+        "spectral",
+    ),
+    Case(
+        "coherent state",
+        job((-10, 10), gaussian(2, GROUND), 7.7, [*MOMENTS, START, inside("right", 0, 10)], TRAP),
+        SCHROEDINGER,
+        coherent,
+    ),
+    Case(
+        "squeezed state",
+        job((-12, 12), gaussian(1.5, 0.4), 9, [*MOMENTS, inside("right", 0, 12)], TRAP),
+        HUSIMI,
+        squeezed,
+    ),
+    Case(
+        "forced oscillator",
+        job(
+            (-10, 10),
+            gaussian(0, GROUND),
+            14,
+            [*MOMENTS, START],
+            (
+                TRAP,
+                f"linear: {{at: 0, slope: -0.3}}, in_time: {{sine: {{amplitude: 1, frequency: {DRIVE!r}}}}}",
+            ),
+        ),
+        HUSIMI,
+        forced,
+    ),
+    Case(
+        "moved trap",
+        job(
+            (-8, 13),
+            gaussian(0, GROUND),
+            10,
+            [
+                "position",
+                "momentum",
+                f"overlap: {{name: there, with: {{gaussian: {{at: 5, sigma: {GROUND}, wavenumber: 0}}}}}}",
+            ],
+            f"{TRAP}, path: {{x: {{ramp: {{by: 5, start: 1, stop: 7, shape: smooth}}}}}}",
+        ),
+        HUSIMI,
+        moved,
+    ),
+    Case(
+        "pumped oscillator",
+        job(
+            (-10, 10),
+            gaussian(0, GROUND),
+            12,
+            ["width", "energy", START],
+            f"{TRAP}, in_time: {{sine: {{amplitude: 0.2, frequency: {1 / math.pi!r}, offset: 1}}}}",
+        ),
+        "V. P. Ermakov 1880; H. R. Lewis & W. B. Riesenfeld, J. Math. Phys. 10 (1969) 1458 (from memory)",
+        pumped,
+    ),
+    Case(
+        "light pulse",
+        job(
+            (-40, 40),
+            gaussian(-3, 1.2, 0.7),
+            9,
+            ["position", "momentum", "width", inside("right", 0, 40)],
+            "linear: {at: 0, slope: -0.8}, in_time: {pulse: {centre: 4, fwhm: 2, frequency: 0.4}}",
+        ),
+        KENNARD,
+        pulsed,
+    ),
+    Case(
+        "inverted oscillator",
+        job(
+            (-50, 50),
+            gaussian(-1, 0.7, 0.8),
+            2.5,
+            ["position", "width", inside("over", 0, 50)],
+            "polynomial: {at: 0, coefficients: [0, 0, -0.5]}",
+        ),
+        HUSIMI,
+        inverted,
+    ),
+    Case(
+        "ring",
+        job((-10, 10), gaussian(-1, 1, 2), 15, [inside("part", 2, 6), START]),
+        IMAGES,
+        ring,
+        "spectral",
+        "tight box",
+    ),
+    Case(
+        "cage",
+        job((-6, 6), gaussian(-0.3, 0.7, 2), 7, [inside("right", 1, 6), "position", "width"], edges="x: wall"),
+        IMAGES,
+        cage,
+        "spectral",
+        "tight box",
+    ),
+    Case(
+        "revival between walls",
+        job(
+            (-6, 6),
+            gaussian(-2.5, 0.5),
+            2 * 144 / math.pi,
+            ["position", "overlap: {name: mirror, with: {gaussian: {at: 2.5, sigma: 0.5, wavenumber: 0}}}"],
+            edges="x: wall",
+        ),
+        "R. Bluhm, V. A. Kostelecky & J. A. Porter, Am. J. Phys. 64 (1996) 944 (from memory)",
+        revived,
+        "spectral",
+        "tight box",
+    ),
+    Case(
+        "arrival",
+        job((-60, 90), gaussian(-12, 1.5, 2), 30, ["arrival: {name: gate, x: 4, toward: +x}"]),
+        DARWIN + ", its flux",
+        arrived,
+        "spectral",
+    ),
+    Case(
+        "free packet, short layers of 4",
+        job(
+            (-25, 25),
+            gaussian(-8, 1.5, 2),
+            9,
+            ["crossing: {name: passed, x: 5, toward: +x}", inside("near", -10, 5)],
+            edges="x: {absorb: 4}",
+        ),
+        DARWIN,
+        leaving,
+        "spectral",
+        "short layer",
+    ),
+    Case(
+        "free packet, short layers of 8",
+        job(
+            (-25, 25),
+            gaussian(-8, 1.5, 2),
+            9,
+            ["crossing: {name: passed, x: 5, toward: +x}", inside("near", -10, 5)],
+            edges="x: {absorb: 8}",
+        ),
+        DARWIN,
+        leaving,
+        "spectral",
+        "short layer",
+    ),
 )
