@@ -73,7 +73,9 @@ class _Box:
     def added(self, record: Record, differences: list[Difference], parts: ErrorBarsKeys) -> Record:
         """`record` with bars from `differences` and from the edges."""
         barred = with_bars(record, [*differences, *self.measured], recording=parts.record)
-        return edges.with_part(barred, self.predicted) if self.predicted else barred
+        if not self.predicted:
+            return barred
+        return edges.with_part(barred, self.predicted, absorbed_only=bool(self.measured))
 
 
 def _staged(progress: Tell | None, stage: str) -> Tell | None:
@@ -178,7 +180,7 @@ def _box(
         return _Box(predicted=predicted)
     notes.append(_note(companion, FINER))
     wider = simulate(companion.plan, tell, alone=False)
-    return _Box((Difference("box", cheapest, wider, FINER, edges.of_what_is_left(record)),))
+    return _Box((Difference("box", cheapest, wider, FINER, edges.of_what_is_left(record)),), predicted)
 
 
 def _least(record: Record) -> float:
