@@ -200,7 +200,14 @@ def _particle(document: Merged, keys: JobKeys, units: Units, problems: list[Prob
     """The particle in scaled units; natural and atomic units have one of mass 1 and charge 1 or -1."""
     written = keys.particle
     if isinstance(written, ParticleKeys):
-        return Particle(written.mass, written.charge)
+        mass, charge = written.mass, written.charge
+        if mass is None and units.system == "file":
+            if "mass" not in document.value["particle"]:  # else it was refused already
+                problem = problem_at(document, ("particle",), "`mass` is missing", "add it, or name a particle")
+                problems.append(replace(problem, key="particle.mass"))
+            return None
+        unless_given = 1.0 if units.system == "natural" else 0.0
+        return Particle(1.0 if mass is None else mass, unless_given if charge is None else charge)
     if written is None and units.system in ("natural", "atomic"):
         return Particle(1.0, 1.0)
     if written is None:

@@ -205,7 +205,7 @@ class CrossingMeter(Meter):
         times, flux = self.flux.thinned(1)
         if positive_part(times, -flux) > ONE_WAY:
             return []  # things go to and fro here: there is no before and after
-        coming, beyond, write = self._coming(), 1 - self.first_inside, self.bench.units.write
+        coming, beyond, write = self._coming(), 1 - self.first_inside, self.bench.units.rounded
         late = write(2 * times[-1] - times[0], "time")
         behind = write(self.bench.axis.low if self.forward < 0 else self.bench.axis.high, "length")
         return [
