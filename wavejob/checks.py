@@ -100,8 +100,9 @@ def _edges(plan: Plan, watch: Watch) -> Check:
         watch.edge,
         EDGE_LIMIT,
         "probability in the outermost hundredth of the grid comes in again at the other end",
-        "" if passed else f"set `edges: {{x: {{absorb: {depth}}}}}`, or extend the grid, or say `edges: {{x: wrap}}` "
-        "if it is meant",
+        ""
+        if passed
+        else f"set `edges: {{x: {{absorb: {depth}}}}}`, or extend the grid, or say `edges: {{x: wrap}}` if it is meant",
     )
 
 
@@ -125,6 +126,7 @@ def _reflection(plan: Plan, index: int) -> Check:
 
 def judge_expectation(job: Job, expect: ExpectKeys, result: Result) -> Judgement:
     """Met, missed or undecided: |value - wanted| with the error bar against the tolerance."""
+
     def read(value: object) -> float:
         return job.units.read(value, result.dimension)  # type: ignore[arg-type]
 

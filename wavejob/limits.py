@@ -129,9 +129,7 @@ def _kept(
     )
     if frames is not None:
         count, kept = _count(frames), min(points, FRAME_POINTS)
-        yield Need(
-            count * kept * FRAME_BYTES, f"{count} frames of the film", ("film", "every"), "take fewer frames"
-        )
+        yield Need(count * kept * FRAME_BYTES, f"{count} frames of the film", ("film", "every"), "take fewer frames")
     if job.keys.snapshots is not None:
         count = _count(_every(job.keys.snapshots.every, step, recorded.last))
         what = f"{count} stored fields of {points} points"

@@ -41,18 +41,14 @@ def parse(text: str, *, folder: Path | None = None, name: str = "job") -> Job:
     """The job in `text`; paths in it are relative to `folder`. Raises JobFileError."""
     folder = (folder or Path.cwd()).resolve()
     document = read_text(text, f"{name}.yml")
-    merged = Merged(
-        document.value, dict(document.places), dict(document.key_places), {document.path: document.lines}
-    )
+    merged = Merged(document.value, dict(document.places), dict(document.key_places), {document.path: document.lines})
     return _checked(merged, folder / f"{name}.yml", JobTree(folder), False, text)
 
 
 def _checked(document: Merged, path: Path, tree: JobTree, trust: bool, text: str) -> Job:
     value = document.value
     if not isinstance(value, dict):
-        raise JobFileError(
-            [problem_at(document, (), "a job file is a mapping of keys", "see `wavejob new FILE`")]
-        )
+        raise JobFileError([problem_at(document, (), "a job file is a mapping of keys", "see `wavejob new FILE`")])
     format_ = value.get("format")
     if isinstance(format_, int) and format_ > 1:
         raise JobFileError(
@@ -151,16 +147,12 @@ def _units(document: Merged, value: dict[str, Any], problems: list[Problem]) -> 
         try:
             Units.from_file(part)
         except QuantityError as error:
-            wrong.append(
-                problem_at(document, key, error.message, error.fix, key=error.message.startswith("`units`"))
-            )
+            wrong.append(problem_at(document, key, error.message, error.fix, key=error.message.startswith("`units`")))
     problems += wrong
     return Units.from_file({"length": "nm", "time": "fs", "energy": "meV"} if wrong else written)
 
 
-def _names(
-    document: Merged, value: dict[str, Any], units: Units, problems: list[Problem]
-) -> dict[str, Named]:
+def _names(document: Merged, value: dict[str, Any], units: Units, problems: list[Problem]) -> dict[str, Named]:
     """The quantities of `let`; later ones may use earlier ones."""
     names: dict[str, Named] = {}
     written = value.get("let")
@@ -211,9 +203,7 @@ def _particle(document: Merged, keys: JobKeys, units: Units, problems: list[Prob
     if written is None and units.system in ("natural", "atomic"):
         return Particle(1.0, 1.0)
     if written is None:
-        problem = problem_at(
-            document, (), "`particle` is missing", "add `particle: electron` or {mass:, charge:}"
-        )
+        problem = problem_at(document, (), "`particle` is missing", "add `particle: electron` or {mass:, charge:}")
         problems.append(replace(problem, key="particle"))
         return None
     try:

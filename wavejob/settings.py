@@ -424,5 +424,3 @@ class JobKeys(Model):
     film: FilmChoice = Field(default_factory=FilmKeys, description="the animation; `none` to skip")
     snapshots: SnapshotKeys | None = Field(None, description="store the field; left out: the final state only")
     expect: list[ExpectKeys] = Field(default_factory=list, description="checks on the results", max_length=500)
-
-

@@ -36,9 +36,7 @@ def job_entry(
     forecast: Forecast | None = None,
 ) -> dict[str, Any]:
     weighed = (
-        {"seconds": round(forecast.seconds, 1), "memory": forecast.memory, "disk": forecast.disk}
-        if forecast
-        else None
+        {"seconds": round(forecast.seconds, 1), "memory": forecast.memory, "disk": forecast.disk} if forecast else None
     )
     return {
         "job": job,

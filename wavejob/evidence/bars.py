@@ -68,7 +68,9 @@ def weight(record: Record, *, coarser: bool = True) -> float:
 def with_bars(record: Record, differences: Sequence[Difference], *, recording: bool = True) -> Record:
     """`record` with the error of every result, column and curve: the sum of all parts."""
     floor = record.norm_drift + 1e-15
-    shared = {d.part: (0.0, 0.0) if d.skips else (_largest_share(record, d), _largest_mean(record, d)) for d in differences}
+    shared = {
+        d.part: (0.0, 0.0) if d.skips else (_largest_share(record, d), _largest_mean(record, d)) for d in differences
+    }
     series = floor * np.maximum(np.abs(record.series), _scales(record))
     return replace(
         record,
