@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 
@@ -74,6 +75,11 @@ def _cause(job: Job) -> tuple[Key, str]:
     if evolve.record is not None and (evolve.until - evolve.start) / evolve.record > MOST_STEPS:
         return ("evolve", "record"), "record less often"
     return ("evolve", "until"), "end it earlier, or ask for less accuracy"
+
+
+def shortest_spacing(job: Job) -> float:
+    """The shortest time between two frames, stored fields or densities that the job asks for; infinity without any."""
+    return min((every for _, every in _spacings(job)), default=math.inf)
 
 
 def _spacings(job: Job) -> Iterator[tuple[Key, float]]:

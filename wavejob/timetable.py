@@ -83,7 +83,7 @@ def timetable(job: Job, longest: float, shortest: float) -> tuple[float, int, in
 def _rows_apart(steps: int) -> int:
     """Steps between rows, a divisor of `steps` where one is near."""
     about = max(steps // ROWS, 1)
-    return next((d for d in range(about, max(about // 2, about - 10_000), -1) if steps % d == 0), about)
+    return next((d for d in range(about, max(about // 2, about - 10_000, 1) - 1, -1) if steps % d == 0), about)
 
 
 def _divisor(number: int, at_most: int) -> int:

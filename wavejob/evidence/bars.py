@@ -129,9 +129,14 @@ def _largest_share(record: Record, difference: Difference) -> float:
     shares = [
         (difference.of(r.name) or 0.0) / abs(r.value)
         for r in record.results
-        if r.value is not None and _is_probability(r) and abs(r.value) > TRACE
+        if r.value is not None and _is_probability(r) and abs(r.value) > TRACE and not _of_the_rest(r)
     ]
     return max(shares, default=0.0)
+
+
+def _of_the_rest(result: Result) -> bool:
+    """What is left on the grid is no kin of what left it: its error may be large beside its value."""
+    return result.name.startswith("norm.") or result.name.endswith(".undecided")
 
 
 def _largest_mean(record: Record, difference: Difference) -> float:
