@@ -3,17 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 
 from .evolve.schedule import Schedule
 from .observables.base import Bench, Meter, Series
+from .observables.interpolant import finer
 from .observables.moments import kinetic_energy, mean_place, norm, place_width, potential_energy
 from .state import Look
 
 Array = np.ndarray
 
+FINE_ENOUGH = 4096  # places along the axis at which a curve looks smooth, also in a close-up
 WIDEST_FRAME = 4096  # places kept of a frame: more than any picture has pixels
 
 
@@ -73,7 +75,10 @@ class Watch:
 
 @dataclass
 class Frames:
-    """The film's raw material: density and phase at regular times, thinned to what a picture can show."""
+    """The film's raw material: density and phase at regular times, at as many places as a picture can show.
+
+    A coarse grid shows the interpolant between its points, a fine one the highest of several points.
+    """
 
     schedule: Schedule
     bench: Bench
@@ -85,14 +90,19 @@ class Frames:
     norm: list[float] = field(default_factory=list)
 
     def __post_init__(self) -> None:
-        x = self.bench.axis.x
+        axis = self.bench.axis
+        self.times_finer = max(FINE_ENOUGH // axis.points, 1)
+        x = replace(axis, points=self.times_finer * axis.points).x
         inside = np.flatnonzero((x >= self.view[0]) & (x <= self.view[1]))
         self.bin = max(-(-inside.size // WIDEST_FRAME), 1)
         self.span = slice(int(inside[0]), int(inside[0]) + inside.size // self.bin * self.bin)
         self.x = x[self.span].reshape(-1, self.bin).mean(1)
 
     def see(self, look: Look) -> None:
-        psi = look.psi[0, 0, self.span].reshape(-1, self.bin)
+        psi = look.psi[0, 0]
+        if self.times_finer > 1:
+            psi = finer(self.bench.axis, psi, self.times_finer)
+        psi = psi[self.span].reshape(-1, self.bin)
         density = np.abs(psi) ** 2
         top = density.argmax(1)
         rows = np.arange(top.size)

@@ -179,10 +179,11 @@ def _with_newton(record: Record, result: Result) -> str:
 def _momenta(record: Record) -> tuple[Array, Array, Array]:
     """Wave numbers in rising order, and the momentum densities at start and end."""
     axis = record.plan.axis
-    k = 2 * np.pi * np.fft.fftfreq(axis.points, axis.spacing)
+    padded = 4 * axis.points  # between the wave numbers of the box: a curve for the eye
+    k = 2 * np.pi * np.fft.fftfreq(padded, axis.spacing)
     order = np.argsort(k)
 
     def density(psi: Array) -> Array:
-        return np.asarray(np.abs(np.fft.fft(psi)[order]) ** 2 * axis.spacing**2 / (2 * np.pi))
+        return np.asarray(np.abs(np.fft.fft(psi, padded)[order]) ** 2 * axis.spacing**2 / (2 * np.pi))
 
     return k[order], density(record.plan.psi), density(record.psi)
