@@ -118,7 +118,8 @@ class Quantity:
         return number
 
     def wanted(self) -> str:
-        said = "a number" if self.dimension == "number" else f"{phrase(self.dimension)} such as `{example(self.dimension)}`"
+        quantity = f"{phrase(self.dimension)} such as `{example(self.dimension)}`"
+        said = "a number" if self.dimension == "number" else quantity
         return f"{said}, or `{self.word}`" if self.word else said
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> core_schema.CoreSchema:

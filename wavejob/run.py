@@ -62,15 +62,14 @@ def run_job(
     cannot be planned. A folder without manifest.json is unfinished.
     """
     folder = RunFolder(runs, job.id, job.fingerprint)
-    done = folder.finished()
     wanted_film = film and not isinstance(job.keys.film, str)
-    if done and not again and not (wanted_film and (FILM in folder.partial or done["choices"] != _pictures(job))):
+    if not again and is_current(job, runs, film=film):
         return _judged_again(job, folder)
     started, clock = datetime.now(UTC), time.perf_counter()
     plan = plan or make_plan(job)
     folder.begin()
     with run_log(folder.path / "run.log"):
-        log.info("job %s, fingerprint %s", job.id, job.fingerprint)
+        log.info("job %s, fingerprint %s", job.name, job.fingerprint)
         for key, why in plan.notes.items():
             log.info("%s: %s", key, why)
         planned = time.perf_counter()
@@ -109,11 +108,21 @@ def run_job(
                 "pictures": drawn - written,
             },
             choices=_pictures(job),
+            variant={one.key: one.text for one in job.variant},
             partial=() if wanted_film or isinstance(job.keys.film, str) else (FILM,),
             warnings=(record.stopped,) if record.stopped else (),
         )
         write_manifest(folder.path, account, job.units, job.tree.root)
     return Finished(job, folder.path, "done", record.verdict, record)
+
+
+def is_current(job: Job, runs: Path, *, film: bool = True) -> bool:
+    """Whether all that `job` asks for is in its folder, but for expectations that may have changed."""
+    folder = RunFolder(runs, job.id, job.fingerprint)
+    done = folder.finished()
+    if done is None or not film or isinstance(job.keys.film, str):
+        return done is not None
+    return FILM not in folder.partial and bool(done["choices"] == _pictures(job))
 
 
 def write_numbers(folder: Path, record: Record) -> None:
@@ -148,6 +157,7 @@ def write_numbers(folder: Path, record: Record) -> None:
         judgements=record.judgements,
         units=units,
         classical=record.classical,
+        variant={one.key: one.text for one in job.variant},
     )
 
 
@@ -190,5 +200,6 @@ def _judged_again(job: Job, folder: RunFolder) -> Finished:
         judgements=judgements,
         units=job.units,
         classical=stored.get("classical"),
+        variant=stored.get("variant"),
     )
     return Finished(job, folder.path, "up to date", judged)

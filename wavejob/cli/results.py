@@ -31,7 +31,7 @@ def result_table(title: str, folder: str, run: Run) -> str:
 def _row(name: str, entry: dict[str, Any], others: Mapping[str, Any] | None = None) -> tuple[str, str, str]:
     """Name, value, meaning; a figure that repeats one of `others` for F = m a needs no meaning."""
     repeats = others is not None and name.removeprefix(CLASSICAL) in others
-    return name, _value(entry), entry.get("note", "") if repeats else _meaning(entry)
+    return name, value_text(entry), entry.get("note", "") if repeats else _meaning(entry)
 
 
 def _rows(rows: Sequence[tuple[str, str, str]]) -> list[str]:
@@ -44,7 +44,7 @@ def _rows(rows: Sequence[tuple[str, str, str]]) -> list[str]:
     ]
 
 
-def _value(entry: dict[str, Any]) -> str:
+def value_text(entry: dict[str, Any]) -> str:
     """`0.1589 +- 0.0003 nm`; the error to two digits, the value to as many decimals."""
     value, error = entry["value"], entry["error"]
     if value is None:

@@ -1,52 +1,30 @@
-"""Run job files, or all job files of folders, one after another; what is up to date is not computed again."""
+"""Run job files, or all job files of folders; what is up to date is not computed again."""
 
 from __future__ import annotations
 
 import time
-from argparse import ArgumentParser, Namespace
-from dataclasses import dataclass
+from argparse import ArgumentParser, ArgumentTypeError, Namespace
+from collections.abc import Callable
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
-from ..forecast import Forecast
-from ..job import Job
-from ..outputs.folder import RunFolder
-from ..plan import Plan
-from ..problems import JobFileError, Problem, RunError, in_order
+from ..machine import cores
+from ..problems import JobFileError, RunError, in_order
 from ..reading.tree import shown
 from . import terminal
 from .arguments import add_not_yet, add_paths, add_reading
+from .batch import run_batch, status_of
 from .gathering import Gathered, doubled, gather, tally
-from .json_report import job_entry, show_json
-from .preparing import prepare
+from .json_report import show_json
 from .progress import log_line, watched
 from .sizes import counted, duration
+from .sweeps import write_sweep
+from .tasks import ENDED, Task, make_tasks
 
 if TYPE_CHECKING:
     from ..run import Finished
 
-
-@dataclass
-class Task:
-    """A job that is to be run, and how it ended. One that is up to date needs no plan."""
-
-    job: Job
-    runs: Path
-    plan: Plan | None = None
-    forecast: Forecast | None = None
-    status: str = "not started"
-    verdict: str | None = None
-
-    @property
-    def folder(self) -> RunFolder:
-        return RunFolder(self.runs, self.job.id, self.job.fingerprint)
-
-    @property
-    def entry(self) -> dict[str, Any]:
-        job, folder = self.job, shown(self.folder.path)
-        return job_entry(
-            job.id, job.fingerprint, self.status, folder=folder, verdict=self.verdict, forecast=self.forecast
-        )
+MOST_WORKERS = 1024
 
 
 def add_arguments(parser: ArgumentParser) -> None:
@@ -57,52 +35,93 @@ def add_arguments(parser: ArgumentParser) -> None:
     parser.add_argument("--again", action="store_true", help="compute again what is there already")
     parser.add_argument("--quick", action="store_true", help="no error bars")
     parser.add_argument("--no-film", action="store_true", help="draw no film")
+    parser.add_argument(
+        "--workers", type=_workers, metavar="N", help="jobs carried out at once; as many as cores if left out"
+    )
+    parser.add_argument("--skip-bad", action="store_true", help="run the good job files beside others with mistakes")
     add_reading(parser)
-    add_not_yet(parser, "--workers", "--by", "--checkpoint", "--on", "--junit")
+    add_not_yet(parser, "--by", "--checkpoint", "--on", "--junit")
+
+
+def _workers(text: str) -> int:
+    if not text.isascii() or not text.isdigit() or not 1 <= int(text) <= MOST_WORKERS:
+        raise ArgumentTypeError(f"`{text}` is no number of workers; write a whole number from 1 to {MOST_WORKERS}")
+    return int(text)
 
 
 def run(options: Namespace) -> int:
     found = gather(options)
     if options.runs:
-        found.problems += doubled(found.jobs)
-    tasks, warnings = _tasks(found, options)
-    if found.problems:
+        found.problems += doubled(found.families)
+    tasks, warnings = make_tasks(found, options)
+    if found.problems and not (options.skip_bad and tasks):
         return _refused(found, options)
+    problems = in_order(found.problems + warnings)
+    if options.format == "text":
+        for problem in found.problems:
+            terminal.say(problem.text())
     if not options.quiet:
         for warning in warnings:
             terminal.say(warning.text())
     try:
-        for task in tasks:
-            _carry_out(task, options)
+        _carry_out_all(tasks, options)
     except KeyboardInterrupt as stop:
         if options.format == "json":
-            show_json("run", warnings, [task.entry for task in tasks])
+            show_json("run", problems, [task.entry for task in tasks])
         raise type(stop)(_kept(tasks)) from None
     if options.format == "json":
-        show_json("run", warnings, [task.entry for task in tasks])
+        show_json("run", problems, [task.entry for task in tasks])
     if len(tasks) > 1 and not options.quiet:
         terminal.say(_summary(tasks))
-    return _exit_code(tasks, strict=options.strict, warned=bool(warnings))
+    code = _exit_code(tasks, strict=options.strict, warned=bool(warnings))
+    return 1 if found.problems else code
 
 
-def _tasks(found: Gathered, options: Namespace) -> tuple[list[Task], list[Problem]]:
-    """What is to be run, the most urgent first, and doubts about it; mistakes are added to those found."""
-    tasks = [Task(job, options.runs or job.tree.root / "runs") for job in found.jobs]
-    by_job = {id(task.job): task for task in tasks}
-    fresh = [task.job for task in tasks if options.again or task.folder.finished() is None]
-    ready, refused = prepare(fresh, options.memory, options.limit, bars=not options.quick, film=not options.no_film)
-    found.problems += refused
-    for one in ready:
-        task = by_job[id(one.job)]
-        task.plan, task.forecast = one.plan, one.forecast
-    if not found.problems:
-        try:
-            for tree in {task.job.tree for task in tasks}:
-                tree.runs_folder(options.runs)
-        except JobFileError as error:
-            found.problems += error.problems
-    warnings = in_order(warning for one in ready for warning in one.warnings)
-    return sorted(tasks, key=lambda task: -task.job.keys.priority), warnings
+def _carry_out_all(tasks: list[Task], options: Namespace) -> None:
+    """One after another in this process, or in several; then the variants of each file side by side."""
+    families: dict[int, list[Task]] = {}
+    for task in tasks:
+        if task.family.is_varied:
+            families.setdefault(id(task.family), []).append(task)
+
+    def ended(task: Task) -> None:
+        variants = families.get(id(task.family))
+        if variants is None:
+            if options.format == "text" and task.status != "failed":
+                _show(task)
+        elif all(one.status in ENDED for one in variants):
+            write_sweep(families.pop(id(task.family)), show=options.format == "text")
+
+    workers = min(options.workers or cores(), len(tasks))
+    try:
+        if workers > 1:
+            run_batch(tasks, workers, options, ended)
+        else:
+            _one_by_one(tasks, options, ended)
+    finally:
+        for variants in families.values():  # of a batch that was stopped
+            write_sweep(variants, show=False)
+
+
+def _one_by_one(tasks: list[Task], options: Namespace, ended: Callable[[Task], None]) -> None:
+    """In this process; how far several jobs are is written to status.json."""
+    status = status_of(tasks, 1)
+    try:
+        for task in tasks:
+            if len(tasks) > 1:
+                status.start(task.name)
+            begun = time.monotonic()
+            _carry_out(task, options)
+            if len(tasks) > 1 and task.status == "failed":
+                status.fail(task.name, "see its log")
+            elif len(tasks) > 1:
+                status.end(task.name, time.monotonic() - begun if task.status == "done" else None)
+            ended(task)
+    except KeyboardInterrupt:
+        if len(tasks) > 1:
+            status.running.clear()
+            status.write(stopped=True)
+        raise
 
 
 def _refused(found: Gathered, options: Namespace) -> int:
@@ -121,29 +140,27 @@ def _carry_out(task: Task, options: Namespace) -> None:
     """Runs one job; its failure is told and noted, and does not stop the others."""
     begun = time.monotonic()
     if task.forecast and not options.quiet and not terminal.is_live():
-        log_line(f"{task.job.id}: started, about {duration(task.forecast.seconds)}")
+        log_line(f"{task.name}: started, about {duration(task.seconds)}")
     task.status = "stopped"  # unless it ends below
     try:
         finished = _run(task, options)
     except (RunError, JobFileError) as error:
-        task.status, task.verdict = "failed", "failed"
-        terminal.say(f"{task.job.id}: {error}")
+        task.end("failed", "failed")
+        terminal.say(f"{task.name}: {error}")
         return
     except MemoryError:
-        task.status, task.verdict = "failed", "failed"
-        terminal.say(f"{task.job.id}: the memory is used up; take fewer points, or stop other programs")
+        task.end("failed", "failed")
+        terminal.say(f"{task.name}: the memory is used up; take fewer points, or stop other programs")
         return
     except Exception as error:
         from .bugs import report
 
-        task.status, task.verdict = "failed", "failed"
-        report(error, verbose=options.verbose, doing=task.job.id)
+        task.end("failed", "failed")
+        report(error, verbose=options.verbose, doing=task.name)
         return
-    task.status, task.verdict, task.plan = finished.status, finished.verdict, None
+    task.end(finished.status, finished.verdict)
     if not options.quiet:
         _say_ended(task, time.monotonic() - begun)
-    if options.format == "text":
-        _show(task)
 
 
 def _run(task: Task, options: Namespace) -> Finished:
@@ -172,7 +189,7 @@ def _show(task: Task) -> None:
 
 
 def _say_ended(task: Task, seconds: float) -> None:
-    said = f"{task.job.id}: {task.status}, {task.verdict}"
+    said = f"{task.name}: {task.status}, {task.verdict}"
     if task.status == "done":
         said += f", {duration(seconds)}"
     if terminal.is_live():
@@ -187,7 +204,7 @@ def _kept(tasks: list[Task]) -> str:
     cut = next((task for task in tasks if task.status == "stopped"), None)
     said = f"stopped: {counted(kept, 'job')} of {len(tasks)} finished and kept"
     if cut is not None:
-        said += f"; {cut.job.id} was cut short and starts anew next time"
+        said += f"; {cut.name} was cut short and starts anew next time"
     return said
 
 
