@@ -299,6 +299,13 @@ class SnapshotKeys(Model):
     every: Duration = Field(description="time between stored fields")
 
 
+WHEN_SCHEMA = {
+    "type": "object",
+    "additionalProperties": {"type": ["number", "string", "boolean"]},
+    "examples": [{"b2": "3 nm"}],
+}
+
+
 class ExpectKeys(Model):
     """A check on one result."""
 
@@ -309,10 +316,8 @@ class ExpectKeys(Model):
     above: Scalar | None = Field(None, description="lower bound")
     within: list[Scalar] | None = Field(None, description="[lowest, highest]", min_length=2, max_length=2)
     source: str | None = Field(None, description="where the value comes from")
-    when: dict[str, Scalar] | None = Field(
-        None,
-        description="judged only in the variants of a varied job with these values; left out: in every variant",
-        examples=[{"b2": "3 nm"}],
+    when: Annotated[dict[str, Scalar], WithJsonSchema(WHEN_SCHEMA)] | None = Field(
+        None, description="judged only in the variants of a varied job with these values; left out: in every variant"
     )
 
     @model_validator(mode="after")
@@ -408,7 +413,7 @@ def _varied(value: Any) -> Any:
     return value
 
 
-_VALUE = {"type": ["number", "string", "boolean"]}
+_VALUE: dict[str, Any] = {"type": ["number", "string", "boolean"]}
 VARY_SCHEMA = {
     "type": "object",
     "minProperties": 1,
@@ -435,7 +440,7 @@ VARY: Any = Field(
     default_factory=list,
     description="one run for each value of a key or a name of `let`; several entries: every combination",
     examples=[[_MASSES]],
-    max_length=8,
+    max_length=20,
 )
 VARY_TOGETHER: Any = Field(
     default_factory=list,

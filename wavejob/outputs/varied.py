@@ -13,7 +13,7 @@ from .encode import write_png
 from .palette import CURVES, GRID, INK, QUIET, density_table, rgb
 from .sheet import Panel, Rect, Sheet, plain_matplotlib
 from .titles import broken_into_lines
-from .wording import scientific
+from .wording import power_of_ten, scientific
 
 Array = np.ndarray
 
@@ -105,8 +105,7 @@ def _map(sheet: Sheet, first: Axis, second: Axis, outcome: Outcome) -> Array:
         sheet.text(30, MAP.top - FONT, second.name, FONT)
     else:
         _beside(sheet, panel, second.name, second.unit)
-    room = numbers_room(sheet, side_ticks(scale, FONT), FONT)
-    side_axis(sheet, scale, FONT, outcome.name, _plain(outcome.unit), room=room, right=True)
+    _beside(sheet, scale, outcome.name, outcome.unit, right=True)
     if np.isfinite(outcome.errors).any():
         said = f"largest error bar {scientific(float(np.nanmax(outcome.errors)))} {outcome.unit or ''}".rstrip()
         sheet.text(MAP.right, HEIGHT - 25, said, FONT, colour=QUIET, align="right")
@@ -122,10 +121,6 @@ def _map(sheet: Sheet, first: Axis, second: Axis, outcome: Outcome) -> Array:
     ramp = np.linspace(255, 0, SCALE.height).round().astype(int)
     pixels[SCALE.top : SCALE.bottom, SCALE.left : SCALE.right - TICK, :3] = density_table()[ramp][:, None]
     return pixels
-
-
-def _plain(unit: str | None) -> str:
-    return "1" if unit is None else unit
 
 
 def _below(sheet: Sheet, panel: Panel, axis: Axis) -> None:
@@ -150,18 +145,18 @@ def _thinned(axis: Axis) -> list[tuple[float, str]]:
     return list(zip(axis.values.tolist(), axis.words, strict=True))[::every]
 
 
-def _beside(sheet: Sheet, panel: Panel, name: str, unit: str | None) -> None:
-    """The left axis; a plain number has no unit behind its name."""
+def _beside(sheet: Sheet, panel: Panel, name: str, unit: str | None, *, right: bool = False) -> None:
+    """The axis at a side; a plain number has no unit behind its name."""
     shown = side_ticks(panel, FONT)
     room = numbers_room(sheet, shown, FONT)
     if unit is not None:
-        side_axis(sheet, panel, FONT, name, unit, room=room)
+        side_axis(sheet, panel, FONT, name, unit, room=room, right=right)
         return
-    spine(sheet, panel)
+    spine(sheet, panel, right=right)
     for value, label in zip(shown.values, shown.labels, strict=True):
-        side_tick(sheet, panel, panel.down(value), label, FONT)
-    said = f"{name} [{scientific(10.0**shown.power, 1)}]" if shown.power else name
-    side_name(sheet, panel, said, FONT, room=room)
+        side_tick(sheet, panel, panel.down(value), label, FONT, right=right)
+    said = f"{name} [{power_of_ten(shown.power)}]" if shown.power else name
+    side_name(sheet, panel, said, FONT, room=room, right=right)
 
 
 def _range(values: Array) -> tuple[float, float]:

@@ -54,10 +54,9 @@ def _step(value: Any, parts: list[str | int], path: Key) -> tuple[int, str | int
         if first in names:
             return 1, names.index(str(first))
         if isinstance(first, int):
-            raise KeyPathError(f"{here} has no item [{first}]", f"there are [0] to [{len(value) - 1}]")
+            raise KeyPathError(f"{here} has no item [{first}]", f"it has {len(value)}, and the first is [0]")
         known = [name for name in names if name]
-        places = f"; `[0]` to `[{len(value) - 1}]` count them" if value else ""
-        raise KeyPathError(f"{here} has no item named `{first}`", _meant(first, known) + places)
+        raise KeyPathError(f"{here} has no item named `{first}`", _meant(first, known))
     said = f"{here} is {shown(value)}, which has no `{first}`" if path else f"there is no `{first}`"
     raise KeyPathError(said, "vary it as a whole, or write it with its keys")
 
@@ -72,7 +71,7 @@ def _meant(word: str, known: list[str]) -> str:
     near = nearest(word, known)
     if near:
         return f"did you mean `{near}`?"
-    return "there are: " + ", ".join(f"`{name}`" for name in known) if known else "none of them has a `name:`"
+    return "there are: " + ", ".join(f"`{name}`" for name in known) if known else "nothing there has a name"
 
 
 def with_value(value: Any, path: Key, new: Any) -> Any:

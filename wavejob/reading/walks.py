@@ -192,12 +192,13 @@ def between(low: Any, high: Any, count: int, units: Units, names: Mapping[str, N
             unit = first.unit or last.unit
             _refuse_order(first.factor, last.factor)
             whole = isinstance(low, int) and isinstance(high, int)
-            return [_number(n, unit, whole) for n in _spread(first.factor, last.factor, count)]
+            return [_number(n, unit, whole=whole) for n in _spread(first.factor, last.factor, count)]
     read = [units.read_named(end, names) for end in (low, high)]
     kind = read[0].dimension if read[0].dimension != "number" else read[1].dimension
     low_value, high_value = (units.read(end, kind, names) for end in (low, high))
     _refuse_order(low_value, high_value)
-    return [units.write(value, kind) for value in _spread(low_value, high_value, count)]
+    texts = [units.write(value, kind).partition(" ") for value in _spread(low_value, high_value, count)]
+    return [_number(float(number), unit, whole=False) for number, _, unit in texts]
 
 
 def _same(first: Term, last: Term) -> bool:
@@ -214,7 +215,7 @@ def _spread(low: float, high: float, count: int) -> list[float]:
     return [*(low + (high - low) * (step / (count - 1)) for step in range(count - 1)), high]
 
 
-def _number(value: float, unit: str, whole: bool) -> Any:
+def _number(value: float, unit: str, *, whole: bool) -> Any:
     number = float(f"{value:.12g}")
     if unit:
         return f"{number:.12g} {unit}"

@@ -14,6 +14,7 @@ TOPICS = (
     "quantities",
     "job-tree",
     "bases",
+    "variants",
     "choices",
     "time",
     "sharp-edges",
@@ -24,6 +25,7 @@ TOPICS = (
     "verdict",
     "run-folder",
     "fingerprint",
+    "batches",
     "commands",
 )
 
