@@ -11,6 +11,7 @@ import logging
 import multiprocessing
 import os
 import signal
+import sys
 import time
 import traceback
 from collections.abc import Generator, Iterable, Iterator
@@ -104,7 +105,7 @@ def carry_out(
     """
     queue, children = Queue(orders, memory), dict[int, _Child]()
     context = _context()
-    with _quiet_threads():
+    with _for_children():
         try:
             while queue.waiting or children:
                 while len(children) < workers and (order := queue.start()) is not None:
@@ -133,10 +134,11 @@ def _context() -> Any:
 
 
 @contextlib.contextmanager
-def _quiet_threads() -> Iterator[None]:
-    """While the block lasts, processes that are started take one thread, and let it sleep."""
-    before = {name: os.environ.get(name) for name in QUIET_THREADS}
-    os.environ.update(QUIET_THREADS)
+def _for_children() -> Iterator[None]:
+    """While the block lasts, processes that are started take one thread, let it sleep, and import what this one does."""
+    wanted = QUIET_THREADS | {"PYTHONPATH": os.pathsep.join(path or os.getcwd() for path in sys.path)}
+    before = {name: os.environ.get(name) for name in wanted}
+    os.environ.update(wanted)
     try:
         yield
     finally:
