@@ -63,7 +63,9 @@ def test_commands_are_found_as_continuous_integration_finds_them(mark: str) -> N
 
 def test_commands_are_quoted_everywhere() -> None:
     assert {page for page, _ in QUOTED} >= {"README.md", "DEVELOPERS.md", "fingerprint.md"}
-    assert {command.split()[0] for command in COMMANDS} == {"check", "run", "explain", "schema", "new"}
+    assert {command.split()[0] for command in COMMANDS} == {
+        "check", "run", "compare", "prune", "explain", "schema", "new",
+    }  # fmt: skip
 
 
 @pytest.mark.parametrize("command", COMMANDS)
@@ -86,13 +88,19 @@ def test_the_job_of_the_tour_can_be_run() -> None:
 
 
 def test_figures_are_those_that_the_first_job_expects() -> None:
-    """Expected values and tolerances: transfer matrix and dwell time, as stated in the job file."""
+    """Expected values and tolerances: from the outside sources that the job file states."""
     block = marked("figures: first_light")
-    expectations = load(ROOT / "jobs" / "first_light.yml").keys.expect
-    assert expectations
-    for expect in expectations:
+    job = load(ROOT / "jobs" / "first_light.yml")
+    assert job.keys.expect
+    assert "\n  trusted, in runs/jobs/first_light/" in block
+    for expect in job.keys.expect:
         (value,) = re.findall(rf"^ *{re.escape(expect.result)} +(\S+) \+- \S+ ", block, re.MULTILINE)
-        assert abs(float(value) - float(expect.equals)) <= float(expect.tolerance)
+        dimension = job.figures[expect.result].dimension
+        wanted, tolerance = (
+            job.units.to_file(job.units.read(written, dimension), dimension)
+            for written in (expect.equals, expect.tolerance)
+        )
+        assert abs(float(value) - wanted) <= tolerance
 
 
 @pytest.mark.parametrize("page", PAGES)
@@ -118,8 +126,6 @@ def test_the_factors_of_error_bars_are_those_of_the_code() -> None:
 
 
 def test_the_house_lists_the_layers_in_their_order() -> None:
-    listed = re.findall(
-        r"^\| `(\w+)` \|", DEVELOPERS.partition("| layer |")[2].partition("\n\n")[0], re.MULTILINE
-    )
+    listed = re.findall(r"^\| `(\w+)` \|", DEVELOPERS.partition("| layer |")[2].partition("\n\n")[0], re.MULTILINE)
     built = [name for name in LAYERS if (PACKAGE / name).is_dir() or (PACKAGE / f"{name}.py").is_file()]
     assert listed == [name for name in built if not name.startswith("__")]

@@ -8,8 +8,9 @@ from pathlib import Path
 
 import pytest
 
-from wavejob import checks, job, plan, reference, wigner
-from wavejob.evidence import assess, bars, companions
+from wavejob import checks, job, plan, reference, timetable, wigner
+from wavejob.cli import prune
+from wavejob.evidence import assess, bars, companions, comparison
 from wavejob.loading import parse
 from wavejob.outputs.folder import OWNER
 from wavejob.reading import merging
@@ -98,8 +99,10 @@ def test_every_part_of_an_error_is_described(folder: Path) -> None:
         ("verdict", r"beyond (\S+) of the largest that the points", checks.RESOLVED),
         ("bases", r"(\d+) files below", merging.LONGEST_CHAIN),
         ("choices", r"`evolve.accuracy` \| (\S+) \|", job.DEFAULT_ACCURACY),
-        ("choices", r"about (\d+) rows", plan.ROWS),
+        ("choices", r"about (\d+) rows", timetable.ROWS),
         ("choices", r"about (\d+) frames", plan.FRAMES),
+        ("compare", r"agree to (\S+) of themselves", comparison.ROUNDING),
+        ("prune", r"newest first: (\d+) if left out", prune.KEPT),
         ("classical-companion", r"spread of (\d+) groups", wigner.GROUPS),
     ],
 )

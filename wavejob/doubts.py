@@ -8,9 +8,11 @@ from collections.abc import Iterator
 import numpy as np
 
 from .checks import REFLECTION_LIMIT
+from .endings import Ending
 from .misfits import HEAD_ROOM
 from .observables.places import Crossing, Inside
-from .plan import Ending, Plan, highest_wavenumber
+from .plan import Plan
+from .points import highest_wavenumber
 from .problems import Problem
 from .reading.merging import Key
 

@@ -10,11 +10,14 @@ from itertools import pairwise
 import numpy as np
 
 from .classical import first_step
+from .endings import Ending
 from .newton import Motion, Passages, Trajectories
 from .observables.swarm import ClassicalMeter, History, Swarm
 from .packets.gaussian import GaussianPacket
-from .plan import Ending, Plan, fastest, wave_numbers
+from .plan import Plan
+from .points import wave_numbers
 from .shapes import Breaks, Landscape, Shape, Term
+from .timetable import fastest
 from .wigner import GROUPS, Start, gaussian, sampled
 
 Array = np.ndarray

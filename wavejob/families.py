@@ -115,8 +115,9 @@ def _without_when(job: Job) -> Job:
     problems = [problem for index, expect in enumerate(job.keys.expect) for problem in _misfit(job, index, expect)]
     if problems:
         raise JobFileError(problems)
-    kept = [expect.model_copy(update={"when": None}) for expect in job.keys.expect if _applies(job, expect)]
-    return replace(job, keys=job.keys.model_copy(update={"expect": kept}))
+    places = tuple(index for index, expect in enumerate(job.keys.expect) if _applies(job, expect))
+    kept = [job.keys.expect[index].model_copy(update={"when": None}) for index in places]
+    return replace(job, keys=job.keys.model_copy(update={"expect": kept}), expected_at=places)
 
 
 def _misfit(job: Job, index: int, expect: ExpectKeys) -> Iterable[Problem]:

@@ -64,6 +64,7 @@ class Job:
     particle: Particle
     tree: JobTree
     variant: tuple[Varied, ...] = ()  # of a varied job: what sets this one apart
+    expected_at: tuple[int, ...] | None = None  # places in the file of the expectations kept; None: all are
 
     @property
     def title(self) -> str:
@@ -144,6 +145,10 @@ class Job:
         shared = (figure for o in self.measured for figure in o.classical_figures(self.outline))
         return (*(by_newton(figure) for figure in shared), *OWN_FIGURES)
 
+    def expectation(self, number: int) -> Key:
+        """Where an expectation stands in the file."""
+        return "expect", number if self.expected_at is None else self.expected_at[number]
+
     def problem(self, path: Key, message: str, fix: str = "", severity: str = "error") -> Problem:
         """A problem at a key of the job file."""
         return problem_at(self.document, path, message, fix, severity=severity)
@@ -165,8 +170,9 @@ class Job:
                 for name in ("grid", "potential", "edges", "packet", "evolve", "observables", "snapshots")
             },
         }
-        if "classical" in keys.model_fields_set:
-            decisive["classical"] = plain(keys.classical)
+        for name in ("classical", "error_bars"):
+            if name in keys.model_fields_set:
+                decisive[name] = plain(getattr(keys, name))
         text = json.dumps(decisive, sort_keys=True, allow_nan=False)
         return hashlib.sha256(text.encode()).hexdigest()[:10]
 

@@ -118,8 +118,9 @@ class Quantity:
         return number
 
     def wanted(self) -> str:
-        quantity = f"{phrase(self.dimension)} such as `{example(self.dimension)}`"
-        said = "a number" if self.dimension == "number" else quantity
+        said = phrase(self.dimension)
+        if self.dimension != "number":
+            said += f" such as `{example(self.dimension)}`"
         return f"{said}, or `{self.word}`" if self.word else said
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> core_schema.CoreSchema:

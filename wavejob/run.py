@@ -2,36 +2,46 @@
 
 from __future__ import annotations
 
-import json
 import logging
 import time
 from collections.abc import Callable
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
-from typing import Any, Literal
+from typing import Literal
 
 import numpy as np
 
 from .checks import judge_expectation, verdict
 from .classical_companion import with_companion
 from .evidence.assess import assess
-from .job import Job, plain
+from .job import Job
+from .outputs.encode import video_encoder
 from .outputs.fields import DensityTable, write_fields
 from .outputs.files import atomic
-from .outputs.folder import RunFolder
+from .outputs.folder import RESULTS, RunFolder
 from .outputs.log import run_log
-from .outputs.manifest import Account, write_manifest
+from .outputs.manifest import Account, renew_digests, write_manifest
 from .outputs.resolved import write_resolved
-from .outputs.tables import read_results, write_curve, write_results_csv, write_results_json, write_series
+from .outputs.tables import (
+    expectations,
+    read_results,
+    write_curve,
+    write_json,
+    write_results_csv,
+    write_results_json,
+    write_series,
+)
 from .plan import Plan, make_plan
+from .reader import Run
 from .results import Verdict
 from .simulate import Progress, Record, simulate
+from .standing import BARS, FILM, film_name, has_bars, made_before, pictures, stands
 
 log = logging.getLogger(__name__)
 
 Tell = Callable[[Progress], None]
-FILM = "film"
+COPY = "job.yml"  # of the job file
 
 
 @dataclass(frozen=True)
@@ -58,23 +68,41 @@ def run_job(
 ) -> Finished:
     """Carries out `job` into its folder below `runs`, unless that is there already and `again` is not set.
 
-    Raises RunError where the run cannot go on or its files cannot be written; JobFileError where the job
-    cannot be planned. A folder without manifest.json is unfinished.
+    Error bars and film that a run has are made again with it, whether or not `bars` and `film` are set.
+    Raises RunError where the run cannot go on, its files cannot be written, or another process works on them;
+    JobFileError where the job cannot be planned. A folder without manifest.json is unfinished.
     """
     folder = RunFolder(runs, job.id, job.fingerprint)
-    wanted_film = film and not isinstance(job.keys.film, str)
-    if not again and is_current(job, runs, film=film):
-        return _judged_again(job, folder)
+    if not again:
+        if stands(job, folder, bars=bars, film=film):
+            return _judged_again(job, folder)
+        had_bars, had_film = made_before(folder)
+        bars, film = bars or had_bars, film or had_film
+    with folder.held():
+        return _carried_out(job, folder, bars, film, plan, progress, film_progress)
+
+
+def _carried_out(
+    job: Job,
+    folder: RunFolder,
+    bars: bool,
+    film: bool,
+    plan: Plan | None,
+    progress: Tell | None,
+    film_progress: Callable[[int, int], None] | None,
+) -> Finished:
     started, clock = datetime.now(UTC), time.perf_counter()
     plan = plan or make_plan(job)
+    if film and film_name(job) == "film.mp4":
+        video_encoder()  # missed now, not when hours of work are to be shown
     folder.begin()
     with run_log(folder.path / "run.log"):
         log.info("job %s, fingerprint %s", job.name, job.fingerprint)
         for key, why in plan.notes.items():
             log.info("%s: %s", key, why)
         planned = time.perf_counter()
-        wanted_bars = bars and not isinstance(job.keys.error_bars, str)
-        record = assess(plan, progress).record if wanted_bars else simulate(plan, progress)
+        no_bars, no_film = not has_bars(job), film_name(job) is None
+        record = assess(plan, progress).record if bars and not no_bars else simulate(plan, progress)
         swarmed = time.perf_counter()
         record = with_companion(record)
         companion = time.perf_counter() - swarmed
@@ -82,7 +110,7 @@ def run_job(
         simulated = time.perf_counter()
         write_numbers(folder.path, record)
         written = time.perf_counter()
-        draw(folder.path, record, wanted_film, film_progress)
+        draw(folder.path, record, film, film_progress)
         drawn = time.perf_counter()
         for check in record.checks:
             log.info("check %s: %s", check.name, "passed" if check.passed else f"failed; {check.advice}")
@@ -107,28 +135,19 @@ def run_job(
                 "write": written - simulated,
                 "pictures": drawn - written,
             },
-            choices=_pictures(job),
+            choices=pictures(job),
             variant={one.key: one.text for one in job.variant},
-            partial=() if wanted_film or isinstance(job.keys.film, str) else (FILM,),
+            partial=tuple(what for what, made in ((BARS, bars or no_bars), (FILM, film or no_film)) if not made),
             warnings=(record.stopped,) if record.stopped else (),
         )
         write_manifest(folder.path, account, job.units, job.tree.root)
     return Finished(job, folder.path, "done", record.verdict, record)
 
 
-def is_current(job: Job, runs: Path, *, film: bool = True) -> bool:
-    """Whether all that `job` asks for is in its folder, but for expectations that may have changed."""
-    folder = RunFolder(runs, job.id, job.fingerprint)
-    done = folder.finished()
-    if done is None or not film or isinstance(job.keys.film, str):
-        return done is not None
-    return FILM not in folder.partial and bool(done["choices"] == _pictures(job))
-
-
 def write_numbers(folder: Path, record: Record) -> None:
     """Every table of a run; each is whole or not there."""
     job, units = record.plan.job, record.plan.job.units
-    with atomic(folder / "job.yml") as file:
+    with atomic(folder / COPY) as file:
         file.write(job.text)
     write_resolved(folder / "resolved.yml", record.plan)
     errors = record.series_errors
@@ -174,32 +193,19 @@ def draw(folder: Path, record: Record, film: bool, progress: Callable[[int, int]
         draw_film(scene, folder / f"film.{keys.format}", fps=keys.fps, progress=progress)
 
 
-def _pictures(job: Job) -> dict[str, Any]:
-    """What pictures depend on beside the numbers."""
-    return {"title": job.title, "film": plain(job.keys.film)}
-
-
 def _judged_again(job: Job, folder: RunFolder) -> Finished:
-    """A finished run whose numbers stand: its expectations are judged as they are written now."""
-    stored = json.loads((folder.path / "results.json").read_text(encoding="utf-8"))
-    if (folder.path / "job.yml").read_text(encoding="utf-8") == job.text:
-        return Finished(job, folder.path, "up to date", stored["verdict"])
-    results, checks = read_results(folder.path / "results.json", job.figures, job.units)
+    """A finished run whose numbers stand: its expectations are judged as they are now, here or in a base."""
+    stored = Run(folder.path).document
+    results, checks = read_results(stored, job.figures, job.units)
     by_name = {result.name: result for result in results}
     judgements = [judge_expectation(job, expect, by_name[expect.result]) for expect in job.keys.expect]
     judged = verdict(checks, judgements)
-    with atomic(folder.path / "job.yml") as file:
-        file.write(job.text)
-    write_results_json(
-        folder.path / "results.json",
-        job=job.id,
-        fingerprint=job.fingerprint,
-        verdict=judged,
-        results=results,
-        checks=checks,
-        judgements=judgements,
-        units=job.units,
-        classical=stored.get("classical"),
-        variant=stored.get("variant"),
-    )
+    now = {**stored, "verdict": judged, "expectations": expectations(judgements)}
+    copy = folder.path / COPY
+    if now != stored or not copy.is_file() or copy.read_bytes() != job.text.encode():
+        with folder.held():
+            write_json(folder.path / RESULTS, now)
+            with atomic(copy) as file:
+                file.write(job.text)
+            renew_digests(folder.path)
     return Finished(job, folder.path, "up to date", judged)

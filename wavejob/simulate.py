@@ -17,6 +17,7 @@ from .evolve.stepper import plan as plan_steps
 from .observables.base import Meter, Observable, Series
 from .observables.densities import Density, MomentumDensity
 from .plan import Plan
+from .problems import RunError
 from .recording import Frames, Rows, Sampler, Stored, Ticker, Watch
 from .results import Check, Column, Curve, Judgement, Result, Verdict
 from .state import Look
@@ -236,6 +237,9 @@ def _stopper(plan: Plan, rows: Rows) -> Callable[[Look], str | None]:
         values: Sequence[float] = [value for meter in rows.rows[-1] for value in meter]
         for name, index, side, limit in bounds:
             if side * values[index] > side * limit:
+                if look.n == 0:
+                    where = "below" if side < 0 else "above"
+                    raise RunError(f"`evolve.stop_when`: {name} starts {where} its bound", "give another bound")
                 return f"{name} {'fell below' if side < 0 else 'rose above'} its bound of stop_when"
         return None
 

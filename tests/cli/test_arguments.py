@@ -16,10 +16,14 @@ MISTAKES = [
     (
         "",
         "wavejob: no command given; "
-        "there are: check, run, explain, schema, new, doctor; see `wavejob --help`",
+        "there are: check, run, compare, prune, explain, schema, new, doctor; see `wavejob --help`",
     ),
     ("chek job.yml", "wavejob: no command `chek`; did you mean `check`?"),
-    ("report", "wavejob: `report` is not available yet; there are: check, run, explain, schema, new, doctor"),
+    (
+        "report",
+        "wavejob: `report` is not available yet; "
+        "there are: check, run, compare, prune, explain, schema, new, doctor",
+    ),
     ("check", "wavejob check: no job file given; name a job file or a folder of them"),
     ("check --memroy 3", "wavejob check: no option `--memroy`; did you mean `--memory`?"),
     ("check -x", "wavejob check: no option `-x`; see `wavejob check --help`"),
@@ -40,7 +44,7 @@ MISTAKES = [
         "wavejob run: --workers: `none` is no number of workers; write a whole number from 1 to 1024",
     ),
     ("run --by 07:00 job.yml", "wavejob run: `--by` is not available yet; leave it out"),
-    ("run --junit=a.xml job.yml", "wavejob run: `--junit` is not available yet; leave it out"),
+    ("run --on dask:host job.yml", "wavejob run: `--on` is not available yet; leave it out"),
     (
         "schema job.yml",
         "wavejob schema: does not know what to do with `job.yml`; see `wavejob schema --help`",

@@ -28,7 +28,9 @@ def test_a_signal_stops_the_workers_and_keeps_what_is_done(
         (tree / f"{name}.yml").write_text(LONG, encoding="utf-8")
     status, pids = tree / "runs" / "status.json", set[int]()
     command = [sys.executable, "-m", "wavejob", "run", ".", "--workers", "2"]
-    with subprocess.Popen(command, cwd=tree, env=environment, stderr=subprocess.PIPE, start_new_session=True) as process:
+    with subprocess.Popen(
+        command, cwd=tree, env=environment, stderr=subprocess.PIPE, start_new_session=True
+    ) as process:
         last = time.monotonic() + 60
         while time.monotonic() < last:
             time.sleep(0.1)

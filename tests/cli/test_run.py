@@ -170,6 +170,69 @@ def test_a_log_gets_a_line_a_minute(capsys: pytest.CaptureFixture[str]) -> None:
     ]
 
 
+def test_what_quick_left_out_is_made_by_a_full_run(call: Call, tree: Path) -> None:
+    text = JOB.replace("error_bars: none\n", "").replace("film: none", "film: {every: 1}")
+    (tree / "job.yml").write_text(text, encoding="utf-8")
+
+    def made() -> tuple[list[str], bool, bool]:
+        folder = next(tree.glob("runs/job/*"))
+        left_out = json.loads((folder / "manifest.json").read_text())["partial"]
+        result = json.loads((folder / "results.json").read_text())["results"]["norm.final"]
+        return left_out, result["error"] is not None, (folder / "film.mp4").is_file()
+
+    assert call("run", "job.yml", "--quick", "--no-film", "-q").code == 0
+    assert made() == (["error_bars", "film"], False, False)
+    assert call("run", "job.yml", "--no-film", "-q").code == 0
+    assert made() == (["film"], True, False)
+    assert call("run", "job.yml", "-q").code == 0
+    assert made() == ([], True, True)
+    (tree / "job.yml").write_text(text + "job: Another title\n", encoding="utf-8")
+    assert call("run", "job.yml", "--quick", "-q").code == 0  # draws again, and keeps what there was
+    assert made() == ([], True, True)
+
+
+def test_an_expectation_in_a_base_is_judged_again(call: Call, tree: Path) -> None:
+    (tree / "_base.yml").write_text(JOB, encoding="utf-8")
+    (tree / "job.yml").write_text("based_on: _base.yml\n", encoding="utf-8")
+    assert call("run", "job.yml", "-q").code == 0
+    (tree / "_base.yml").write_text(FAILS, encoding="utf-8")
+    found = call("run", "job.yml")
+    assert (found.code, "job: up to date" in found.err) == (1, True)
+    assert "expected, missed: through.total is" in found.out
+    folder = next(tree.glob("runs/job/*"))
+    listed = json.loads((folder / "manifest.json").read_text())["outputs"]["results.json"]
+    assert listed["bytes"] == (folder / "results.json").stat().st_size
+
+
+def test_damaged_results_are_made_anew(call: Call, tree: Path) -> None:
+    first = call("run", "job.yml", "-q")
+    results = next(tree.glob("runs/job/*/results.json"))
+    results.write_text('{"job":', encoding="utf-8")
+    assert call("run", "job.yml", "-q").out == first.out
+    results.unlink()
+    assert call("run", "job.yml", "-q").out == first.out
+
+
+def test_other_error_bars_are_another_run(call: Call, tree: Path) -> None:
+    """The fingerprint is of all that decides the figures, and an error belongs to a figure."""
+    call("run", "job.yml", "-q")
+    (tree / "job.yml").write_text(JOB.replace("error_bars: none", "error_bars: {grid: no}"), encoding="utf-8")
+    call("run", "job.yml", "-q")
+    assert len(list(tree.glob("runs/job/*"))) == 2
+
+
+def test_a_missing_encoder_is_missed_before_the_work(
+    call: Call, tree: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    (tree / "job.yml").write_text(JOB.replace("film: none", "film: {every: 1}"), encoding="utf-8")
+    call("run", "job.yml", "-q", "--no-film")
+    monkeypatch.setenv("IMAGEIO_FFMPEG_EXE", "/nowhere/ffmpeg")
+    found = call("run", "job.yml", "-q")
+    assert found.code == 1
+    assert "the video encoder `/nowhere/ffmpeg` is missing; `pip install imageio-ffmpeg`" in found.err
+    assert next(tree.glob("runs/job/*/manifest.json")).is_file()  # what was there stands
+
+
 VARIED = JOB + "vary: [{packet.gaussian.wavenumber: [1, 2]}]\nexpect: [{result: through.total, above: 0}]\n"
 
 

@@ -78,7 +78,7 @@ def floor() -> dict[str, float]:
 def squeeze() -> dict[str, float]:
     """A second beam of 300 Hz comes on over 1 ms, on top of 100 Hz; after 6 ms."""
     def stiffness(t: float) -> float:
-        return RB87 * (TRAP**2 + (2 * np.pi * 300) ** 2 * min(max((t - 1e-3) / 1e-3, 0.0), 1.0))
+        return RB87 * (TRAP**2 + (2 * np.pi * 300) ** 2 * smooth_ramp((t - 1e-3) / 1e-3))
 
     return {"width.x.final": breathing(stiffness, RB87, 0.763e-6, 6e-3, 1e-5) * 1e6}
 
@@ -147,7 +147,7 @@ def bloch_start() -> tuple[np.ndarray, np.ndarray]:
     off = np.full(len(n) - 1, -DEPTH / 4)
     matrix = np.diag((2.0 * n) ** 2 + DEPTH / 2) + np.diag(off, 1) + np.diag(off, -1)
     share = np.linalg.eigh(matrix)[1][:, 0]
-    x = np.arange(-820, 821) * 0.04
+    x = np.arange(-1440, 1441) * 0.02
     wave = np.cos(2 * np.pi / (PERIOD * 1e6) * np.outer(x, n)) @ share * np.sign(share[15])
     return x, wave * np.exp(-((x / 8.0) ** 2))
 

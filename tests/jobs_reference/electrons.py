@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from scipy.optimize import brentq, minimize_scalar
 
 from .constants import EV, HBAR, M_E
 from .levels import gaussian
@@ -18,16 +19,25 @@ def gaas(energy: float) -> float:
 
 
 def stack(first: float, well: float, second: float) -> dict[str, float]:
-    """A 300 meV double barrier met by a packet of 88.5 meV and 20 nm; the run takes 2 ps."""
+    """A 300 meV double barrier met by a packet of 88.5 meV and 20 nm."""
     thicknesses, heights = [first, well, second], [gaas(0.3), 0.0, gaas(0.3)]
     k0 = np.sqrt(gaas(0.0885))
     passed = packet_average(lambda k: layers(k, thicknesses, heights)[0], k0, 20)
     inside = packet_average(lambda k: layer_dwell(k, thicknesses, heights, 1), k0, 20) * GAAS / HBAR * 1e-3
-    return {"transmitted.total": passed, "reflected.total": 1 - passed, "well.mean": inside / 2000}
+    return {"transmitted.total": passed, "reflected.total": 1 - passed, "hold.time": inside}
 
 
 def first_light() -> dict[str, float]:
-    return stack(3.0, 5.0, 3.0)
+    """The nominal stack, with the top and the width of its lowest level in meV."""
+    thicknesses, heights = [3.0, 5.0, 3.0], [gaas(0.3), 0.0, gaas(0.3)]
+
+    def passed(energy: float) -> float:
+        return layers(np.sqrt(gaas(energy)), thicknesses, heights)[0]
+
+    top = minimize_scalar(lambda e: -passed(e), bracket=(0.085, 0.0885, 0.092), tol=1e-12)
+    half = [brentq(lambda e: passed(e) + top.fun / 2, *between) for between in ((0.07, top.x), (top.x, 0.11))]
+    level = {"T.peak[0].energy": top.x * 1e3, "T.peak[0].width": (half[1] - half[0]) * 1e3}
+    return {**stack(3.0, 5.0, 3.0), **level}
 
 
 def thick_second() -> dict[str, float]:
@@ -62,7 +72,10 @@ def drift_tube() -> dict[str, float]:
     """An electron of 1 eV and 2 nm from -100 nm, 400 fs of free flight."""
     speed = np.sqrt(2 * EV / M_E)
     zero_point = HBAR**2 / (8 * M_E * (2e-9) ** 2)
+    k0 = M_E * speed / HBAR * 1e-9
+    late = packet_average(lambda k: 160 / k, k0, 2.0) * M_E / HBAR * 1e-3
     return {
+        "at_filter.mean": late,
         "position.x.final": (-100e-9 + speed * 400e-15) * 1e9,
         "width.x.final": spread(2e-9, M_E, 400e-15) * 1e9,
         "energy.final": 1000 + zero_point / EV * 1e3,
@@ -72,6 +85,19 @@ def drift_tube() -> dict[str, float]:
 def trace(t: float) -> float:
     """The field of the measured pulse in units of its peak; t in fs. beam/pulse_trace.csv holds it every 20 fs."""
     return envelope(t, 300, 200) * float(np.cos(2 * np.pi * 1.5e-3 * (t - 300)))
+
+
+def trace_rows() -> tuple[np.ndarray, np.ndarray]:
+    """The rows of beam/pulse_trace.csv."""
+    t = np.arange(-20, 841, 20.0)
+    return t, np.array([trace(value) for value in t])
+
+
+def model_atom() -> tuple[np.ndarray, np.ndarray]:
+    """The rows of beam/model_atom.csv: the state of `kick`, not normalised."""
+    x = np.arange(-300, 301) * 0.1
+    r = np.sqrt(x**2 + 2)
+    return x, (1 + r) * np.exp(-r)
 
 
 def streak() -> dict[str, float]:

@@ -54,15 +54,18 @@ def morse(omega: float, anharmonic: float, width: float, centre: float, x: Array
 def bouncer(scale: float, rate: float, count: int, x: Array) -> Levels:
     """Levels of a particle falling on a mirror at 0: energies rate abs(a_n), states Ai(x / scale + a_n).
 
-    a_n zeros of Ai (DLMF 9.9), norm 1 / abs(Ai'(a_n)) (DLMF 9.11); scale (hbar^2 / 2 m^2 g)^(1/3), rate m g scale / hbar.
+    a_n zeros of Ai (DLMF 9.9), norm 1 / abs(Ai'(a_n)) (DLMF 9.11); scale (hbar^2 / 2 m^2 g)^(1/3),
+    rate m g scale / hbar.
     """
     zeros, _, _, slopes = ai_zeros(count)
     states = airy(x[:, None] / scale + zeros)[0] / (np.abs(slopes) * np.sqrt(scale))
     return Levels(x, x[1] - x[0], states, -rate * zeros)
 
 
-def sinc_grid(potential: Callable[[Array], Array], inertia: float, low: float, high: float, points: int, count: int) -> Levels:
-    """The lowest levels by diagonalising the Hamiltonian on a sinc grid (Colbert and Miller, J. Chem. Phys. 96
+def sinc_grid(
+    potential: Callable[[Array], Array], inertia: float, low: float, high: float, points: int
+) -> Levels:
+    """All levels by diagonalising the Hamiltonian on a sinc grid (Colbert and Miller, J. Chem. Phys. 96
     (1992) 1982, from memory); `inertia` is hbar / 2 m and `potential` is V / hbar.
     """
     step = (high - low) / points
@@ -71,4 +74,4 @@ def sinc_grid(potential: Callable[[Array], Array], inertia: float, low: float, h
     with np.errstate(divide="ignore"):
         kinetic = np.where(apart == 0, np.pi**2 / 3, 2.0 / apart.astype(float) ** 2) * (-1.0) ** apart
     rates, states = np.linalg.eigh(inertia / step**2 * kinetic + np.diag(potential(x)))
-    return Levels(x, step, states[:, :count] / np.sqrt(step), rates[:count])
+    return Levels(x, step, states / np.sqrt(step), rates)

@@ -33,6 +33,8 @@ def hcl() -> dict[str, float]:
     return {
         "revival.final": float(overlap),
         "position.x.final": float(np.abs(late) ** 2 @ x * levels.weight),
+        **{f"spectrum.line[{v}]": float(levels.rates[v] * HBAR / EV * 1e15) for v in (0, 3)},
+        "spectrum.weight[3]": float(abs(levels.states[:, 3] @ start * levels.weight) ** 2),
     }
 
 
@@ -44,7 +46,7 @@ def umbrella(barrier: float = AMMONIA_BARRIER) -> Levels:
     """All levels of V = barrier (1 - (x / x_0)^2)^2 on a grid of 160 points."""
     height = barrier * 1e-3 * EV / HBAR * 1e-15
     return sinc_grid(
-        lambda x: height * (1 - (x / AMMONIA_MINIMUM) ** 2) ** 2, HBAR / (2 * UMBRELLA) * 1e5, -0.9, 0.9, 160, 160
+        lambda x: height * (1 - (x / AMMONIA_MINIMUM) ** 2) ** 2, HBAR / (2 * UMBRELLA) * 1e5, -0.9, 0.9, 160
     )
 
 

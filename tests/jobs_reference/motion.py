@@ -21,7 +21,9 @@ def spread(sigma: float, mass: float, t: float) -> float:
     return float(sigma * np.sqrt(1 + (HBAR * t / (2 * mass * sigma**2)) ** 2))
 
 
-def newton(acceleration: Callable[[float, float], float], x: float, v: float, stop: float, longest: float) -> tuple[float, float]:
+def newton(
+    acceleration: Callable[[float, float], float], x: float, v: float, stop: float, longest: float
+) -> tuple[float, float]:
     """Mean position and velocity at `stop` from x, v at 0."""
     found = solve_ivp(
         lambda t, y: [y[1], acceleration(t, y[0])], (0, stop), [x, v], method="DOP853", rtol=1e-11, atol=1e-30,

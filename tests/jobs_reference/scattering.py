@@ -19,7 +19,9 @@ def squared_wavenumber(energy: float, mass: float, unit: float) -> float:
     return 2 * mass * energy / HBAR**2 * unit**2
 
 
-def packet_average(value: Callable[[float], float], k0: float, sigma: float, breaks: list[float] | None = None) -> float:
+def packet_average(
+    value: Callable[[float], float], k0: float, sigma: float, breaks: list[float] | None = None
+) -> float:
     """Integral of abs(phi(k))^2 value(k) over k > 0, phi of a Gaussian packet.
 
     Exact for the late probability of a packet that starts where the potential is flat.

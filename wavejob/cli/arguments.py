@@ -17,12 +17,14 @@ from ..version import __version__
 COMMANDS = {
     "check": "read job files, report every mistake, forecast time and memory",
     "run": "run job files or whole folders",
+    "compare": "say which results of two runs, trees or a baseline differ by more than their bars",
+    "prune": "remove old runs",
     "explain": "describe a key, kind, observable, unit or check, with an example",
     "schema": "print the JSON Schema of the job file, for editors",
     "new": "write a commented job file to start from",
     "doctor": "look at this machine: versions, cores, memory, cache, encoder, speed",
 }
-LATER = ("report", "compare", "prune")
+LATER = ("report",)
 EVERYWHERE = "-q, -v, --tree, --version and --help may stand before or after the command."
 
 

@@ -10,6 +10,7 @@ from ..machine import memory
 from ..night.status import Status
 from ..night.workers import Ended, Event, Failed, Said, Started, Went, carry_out
 from . import terminal
+from .annotations import about, annotate
 from .bugs import report_trace
 from .night_view import NightView, night_view
 from .tasks import Task
@@ -23,13 +24,13 @@ def status_of(tasks: Sequence[Task], workers: int) -> Status:
 
 def run_batch(tasks: Sequence[Task], workers: int, options: Namespace, ended: Callable[[Task], None]) -> None:
     """Carries out all tasks, `workers` at a time; `ended` is told of each. KeyboardInterrupt passes through."""
-    current = [task for task in tasks if _is_current(task, options)]
-    rest = [task for task in tasks if not _is_current(task, options)]
+    current = [task for task in tasks if task.stands(options)]
+    rest = [task for task in tasks if not task.stands(options)]
     status = status_of(tasks, workers)
     with night_view(status, quiet=options.quiet) as view:
         try:
             for task in current:
-                _judge(task, status, view)
+                _judge(task, status, view, options)
                 ended(task)
             orders = [task.order(number, options) for number, task in enumerate(rest)]
             with closing(carry_out(orders, workers, options.memory or memory())) as events:
@@ -48,17 +49,11 @@ def run_batch(tasks: Sequence[Task], workers: int, options: Namespace, ended: Ca
     status.write()
 
 
-def _is_current(task: Task, options: Namespace) -> bool:
-    from ..run import is_current  # here, because it loads the transforms, which a refused job never needs
-
-    return not options.again and is_current(task.job, task.runs, film=not options.no_film)
-
-
-def _judge(task: Task, status: Status, view: NightView) -> None:
+def _judge(task: Task, status: Status, view: NightView, options: Namespace) -> None:
     """A task that needs no worker: its expectations are judged as they are now."""
-    from ..run import run_job
+    from ..run import run_job  # here, because it loads the transforms, which a refused job never needs
 
-    finished = run_job(task.job, task.runs)
+    finished = run_job(task.job, task.runs, bars=not options.quick, film=not options.no_film)
     task.end(finished.status, finished.verdict)
     status.end(task.name)
     view.ended(task, None)
@@ -77,11 +72,13 @@ def _hear(event: Event, task: Task, status: Status, view: NightView, options: Na
         view.said(event.text)
     elif isinstance(event, Ended):
         task.end(event.status, event.verdict)
+        task.took = event.seconds
         status.end(name, event.seconds)
         view.ended(task, event.seconds)
     elif isinstance(event, Failed):
-        task.end("failed", "failed")
+        task.end("failed", "failed", error=event.reason)
         status.fail(name, event.reason)
+        annotate([about(task.job, event.reason)])
         if event.trace:
             report_trace(event.reason, event.trace, verbose=options.verbose, doing=task.name)
         else:

@@ -10,6 +10,7 @@ from typing import Any
 from ..plan import Plan, make_plan
 from ..problems import in_order
 from . import terminal
+from .annotations import annotate
 from .arguments import add_paths, add_reading
 from .gathering import gather, tally
 from .json_report import job_entry, show_json
@@ -28,6 +29,7 @@ def run(options: Namespace) -> int:
     ready, refused = prepare(found.jobs, options.memory, options.limit)
     warnings = [warning for one in ready for warning in one.warnings]
     mistakes = in_order(found.problems + refused)
+    annotate(in_order(mistakes + warnings), quiet=options.quiet)
     if options.format == "json":
         jobs = [_entry(one) for one in ready]
         show_json("check", in_order(mistakes + warnings), jobs)

@@ -23,7 +23,7 @@ def result_table(title: str, folder: str, run: Run) -> str:
         lines.append(paragraph(expectation["text"], f"  expected, {expectation['outcome']}: ", " " * 12))
     for check in document["checks"]:
         if not check["passed"]:
-            lines.append(paragraph(_failure(check), "  check failed: ", " " * 12))
+            lines.append(paragraph(check_failure(check), "  check failed: ", " " * 12))
     lines.append(f"  {document['verdict']}, in {folder}")
     return "\n".join([*lines, ""])
 
@@ -31,7 +31,7 @@ def result_table(title: str, folder: str, run: Run) -> str:
 def _row(name: str, entry: dict[str, Any], others: Mapping[str, Any] | None = None) -> tuple[str, str, str]:
     """Name, value, meaning; a figure that repeats one of `others` for F = m a needs no meaning."""
     repeats = others is not None and name.removeprefix(CLASSICAL) in others
-    return name, value_text(entry), entry.get("note", "") if repeats else _meaning(entry)
+    return name, _value(entry), entry.get("note", "") if repeats else _meaning(entry)
 
 
 def _rows(rows: Sequence[tuple[str, str, str]]) -> list[str]:
@@ -44,13 +44,16 @@ def _rows(rows: Sequence[tuple[str, str, str]]) -> list[str]:
     ]
 
 
-def value_text(entry: dict[str, Any]) -> str:
+def _value(entry: dict[str, Any]) -> str:
+    return figure_text(entry["value"], entry["error"], entry["unit"])
+
+
+def figure_text(value: float | None, error: float | None, unit: str) -> str:
     """`0.1589 +- 0.0003 nm`; the error to two digits, the value to as many decimals."""
-    value, error = entry["value"], entry["error"]
     if value is None:
         return "none"
     text = f"{value:.6g}" if error is None else _with_error(value, error)
-    return f"{text} {entry['unit']}".rstrip()
+    return f"{text} {unit}".rstrip()
 
 
 def _with_error(value: float, error: float) -> str:
@@ -67,7 +70,7 @@ def _meaning(entry: dict[str, Any]) -> str:
     return f"{meaning} ({note})" if note else str(meaning)
 
 
-def _failure(check: dict[str, Any]) -> str:
+def check_failure(check: dict[str, Any]) -> str:
     measured = [f"{check[key]:.2g}" if check[key] is not None else "unknown" for key in ("value", "limit")]
     said = f"{check['name']} is {measured[0]}, limit {measured[1]}"
     return f"{said}; {check['advice']}" if check["advice"] else said

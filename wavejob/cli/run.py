@@ -4,25 +4,33 @@ from __future__ import annotations
 
 import time
 from argparse import ArgumentParser, ArgumentTypeError, Namespace
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
+from dataclasses import replace
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from ..machine import cores
-from ..problems import JobFileError, RunError, in_order
+from ..outputs.junit import Case, write_junit
+from ..problems import JobFileError, Problem, RunError, in_order
+from ..reader import Run
 from ..reading.tree import shown
 from . import terminal
+from .annotations import about, annotate, judged
 from .arguments import add_not_yet, add_paths, add_reading
 from .batch import run_batch, status_of
 from .gathering import Gathered, doubled, gather, tally
 from .json_report import show_json
+from .junit_cases import assertions, check_target, refused_cases
 from .progress import log_line, watched
+from .results import result_table
 from .sizes import counted, duration
 from .sweeps import write_sweep
 from .tasks import ENDED, Task, make_tasks
 
 if TYPE_CHECKING:
     from ..run import Finished
+
 
 MOST_WORKERS = 1024
 
@@ -36,11 +44,14 @@ def add_arguments(parser: ArgumentParser) -> None:
     parser.add_argument("--quick", action="store_true", help="no error bars")
     parser.add_argument("--no-film", action="store_true", help="draw no film")
     parser.add_argument(
+        "--junit", type=Path, metavar="FILE", help="write what became of each job as JUnit XML, for code hosts"
+    )
+    parser.add_argument(
         "--workers", type=_workers, metavar="N", help="jobs carried out at once; as many as cores if left out"
     )
     parser.add_argument("--skip-bad", action="store_true", help="run the good job files beside others with mistakes")
     add_reading(parser)
-    add_not_yet(parser, "--by", "--checkpoint", "--on", "--junit")
+    add_not_yet(parser, "--by", "--checkpoint", "--on")
 
 
 def _workers(text: str) -> int:
@@ -50,31 +61,39 @@ def _workers(text: str) -> int:
 
 
 def run(options: Namespace) -> int:
+    check_target(options)
+    started = datetime.now(UTC)
     found = gather(options)
     if options.runs:
         found.problems += doubled(found.families)
     tasks, warnings = make_tasks(found, options)
     if found.problems and not (options.skip_bad and tasks):
+        if options.junit:
+            write_junit(options.junit, refused_cases(found.problems, found.jobs), started)
         return _refused(found, options)
+    _say_first(found.problems, warnings, options)
     problems = in_order(found.problems + warnings)
-    if options.format == "text":
-        for problem in found.problems:
-            terminal.say(problem.text())
-    if not options.quiet:
-        for warning in warnings:
-            terminal.say(warning.text())
     try:
         _carry_out_all(tasks, options)
     except KeyboardInterrupt as stop:
-        if options.format == "json":
-            show_json("run", problems, [task.entry for task in tasks])
+        _told(tasks, problems, options, started)
         raise type(stop)(_kept(tasks)) from None
-    if options.format == "json":
-        show_json("run", problems, [task.entry for task in tasks])
+    _told(tasks, problems, options, started)
     if len(tasks) > 1 and not options.quiet:
         terminal.say(_summary(tasks))
     code = _exit_code(tasks, strict=options.strict, warned=bool(warnings))
     return 1 if found.problems else code
+
+
+def _say_first(mistakes: Sequence[Problem], warnings: Sequence[Problem], options: Namespace) -> None:
+    """Mistakes of files that are skipped, and doubts about the others."""
+    if options.format == "text":
+        for problem in mistakes:
+            terminal.say(problem.text())
+    if not options.quiet:
+        for warning in warnings:
+            terminal.say(warning.text())
+    annotate([*mistakes, *warnings], quiet=options.quiet)
 
 
 def _carry_out_all(tasks: list[Task], options: Namespace) -> None:
@@ -85,6 +104,8 @@ def _carry_out_all(tasks: list[Task], options: Namespace) -> None:
             families.setdefault(id(task.family), []).append(task)
 
     def ended(task: Task) -> None:
+        if task.status != "failed":
+            annotate(judged(task.job, Run(task.folder.path).document), quiet=options.quiet)
         variants = families.get(id(task.family))
         if variants is None:
             if options.format == "text" and task.status != "failed":
@@ -110,12 +131,11 @@ def _one_by_one(tasks: list[Task], options: Namespace, ended: Callable[[Task], N
         for task in tasks:
             if len(tasks) > 1:
                 status.start(task.name)
-            begun = time.monotonic()
             _carry_out(task, options)
             if len(tasks) > 1 and task.status == "failed":
-                status.fail(task.name, "see its log")
+                status.fail(task.name, task.error)
             elif len(tasks) > 1:
-                status.end(task.name, time.monotonic() - begun if task.status == "done" else None)
+                status.end(task.name, task.took if task.status == "done" else None)
             ended(task)
     except KeyboardInterrupt:
         if len(tasks) > 1:
@@ -124,8 +144,26 @@ def _one_by_one(tasks: list[Task], options: Namespace, ended: Callable[[Task], N
         raise
 
 
+def _told(tasks: list[Task], problems: list[Problem], options: Namespace, started: datetime) -> None:
+    """What programs read of a batch that has ended."""
+    if options.format == "json":
+        show_json("run", problems, [task.entry for task in tasks])
+    if options.junit:
+        skipped = refused_cases([p for p in problems if p.severity == "error"], [])
+        cases = [_case(task, strict=options.strict) for task in tasks]
+        write_junit(options.junit, [*skipped, *cases], started)
+
+
+def _case(task: Task, *, strict: bool) -> Case:
+    case = Case(task.name, shown(task.job.path), task.took, error=task.error)
+    if task.status in ("done", "up to date"):
+        return replace(case, assertions=assertions(Run(task.folder.path).document, strict=strict))
+    return case if task.error else replace(case, skipped=task.status)
+
+
 def _refused(found: Gathered, options: Namespace) -> int:
     problems = in_order(found.problems)
+    annotate(problems)
     if options.format == "json":
         show_json("run", problems, [])
         return 2
@@ -144,23 +182,33 @@ def _carry_out(task: Task, options: Namespace) -> None:
     task.status = "stopped"  # unless it ends below
     try:
         finished = _run(task, options)
-    except (RunError, JobFileError) as error:
-        task.end("failed", "failed")
-        terminal.say(f"{task.name}: {error}")
+    except JobFileError as error:
+        _failed(task, str(error), error.problems)
+        return
+    except RunError as error:
+        _failed(task, str(error))
         return
     except MemoryError:
-        task.end("failed", "failed")
-        terminal.say(f"{task.name}: the memory is used up; take fewer points, or stop other programs")
+        _failed(task, "the memory is used up; take fewer points, or stop other programs")
         return
     except Exception as error:
         from .bugs import report
 
-        task.end("failed", "failed")
+        task.end("failed", "failed", error=f"an error inside wavejob ({type(error).__name__}: {error})")
         report(error, verbose=options.verbose, doing=task.name)
         return
+    finally:
+        task.took = time.monotonic() - begun
     task.end(finished.status, finished.verdict)
     if not options.quiet:
-        _say_ended(task, time.monotonic() - begun)
+        _say_ended(task)
+
+
+def _failed(task: Task, said: str, problems: Sequence[Problem] = ()) -> None:
+    """Notes and tells why a job could not be carried out."""
+    task.end("failed", "failed", error=said)
+    terminal.say(f"{task.name}: {said}")
+    annotate(problems or [about(task.job, said)])
 
 
 def _run(task: Task, options: Namespace) -> Finished:
@@ -180,18 +228,15 @@ def _run(task: Task, options: Namespace) -> Finished:
 
 
 def _show(task: Task) -> None:
-    from ..reader import Run
-    from .results import result_table
-
     job = task.job
     title = f"{job.id}: {job.title}" if job.title != job.id else job.id
     terminal.show(result_table(title, shown(task.folder.path), Run(task.folder.path)))
 
 
-def _say_ended(task: Task, seconds: float) -> None:
+def _say_ended(task: Task) -> None:
     said = f"{task.name}: {task.status}, {task.verdict}"
     if task.status == "done":
-        said += f", {duration(seconds)}"
+        said += f", {duration(task.took)}"
     if terminal.is_live():
         terminal.say(said)
     else:
@@ -222,8 +267,6 @@ def _exit_code(tasks: list[Task], *, strict: bool, warned: bool) -> int:
 
 
 def _undecided(task: Task) -> bool:
-    from ..reader import Run
-
     if task.verdict != "doubtful":
         return False
     return any(entry["outcome"] == "undecided" for entry in Run(task.folder.path).document["expectations"])

@@ -9,7 +9,7 @@ from ..problems import RunError
 from ..reading.tree import shown
 from ..variants import TABLE, Sweep
 from . import terminal
-from .results import CLASSICAL, value_text
+from .results import CLASSICAL, figure_text
 from .sizes import counted
 from .tasks import Task
 
@@ -58,4 +58,4 @@ def sweep_table(sweep: Sweep, drawn: Sequence[str]) -> str:
 
 def _figure(document: dict[str, Any] | None, name: str) -> str:
     entry = document["results"].get(name) if document else None
-    return value_text(entry) if entry else ""
+    return figure_text(entry["value"], entry["error"], entry["unit"]) if entry else ""

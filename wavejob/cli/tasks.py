@@ -16,6 +16,7 @@ from ..outputs.folder import RunFolder
 from ..plan import Plan
 from ..problems import JobFileError, Problem, in_order
 from ..reading.tree import shown
+from ..standing import stands
 from .gathering import Gathered
 from .json_report import job_entry
 from .preparing import prepare
@@ -36,6 +37,8 @@ class Task:
     forecast: Forecast | None = None
     status: str = "not started"
     verdict: str | None = None
+    took: float = 0.0  # seconds
+    error: str = ""  # why it could not be carried out
 
     @property
     def folder(self) -> RunFolder:
@@ -60,9 +63,14 @@ class Task:
             variant={one.key: one.text for one in job.variant},
         )
 
-    def end(self, status: str, verdict: str) -> None:
+    def stands(self, options: Namespace) -> bool:
+        """Whether all that is wanted is in its folder, and is not to be computed again."""
+        bars, film = not options.quick, not options.no_film
+        return not options.again and stands(self.job, self.folder, bars=bars, film=film)
+
+    def end(self, status: str, verdict: str, *, error: str = "") -> None:
         """Notes how it ended; its plan is needed no longer."""
-        self.status, self.verdict, self.plan = status, verdict, None
+        self.status, self.verdict, self.error, self.plan = status, verdict, error, None
 
     def order(self, number: int, options: Namespace) -> Order:
         """The same for a worker."""
@@ -97,14 +105,9 @@ def make_tasks(found: Gathered, options: Namespace) -> tuple[list[Task], list[Pr
             name = job.name if shared[job.id] == 1 else f"{shown(job.path)}: {job.name}"
             task = Task(job, options.runs or job.tree.root / "runs", family, index, name)
             tasks.setdefault(task.folder.path, task)
-    fresh = {id(task.job): task for task in tasks.values() if options.again or task.folder.finished() is None}
-    ready, refused = prepare(
-        [task.job for task in fresh.values()],
-        options.memory,
-        options.limit,
-        bars=not options.quick,
-        film=not options.no_film,
-    )
+    fresh = {id(task.job): task for task in tasks.values() if not task.stands(options)}
+    jobs, bars, film = [task.job for task in fresh.values()], not options.quick, not options.no_film
+    ready, refused = prepare(jobs, options.memory, options.limit, bars=bars, film=film)
     found.problems += refused
     for one in ready:
         task = fresh.pop(id(one.job))

@@ -140,9 +140,9 @@ def _refined(
         differences = [Difference(name, run, barred, factor), *kept]
         before, barred = barred, box.added(run, differences, parts)
         notes.append(_note(Companion(before.plan, 1 / better.step, 1 / better.points, "the run before"), factor))
-        if worst(barred, wanted) > 1 and worst(barred, wanted) > worst(before, wanted) / STALLED:
+        if _excess(barred, name) > max(1.0, _excess(before, name) / STALLED):
             notes.append("a finer plan does not lower the bars: they do not converge")
-            barred = replace(barred, results=tuple(_stalled(r, wanted) for r in barred.results))
+            barred = replace(barred, results=tuple(_stalled(r, name, wanted) for r in barred.results))
             break
     return barred
 
@@ -187,16 +187,17 @@ def _too_large(record: Record, part: str) -> bool:
 
 def _excess(record: Record, part: str) -> float:
     """By how much the errors in `part` exceed half of what is wanted."""
-    wanted = record.plan.job.accuracy
-    shares = [
-        sum(value for name, value in result.error_parts.items() if part in name) / wanted.limit(result)
-        for result in counted(record)
-    ]
-    return 2 * max(shares, default=0.0)
+    return max((_share(result, part, record.plan.job.accuracy) for result in counted(record)), default=0.0)
 
 
-def _stalled(result: Result, wanted: Accuracy) -> Result:
-    if result.error is not None and result.error > wanted.limit(result):
+def _share(result: Result, part: str, wanted: Accuracy) -> float:
+    """The error of a result in `part` over half of what is wanted."""
+    return 2 * sum(value for name, value in result.error_parts.items() if part in name) / wanted.limit(result)
+
+
+def _stalled(result: Result, part: str, wanted: Accuracy) -> Result:
+    """Marked where it is `part` that stays too large: what a fixed grid or step costs is a bar like any other."""
+    if result.error is not None and result.error > wanted.limit(result) and _share(result, part, wanted) > 1:
         return replace(result, error_status="not_converging")
     return result
 

@@ -136,7 +136,7 @@ def _barred(
     least = {d.part: KIN * shared[d.part] * abs(result.value) * _is_probability(result) for d in differences}
     parts = {part: max(value, least[part]) for part, value in found.items() if value is not None}
     if len(parts) < len(found):
-        return replace(result, error_status="not_converging", note="a companion run has no such value")
+        return replace(result, error_parts={}, error_status="not_converging", note="a companion run has no such value")
     scale = result.scale or 1.0
     hopeless = any(value > HOPELESS * scale for value in parts.values())
     parts = {**result.error_parts, **parts, "rounding": rounding(record, result.value, scale, result.dimension)}

@@ -7,9 +7,11 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
+from ..endings import layers, retuned
 from ..grid import fast_size, fast_size_below
 from ..on_grid import on_grid
-from ..plan import Plan, initial_state, layers, retuned, wave_numbers
+from ..plan import Plan
+from ..points import initial_state, wave_numbers
 
 COARSER_STEP = 2.0
 COARSER_POINTS = 2**-0.5  # with twice the step the largest kinetic phase a step stays what it was
@@ -99,7 +101,7 @@ def _changed(plan: Plan, record: int, points: int, until: int | None, reason: st
     ratio = plan.record / record
     steps = round(whole / ratio)
     axis = replace(plan.axis, points=points)
-    endings = plan.endings if points == plan.axis.points else retuned(plan, axis)
+    endings = plan.endings if points == plan.axis.points else retuned(plan.job, axis, plan.endings)
     changed = replace(
         plan,
         axis=axis,

@@ -135,7 +135,7 @@ def _context() -> Any:
 
 @contextlib.contextmanager
 def _for_children() -> Iterator[None]:
-    """While the block lasts, processes that are started take one thread, let it sleep, and import what this one does."""
+    """While the block lasts, processes that are started take one sleeping thread, and import what this one does."""
     wanted = QUIET_THREADS | {"PYTHONPATH": os.pathsep.join(path or os.getcwd() for path in sys.path)}
     before = {name: os.environ.get(name) for name in wanted}
     os.environ.update(wanted)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import contextlib
 import os
+import shutil
 from collections.abc import Callable, Iterator
 from pathlib import Path
 from subprocess import DEVNULL, PIPE, Popen
@@ -27,14 +28,22 @@ GIF_COLOURS = 255
 CURE = "`pip install imageio-ffmpeg`, or install `ffmpeg` with libx264, or skip the film with `--no-film`"
 
 
+def video_encoder() -> str:
+    """The program that makes the film. Raises RunError where there is none."""
+    try:
+        encoder = str(imageio_ffmpeg.get_ffmpeg_exe())
+    except RuntimeError as error:
+        raise RunError("no video encoder was found", CURE) from error
+    if shutil.which(encoder) is None:
+        raise RunError(f"the video encoder `{encoder}` is missing", CURE)
+    return encoder
+
+
 def write_mp4(
     path: Path, frame: Frame, frames: int, *, size: tuple[int, int], fps: float, progress: Progress
 ) -> None:
     """H.264 in yuv420p with its index at the start. Raises RunError where it can't be encoded or written."""
-    try:
-        encoder = imageio_ffmpeg.get_ffmpeg_exe()
-    except RuntimeError as error:
-        raise RunError(f"could not write `{path}`: no video encoder was found", CURE) from error
+    encoder = video_encoder()
     raw = ["-f", "rawvideo", "-pix_fmt", "rgba", "-s", f"{size[0]}x{size[1]}", "-r", str(fps), "-i", "-"]
     coded = ["-an", "-c:v", "libx264", "-preset", "veryfast", "-crf", str(QUALITY), "-threads", "1"]
     # players take pictures of this size for BT.709 whatever was written, and would shift every colour

@@ -2,18 +2,22 @@
 
 from __future__ import annotations
 
+import contextlib
 import json
-from collections.abc import Collection
+from collections.abc import Collection, Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 from ..problems import RunError
 from .files import unwritable
+from .lock import locked
 from .tables import write_json
 
 MANIFEST = "manifest.json"  # written last: a folder without it is unfinished
+RESULTS = "results.json"
 OWNER = ".job"  # tells whose folder this is, from the first moment on
+LOCK = ".lock"  # held by the process that writes here; it may stay when nobody does
 
 
 @dataclass(frozen=True)
@@ -36,25 +40,42 @@ class RunFolder:
         return self.runs.joinpath(*self.job.split("/"), self.fingerprint)
 
     def finished(self) -> dict[str, Any] | None:
-        """The manifest of a finished run of this very job; None where there is none."""
-        manifest = _document(self.path / MANIFEST)
-        return manifest if self._is_mine(manifest) else None
+        """The manifest of a finished run of this very job; None where it, or what was found, is missing or damaged."""
+        manifest = document(self.path / MANIFEST)
+        whole = self._is_mine(manifest) and self._is_mine(document(self.path / RESULTS))
+        return manifest if whole else None
 
     @property
     def partial(self) -> tuple[str, ...]:
         """What a finished run left out, such as "film"; a later full run completes it."""
         return tuple((self.finished() or {}).get("partial", ()))
 
-    def begin(self, keep: Collection[str] = ()) -> None:
-        """Makes the folder, claims it, and clears what an earlier run left, but for the names in `keep`.
+    @contextlib.contextmanager
+    def held(self) -> Iterator[None]:
+        """Makes the folder and claims it; no other process can while the block lasts.
 
-        From here on the run is unfinished, until its manifest is written. Raises RunError for a folder
-        of another job, and where the disk refuses.
+        Raises RunError for a folder of another job, for one that another process holds, and where the disk refuses.
         """
         try:
             self.path.mkdir(parents=True, exist_ok=True)
             self._claim()
-            self._clear({*keep, OWNER})
+            lock = locked(self.path / LOCK)
+        except OSError as error:
+            raise unwritable(self.path, error) from error
+        if lock is None:
+            raise RunError(
+                f"another process is at work in `{self.path}`", "wait until it has ended, or choose --runs DIR"
+            )
+        with lock:
+            yield
+
+    def begin(self, keep: Collection[str] = ()) -> None:
+        """Clears what an earlier run left, but for the names in `keep`; to be called while the folder is held.
+
+        From here on the run is unfinished, until its manifest is written. Raises RunError where the disk refuses.
+        """
+        try:
+            self._clear({*keep, OWNER, LOCK})
         except OSError as error:
             raise unwritable(self.path, error) from error
 
@@ -68,7 +89,7 @@ class RunFolder:
                     "move that folder away, or choose another place with --runs DIR",
                 )
             write_json(note, {"job": self.job, "fingerprint": self.fingerprint})
-        owner = _document(note)
+        owner = document(note)
         if not self._is_mine(owner):
             whose = f"job `{owner.get('job')}`" if owner else "something else"
             raise RunError(
@@ -92,10 +113,10 @@ class RunFolder:
 
 def _is_own_or_folder(entry: Path) -> bool:
     """Whether an entry may stand in a folder that nobody claimed yet: a cut-off note, or a job's folder."""
-    return entry.is_dir() or entry.name.startswith(f".{OWNER}.")
+    return entry.is_dir() or entry.name == LOCK or entry.name.startswith(f".{OWNER}.")
 
 
-def _document(path: Path) -> dict[str, Any] | None:
+def document(path: Path) -> dict[str, Any] | None:
     """The JSON object in a file; None where it is missing or damaged."""
     try:
         document = json.loads(path.read_bytes())

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import json
 import os
 import platform
 import subprocess
@@ -87,6 +88,12 @@ def write_manifest(folder: Path, account: Account, units: Units, tree: Path | No
         "outputs": _outputs(folder),
     }
     write_json(folder / MANIFEST, document)
+
+
+def renew_digests(folder: Path) -> None:
+    """Brings the sizes and digests of a manifest up to date, once files beside it were written anew."""
+    document = json.loads((folder / MANIFEST).read_text(encoding="utf-8"))
+    write_json(folder / MANIFEST, {**document, "outputs": _outputs(folder)})
 
 
 def surroundings() -> dict[str, Any]:

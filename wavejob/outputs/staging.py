@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 
+from ..observables.overlaps import Overlap
 from ..observables.places import Crossing, Inside
 from ..observables.swarm import PREFIX
 from ..plan import Plan
@@ -143,12 +144,14 @@ def _layers(plan: Plan, length: float) -> tuple[tuple[float, float], ...]:
 
 
 def _probabilities(record: Record, times: Array) -> tuple[tuple[str, Array], ...]:
-    """What crossed the detectors so far, what is in the regions, what the ends absorbed."""
+    """What crossed the detectors so far, what is in the regions and in given states, what the ends absorbed."""
     found = list(record.crossed.items())
     columns = [column.name for column in record.columns]
     regions = [o.name for o in record.plan.job.observables if isinstance(o, Inside) and o.name in columns]
+    states = [o.name for o in record.plan.job.observables if isinstance(o, Overlap)]
     absorbed = [name for name in columns if name.startswith("absorbed.")]
-    found += [(name, np.interp(times, record.times, record.column(name))) for name in [*regions, *absorbed]]
+    shown = [*regions, *states, *absorbed]
+    found += [(name, np.interp(times, record.times, record.column(name))) for name in shown]
     if not found and "norm" in columns:
         found = [("norm", np.interp(times, record.times, record.column("norm")))]
     return tuple(found[:3])

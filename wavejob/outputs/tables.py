@@ -95,18 +95,22 @@ def write_results_json(
         "verdict": verdict,
         "results": by_name,
         "checks": [_check(check) for check in checks],
-        "expectations": [{"result": j.result, "outcome": j.outcome, "text": j.text} for j in judgements],
+        "expectations": expectations(judgements),
     }
     if classical is not None:
         document["classical"] = _classical(classical, units) if isinstance(classical, Answer) else classical
     write_json(path, document)
 
 
+def expectations(judgements: Iterable[Judgement]) -> list[dict[str, str]]:
+    """What came of the expectations, as results.json has it."""
+    return [{"result": j.result, "outcome": j.outcome, "text": j.text} for j in judgements]
+
+
 def read_results(
-    path: Path, figures: Mapping[str, Column], units: Units
+    document: Mapping[str, Any], figures: Mapping[str, Column], units: Units
 ) -> tuple[list[Result], list[Check]]:
     """What `write_results_json` wrote, in scaled units again; `figures` gives the dimension of each result."""
-    document = json.loads(path.read_text(encoding="utf-8"))
     results = []
     for name, stored in document["results"].items():
         dimension = figures[name].dimension
@@ -115,6 +119,8 @@ def read_results(
         def scaled(x: float | None, unit: float = unit) -> float | None:
             return None if x is None else x * unit
 
+        converging = stored["error_status"] != "not_converging"  # else null there, but judged with what it was
+        parts = {part: value * unit for part, value in stored["error_parts"].items() if value is not None}
         results.append(
             Result(
                 name,
@@ -122,9 +128,9 @@ def read_results(
                 dimension,
                 scaled(stored["scale"]),
                 stored["meaning"],
-                scaled(stored["error"]),
+                scaled(stored["error"]) if converging or not parts else sum(parts.values()),
                 stored["error_status"],
-                {part: value * unit for part, value in stored["error_parts"].items() if value is not None},
+                parts,
                 stored.get("note", ""),
             )
         )

@@ -26,6 +26,9 @@ TOPICS = (
     "run-folder",
     "fingerprint",
     "batches",
+    "compare",
+    "prune",
+    "pipelines",
     "commands",
 )
 
