@@ -12,8 +12,9 @@ from PIL import Image
 
 from wavejob import api
 from wavejob.families import Family, parse_family
+from wavejob.outputs.run_tree import VARIANTS
 from wavejob.outputs.varied import Axis, Outcome, draw_varied
-from wavejob.variants import TABLE, Sweep
+from wavejob.variants import Sweep
 
 JOB = """\
 units: {length: nm, time: fs, energy: meV}
@@ -41,7 +42,7 @@ def swept(tmp_path_factory: pytest.TempPathFactory) -> tuple[Family, Path]:
 
 
 def rows(folder: Path) -> list[list[str]]:
-    with (folder / TABLE).open(encoding="utf-8", newline="") as file:
+    with (folder / VARIANTS).open(encoding="utf-8", newline="") as file:
         return list(csv.reader(file))
 
 

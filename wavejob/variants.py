@@ -12,13 +12,12 @@ import numpy as np
 from .families import Family
 from .outputs.files import atomic
 from .outputs.folder import RunFolder
+from .outputs.run_tree import VARIANTS
 from .outputs.tables import heading
 from .reader import Run
 from .reading.quantities import Units
 
 Array = np.ndarray
-
-TABLE = "variants.csv"
 
 
 @dataclass(frozen=True)
@@ -79,7 +78,7 @@ class Sweep:
         header = [heading(scale.name, scale.unit or "") for scale in scales]
         for name, entry in results.items():
             header += [heading(name, entry["unit"]), heading(f"{name}.error", entry["unit"])]
-        with atomic(self.folder / TABLE) as file:
+        with atomic(self.folder / VARIANTS) as file:
             writer = csv.writer(file, lineterminator="\n")
             writer.writerow([*header, "verdict", "fingerprint"])
             for index, job in enumerate(self.family.jobs):

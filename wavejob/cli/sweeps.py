@@ -5,9 +5,10 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import Any
 
+from ..outputs.run_tree import VARIANTS
 from ..problems import RunError
 from ..reading.tree import shown
-from ..variants import TABLE, Sweep
+from ..variants import Sweep
 from . import terminal
 from .results import CLASSICAL, figure_text
 from .sizes import counted
@@ -48,11 +49,11 @@ def sweep_table(sweep: Sweep, drawn: Sequence[str]) -> str:
     padded = [[f"{cell:<{wide}}" for cell, wide in zip(row, widths, strict=True)] for row in rows]
     lines = [f"  {'  '.join(row)}".rstrip() for row in padded]
     if len(family.jobs) > MOST_ROWS:
-        lines.append(f"  and {len(family.jobs) - MOST_ROWS} more in {TABLE}")
+        lines.append(f"  and {len(family.jobs) - MOST_ROWS} more in {VARIANTS}")
     title = f"{family.id}: {family.title}" if family.title != family.id else family.id
     verdicts = [document["verdict"] for document in sweep.documents.values()]
     tally = [f"{verdicts.count(v)} {v}" for v in ("trusted", "doubtful", "failed") if v in verdicts]
-    place = f"in {shown(sweep.folder)}: {', '.join([TABLE, *drawn])}"
+    place = f"in {shown(sweep.folder)}: {', '.join([VARIANTS, *drawn])}"
     return "\n".join([title, *lines, f"  {counted(len(family.jobs), 'variant')}: {', '.join(tally)}, {place}", ""])
 
 
