@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
+import numpy as np
 import pytest
 
 from wavejob.api import open_run, simulate
@@ -63,3 +64,31 @@ def test_the_mean_trajectory_starts_with_the_mean_momentum() -> None:
     """F = 0: the action is k^2 t / m in units of hbar."""
     record = with_companion(simulate(parse(FREE.replace("classical: none\n", ""))))
     assert record.result("classical.action").value == pytest.approx(8, rel=1e-13)
+
+
+def test_a_small_probability_is_not_drowned_by_what_the_edges_send_back() -> None:
+    """T of 2e-8 through a barrier, wanted to a hundredth: the layers' part is measured where the prediction is larger.
+
+    Formula of the rectangular barrier averaged over the packet, A. Messiah, Quantum Mechanics I, ch. III (from memory).
+    """
+    text = """
+units: natural
+grid: {x: {from: -120, to: 120}}
+potential: [{barrier: {from: 0, to: 4, height: 5}}]
+edges: {x: {absorb: 40}}
+packet: {gaussian: {at: -40, sigma: 5, wavenumber: 2}}
+evolve: {until: 60, accuracy: {relative: 1e-2, down_to: 1e-12}}
+observables: [{crossing: {name: through, x: 6, toward: +x}}]
+expect: [{result: through.total, below: 1}]
+classical: none
+"""
+    k = np.linspace(0.5, 3.1, 20001)
+    energy, height, thickness = k**2 / 2, 5.0, 4.0
+    fall = np.sqrt(2 * (height - energy))
+    share = 1 / (1 + (height * np.sinh(fall * thickness)) ** 2 / (4 * energy * (height - energy)))
+    weight = np.exp(-2 * (5 * (k - 2)) ** 2)
+    found = simulate(parse(text), bars=True).result("through.total")
+    assert found.value is not None
+    assert found.error is not None
+    assert found.error_status == "estimated"
+    assert abs(found.value - float(share @ weight / weight.sum())) < found.error < found.value

@@ -91,9 +91,7 @@ def nested(pattern: tuple[str, ...]) -> str:
     return GOOD.replace("units", "units", 1) + value[1:-1] + "\n"
 
 
-@pytest.mark.parametrize(
-    "pattern", [p for p in NOT_YET if p[0] not in ("grid", "packet", "evolve")], ids=".".join
-)
+@pytest.mark.parametrize("pattern", [p for p in NOT_YET if p[0] not in ("grid", "packet", "evolve")], ids=".".join)
 def test_keys_that_are_not_available_yet_are_refused_by_name(pattern: tuple[str, ...]) -> None:
     if pattern[-1] == "axis":
         pattern = (*pattern[:-2], "kind", "axis")
@@ -104,9 +102,7 @@ def test_keys_that_are_not_available_yet_are_refused_by_name(pattern: tuple[str,
         assert found == said  # and nothing else: no echoes
 
 
-@pytest.mark.parametrize(
-    "name", ["many_mistakes", "utf16", "based_on_wrong_base", "packet_too_fast", "table_contents"]
-)
+@pytest.mark.parametrize("name", ["many_mistakes", "utf16", "based_on_wrong_base", "packet_too_fast", "table_contents"])
 def test_the_command_says_the_same(name: str) -> None:
     """`wavejob check`: messages on standard error, nothing on standard output, exit code 2."""
     command = [sys.executable, "-m", "wavejob", "check", "--tree", FOLDER.name, f"{FOLDER.name}/{name}.yml"]

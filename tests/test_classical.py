@@ -36,9 +36,7 @@ def test_oscillator() -> None:
     """x = x0 cos wt + p0 / (m w) sin wt."""
     times = np.linspace(0, 20, 41)
     found = path(Landscape((oscillator(2.0, 0.7),)), 2.0, 1.5, -0.8, times, low=-10, high=10)
-    np.testing.assert_allclose(
-        found.x, 1.5 * np.cos(0.7 * times) - 0.8 / 1.4 * np.sin(0.7 * times), atol=1e-8
-    )
+    np.testing.assert_allclose(found.x, 1.5 * np.cos(0.7 * times) - 0.8 / 1.4 * np.sin(0.7 * times), atol=1e-8)
     assert found.error < 1e-8
 
 

@@ -63,9 +63,7 @@ def scattering(
     seed: int = 1,
 ) -> Record:
     return both(
-        SCATTERING.format(
-            potential=potential, edges=edges, until=until, detector=detector, number=number, seed=seed
-        )
+        SCATTERING.format(potential=potential, edges=edges, until=until, detector=detector, number=number, seed=seed)
     )
 
 
@@ -128,8 +126,7 @@ def test_start_from_a_field_with_signs() -> None:
     weight = start.weight / wigner.GROUPS
     assert np.any(weight < 0)
     spread = [
-        float(values.std(ddof=1)) / 4
-        for values in (start.weight.sum(axis=1), (start.weight * start.x**2).sum(1))
+        float(values.std(ddof=1)) / 4 for values in (start.weight.sum(axis=1), (start.weight * start.x**2).sum(1))
     ]
     assert abs(weight.sum() - 1) < 3 * spread[0]
     assert abs((weight * start.x**2).sum() - 2.5) < 3 * spread[1]
@@ -146,11 +143,7 @@ def test_too_negative_a_start_is_refused() -> None:
 
 def test_oscillator_agrees_in_everything() -> None:
     record = both(OSCILLATOR)
-    compared = [
-        r
-        for r in record.results
-        if r.name.startswith("classical.") and r.name[10:] in record.plan.job.figures
-    ]
+    compared = [r for r in record.results if r.name.startswith("classical.") and r.name[10:] in record.plan.job.figures]
     assert len(compared) == 1 + 5 * 4 + 1 - 4 + 4
     for result in compared:
         quantum, tolerance = value(record, result.name[10:]), 2 * (result.error or 0.0) + 1e-4
@@ -176,9 +169,7 @@ def test_actions_of_the_mean_start() -> None:
     t = np.linspace(0, 7, 20001)
     x, p = 2 * np.cos(t) + 0.7 * np.sin(t), -2 * np.sin(t) + 0.7 * np.cos(t)
     assert value(record, "classical.action") == pytest.approx(np.trapezoid(p**2, t), abs=1e-5)
-    assert value(record, "classical.lagrangian_action") == pytest.approx(
-        np.trapezoid((p**2 - x**2) / 2, t), abs=1e-5
-    )
+    assert value(record, "classical.lagrangian_action") == pytest.approx(np.trapezoid((p**2 - x**2) / 2, t), abs=1e-5)
 
 
 @pytest.mark.parametrize(
@@ -196,10 +187,7 @@ def test_passes_what_has_the_energy(potential: str) -> None:
     through = record.result("classical.through.total")
     late = value(record, "classical.through.undecided")
     assert late < 1
-    assert (
-        abs(value(record, "classical.through.total") - share_above(1.0))
-        < 1.5 * error(record, through.name) + 0.01
-    )
+    assert abs(value(record, "classical.through.total") - share_above(1.0)) < 1.5 * error(record, through.name) + 0.01
 
 
 def test_free_packet() -> None:
@@ -207,9 +195,7 @@ def test_free_packet() -> None:
     record = scattering("", detector=10, until=20)
     width = math.hypot(2, 20 / 4)
     ahead = 0.5 * math.erfc((10 + 20 - 1.5 * 20) / width / math.sqrt(2))
-    assert abs(value(record, "classical.through.total") - ahead) < 2 * error(
-        record, "classical.through.total"
-    )
+    assert abs(value(record, "classical.through.total") - ahead) < 2 * error(record, "classical.through.total")
     assert value(record, "through.total") == pytest.approx(ahead, abs=1e-3)
     assert value(record, "classical.through.backward") < 0.02
 
@@ -241,9 +227,7 @@ def test_integral_of_a_layer() -> None:
     shape = LayerShape.on_grid(7.0, 0.2, 1.3, 0.05)
     nodes, weights = np.polynomial.legendre.leggauss(200)
     for s in (0.5, 3.0, 6.9):
-        assert shape.integral(np.array(s)) == pytest.approx(
-            weights @ shape.rate((nodes + 1) * s / 2) * s / 2, rel=1e-9
-        )
+        assert shape.integral(np.array(s)) == pytest.approx(weights @ shape.rate((nodes + 1) * s / 2) * s / 2, rel=1e-9)
 
 
 def test_pulse_of_a_field_gives_its_impulse() -> None:
@@ -405,9 +389,7 @@ def test_sentence() -> None:
 def test_written_with_a_run(tmp_path: Path) -> None:
     """Columns with their errors, figures with their parts, the sentence, and expectations on them."""
     expect = "expect: [{result: classical.position.x.final, equals: 0.06, tolerance: 5, source: test}]\n"
-    (tmp_path / "job.yml").write_text(
-        OSCILLATOR.replace("1024", "64") + "film: none\nerror_bars: none\n" + expect
-    )
+    (tmp_path / "job.yml").write_text(OSCILLATOR.replace("1024", "64") + "film: none\nerror_bars: none\n" + expect)
     finished = run_job(load(tmp_path / "job.yml", JobTree(tmp_path.resolve())), tmp_path / "runs", film=False)
     stored = json.loads((finished.folder / "results.json").read_text())
     assert stored["classical"]["trajectories"] == 64

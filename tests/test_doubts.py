@@ -62,9 +62,7 @@ def test_a_packet_that_starts_inside_a_layer() -> None:
     (doubt,) = found(packet="{gaussian: {at: -31, sigma: 3, wavenumber: 2}}")
     distance = -31 - (-60 + 85 * 120 / 512)
     assert doubt.key == "packet"
-    assert doubt.message.startswith(
-        f"{math.erfc(distance / 3 / math.sqrt(2)) / 2:.1e} of the packet starts inside"
-    )
+    assert doubt.message.startswith(f"{math.erfc(distance / 3 / math.sqrt(2)) / 2:.1e} of the packet starts inside")
 
 
 def test_a_kinetic_phase_beyond_pi() -> None:

@@ -47,9 +47,7 @@ def test_limits_of_version_1_count_too(groups: Path) -> None:
     assert machine.cores() == 1
 
 
-@pytest.mark.parametrize(
-    ("limit", "cores"), [("100000 100000", 1), ("50000 100000", 1), ("max 100000", None)]
-)
+@pytest.mark.parametrize(("limit", "cores"), [("100000 100000", 1), ("50000 100000", 1), ("max 100000", None)])
 def test_a_share_of_time_limits_cores(groups: Path, limit: str, cores: int | None) -> None:
     (groups / "fs" / "batch" / "cpu.max").write_text(limit, encoding="utf-8")
     assert machine.cores() == (cores or len(os.sched_getaffinity(0)))

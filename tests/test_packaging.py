@@ -46,9 +46,7 @@ def test_no_dependency_is_bounded_above(project: dict[str, Any]) -> None:
 @pytest.mark.parametrize("mark", ["run", "test"])
 def test_readme_has_one_line_commands(mark: str) -> None:
     text = (ROOT / "README.md").read_text(encoding="utf-8")
-    blocks = re.findall(
-        rf"^<!-- command: {mark} -->\n```sh\n(.*?)^```$", text, flags=re.MULTILINE | re.DOTALL
-    )
+    blocks = re.findall(rf"^<!-- command: {mark} -->\n```sh\n(.*?)^```$", text, flags=re.MULTILINE | re.DOTALL)
     assert len(blocks) == 1
     assert blocks[0].count("\n") == 1
 
@@ -74,9 +72,7 @@ SKIPPED_MODULE = "import pytest\npytest.importorskip('no_such_library')\n"
         ("", SKIPPED_MODULE, "1 skipped"),
     ],
 )
-def test_a_skipped_test_fails_in_continuous_integration(
-    tmp_path: Path, ci: str, source: str, outcome: str
-) -> None:
+def test_a_skipped_test_fails_in_continuous_integration(tmp_path: Path, ci: str, source: str, outcome: str) -> None:
     """Rather than being counted and forgotten; an expected failure is no skip."""
     (tmp_path / "conftest.py").write_bytes((ROOT / "tests" / "conftest.py").read_bytes())
     (tmp_path / "test_some.py").write_text(source)

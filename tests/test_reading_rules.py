@@ -86,9 +86,7 @@ def test_bare_let_number_counts_in_the_files_units() -> None:
 
 
 def test_energies_as_wave_numbers_and_temperatures() -> None:
-    job = parse(
-        SI + "potential:\n  - step: {at: 0, height: 8065.544 cm^-1}\n  - step: {at: 1, height: 11604.518 K}\n"
-    )
+    job = parse(SI + "potential:\n  - step: {at: 0, height: 8065.544 cm^-1}\n  - step: {at: 1, height: 11604.518 K}\n")
     for item in job.keys.potential:
         assert job.units.to_file(item.body.height, "energy") == pytest.approx(1000, rel=1e-7)
 
@@ -172,17 +170,13 @@ def test_named_items_replace_and_are_appended(tmp_path: Path) -> None:
 
 def test_unnamed_items_replace_the_list(tmp_path: Path) -> None:
     items = "potential:\n  - step: {at: 1, height: 1}\n    name: first\n"
-    job = loaded(
-        tmp_path, job="based_on: _base.yml\npotential:\n  - step: {at: 2, height: 1}\n", _base=GOOD + items
-    )
+    job = loaded(tmp_path, job="based_on: _base.yml\npotential:\n  - step: {at: 2, height: 1}\n", _base=GOOD + items)
     assert len(job.keys.potential) == 1
 
 
 def test_a_name_given_twice_is_no_silent_choice(tmp_path: Path) -> None:
     item = "  - step: {at: 1, height: 1}\n    name: first\n"
-    said = refused(
-        tmp_path, job=f"based_on: _base.yml\npotential:\n{item}{item}", _base=f"{GOOD}potential:\n{item}"
-    )
+    said = refused(tmp_path, job=f"based_on: _base.yml\npotential:\n{item}{item}", _base=f"{GOOD}potential:\n{item}")
     assert "another term is called `first`" in said
 
 
@@ -212,9 +206,7 @@ def test_units_stated_again_are_no_change(tmp_path: Path) -> None:
 
 def test_long_lists_merge_quickly(tmp_path: Path) -> None:
     def items(height: int) -> str:
-        return "potential:\n" + "".join(
-            f"  - {{step: {{at: 0, height: {height}}}, name: n{i}}}\n" for i in range(2000)
-        )
+        return "potential:\n" + "".join(f"  - {{step: {{at: 0, height: {height}}}, name: n{i}}}\n" for i in range(2000))
 
     begun = time.process_time()
     said = refused(tmp_path, job="based_on: _base.yml\n" + items(1), _base=GOOD + items(2))
@@ -279,18 +271,14 @@ def test_tables_have_bounds(tmp_path: Path) -> None:
 @pytest.mark.parametrize("separator", [",", " ", "\t", " , "])
 def test_tables_with_header_and_remarks(tmp_path: Path, separator: str) -> None:
     rows = "".join(f"{x}{separator}{x * x}\n" for x in range(-30, 31))
-    (tmp_path / "V.csv").write_text(
-        f"# remark\nx{separator}V\n\n{rows}", encoding="utf-8-sig", newline="\r\n"
-    )
+    (tmp_path / "V.csv").write_text(f"# remark\nx{separator}V\n\n{rows}", encoding="utf-8-sig", newline="\r\n")
     job = loaded(tmp_path, job=f"{GOOD}potential:\n  - table: {{file: V.csv}}\n")
     assert job.landscape.value(np.array([2.5]), 0.0) == pytest.approx(6.25)
 
 
 def test_a_broken_first_row_is_no_header(tmp_path: Path) -> None:
     (tmp_path / "V.csv").write_text("-30,oops\n" + "".join(f"{x},0\n" for x in range(-29, 31)))
-    assert "line 1: `oops` is no number" in refused(
-        tmp_path, job=f"{GOOD}potential:\n  - table: {{file: V.csv}}\n"
-    )
+    assert "line 1: `oops` is no number" in refused(tmp_path, job=f"{GOOD}potential:\n  - table: {{file: V.csv}}\n")
 
 
 # ---- stored fields
@@ -314,9 +302,7 @@ def stored(path: Path, psi: np.ndarray, x: np.ndarray, unit: str) -> None:
         (np.ones((1, 9, 2)), np.zeros(9), "", "do not rise"),
     ],
 )
-def test_stored_fields_that_do_not_fit(
-    tmp_path: Path, psi: np.ndarray, x: np.ndarray, unit: str, said: str
-) -> None:
+def test_stored_fields_that_do_not_fit(tmp_path: Path, psi: np.ndarray, x: np.ndarray, unit: str, said: str) -> None:
     stored(tmp_path / "f.nc", psi, x, unit)
     text = GOOD.replace("gaussian: {at: -5, sigma: 1, wavenumber: 2}", "file: {path: f.nc}")
     assert said in refused(tmp_path, job=text)
@@ -341,9 +327,7 @@ def test_line_ends_and_byte_order_marks(tmp_path: Path) -> None:
 
 
 def test_numbers_of_yaml(tmp_path: Path) -> None:
-    job = loaded(
-        tmp_path, job=GOOD.replace("256", "0x100").replace("-20", "-2.0e+1").replace("at: -5", "at: -0.0")
-    )
+    job = loaded(tmp_path, job=GOOD.replace("256", "0x100").replace("-20", "-2.0e+1").replace("at: -5", "at: -0.0"))
     assert (job.keys.grid.x.points, job.keys.grid.x.start) == (256, -20)
 
 
@@ -360,9 +344,7 @@ def test_chosen_points_beyond_memory() -> None:
 
 def test_an_endless_run() -> None:
     job = parse(GOOD.replace("until: 4", "until: 1e13"))
-    with pytest.raises(
-        JobFileError, match=r"evolve\.until: the run has .* steps, which take .* years at the least"
-    ):
+    with pytest.raises(JobFileError, match=r"evolve\.until: the run has .* steps, which take .* years at the least"):
         make_plan(job, memory=2**31)
 
 

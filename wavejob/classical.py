@@ -134,7 +134,6 @@ def _followed(motion: Motion, x0: float, p0: float, times: Array, step: float) -
         steps = max(1, math.ceil((until - t) / step - 1e-9))
         rows.append(motion.advance(rows[-1], t, until - t, steps))
     x, p, action, lagrangian_action = (
-        np.concatenate([getattr(row, name) for row in rows])
-        for name in ("x", "p", "action", "lagrangian_action")
+        np.concatenate([getattr(row, name) for row in rows]) for name in ("x", "p", "action", "lagrangian_action")
     )
     return Path(times, x, p, action, lagrangian_action, step, error=0.0, action_error=0.0)

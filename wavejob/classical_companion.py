@@ -60,9 +60,7 @@ def with_companion(record: Record) -> Record:
         results=(*record.results, *results, *_own_results(record, answer, gap_error)),
         classical=answer,
     )
-    columns = [
-        c for o, _ in observables for c in o.columns(plan.job.outline) if c.name in followed.pooled.rows
-    ]
+    columns = [c for o, _ in observables for c in o.columns(plan.job.outline) if c.name in followed.pooled.rows]
     return judged(_with_columns(joined, columns, followed))
 
 
@@ -186,9 +184,7 @@ def _own_results(record: Record, answer: Answer, gap_error: float | None) -> Ite
         yield _result(record, opens, answer.opens, None)
 
 
-def _answer(
-    record: Record, results: Sequence[Result], way: Path, number: int, gaps: Array, errors: Array
-) -> Answer:
+def _answer(record: Record, results: Sequence[Result], way: Path, number: int, gaps: Array, errors: Array) -> Answer:
     """For which results F = m a is enough, and when the mean places come apart."""
     known = bool(np.isfinite(gaps).any())
     widest = int(np.nanargmax(gaps)) if known else 0
@@ -208,9 +204,7 @@ def _answer(
         if kind == "not_enough":
             said.append(f"{mine.name} ({_figure(record, mine)} against {_figure(record, other)})")
     return Answer(
-        sentence=sentence(
-            str(record.plan.job.accuracy), sorted_out["enough"], said, sorted_out["undecided"], number
-        ),
+        sentence=sentence(str(record.plan.job.accuracy), sorted_out["enough"], said, sorted_out["undecided"], number),
         path=way,
         trajectories=number,
         largest_gap=float(gaps[widest]) if known else None,
@@ -222,9 +216,7 @@ def _answer(
     )
 
 
-def sentence(
-    accuracy: str, enough: list[str], not_enough: list[str], undecided: list[str], number: int
-) -> str:
+def sentence(accuracy: str, enough: list[str], not_enough: list[str], undecided: list[str], number: int) -> str:
     """For which results F = m a is good enough, in one sentence."""
     parts = []
     if enough:
@@ -232,9 +224,7 @@ def sentence(
     if not_enough:
         parts.append(f"is not good enough for {_listed(not_enough)}")
     if undecided:
-        parts.append(
-            f"cannot be told from the quantum answer by {number} trajectories for {_listed(undecided)}"
-        )
+        parts.append(f"cannot be told from the quantum answer by {number} trajectories for {_listed(undecided)}")
     return f"F = m a {'; '.join(parts)}." if parts else "No result of this job has a counterpart by F = m a."
 
 

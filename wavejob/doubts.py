@@ -91,8 +91,7 @@ def _phase(plan: Plan) -> Iterator[Problem]:
         step = plan.job.write(plan.step * math.pi / phase, "time")
         yield plan.job.problem(
             ("evolve", "step"),
-            f"the fastest wave of the grid turns by {phase:.3g} rad a step; beyond pi, "
-            "errors do not shrink evenly",
+            f"the fastest wave of the grid turns by {phase:.3g} rad a step; beyond pi, errors do not shrink evenly",
             f"write at most {step}, or leave `step` out",
             severity="warning",
         )
@@ -105,11 +104,7 @@ def _head_room(plan: Plan) -> Iterator[Problem]:
         keys = plan.job.keys.grid.x
         points = math.ceil(highest * HEAD_ROOM * plan.axis.length / math.pi)
         yield plan.job.problem(
-            ("grid", "x", "points")
-            if keys.points
-            else ("grid", "x", "spacing")
-            if keys.spacing
-            else ("grid", "x"),
+            ("grid", "x", "points") if keys.points else ("grid", "x", "spacing") if keys.spacing else ("grid", "x"),
             f"where the potential is lowest the packet may reach {plan.job.write(highest, 'wavenumber')}, "
             f"the grid holds {plan.job.write(plan.axis.k_max, 'wavenumber')}",
             f"give at least {points} points, or leave `points` out",

@@ -163,9 +163,7 @@ def _mean_rate(endings: tuple[Ending, ...], low: float, high: float) -> Callable
         total = np.zeros(start.shape)
         for ending in endings:
             depth = ending.shape.depth
-            first, last = (
-                low + depth - x if ending.side == "low" else x - (high - depth) for x in (start, stop)
-            )
+            first, last = (low + depth - x if ending.side == "low" else x - (high - depth) for x in (start, stop))
             moved = np.abs(last - first) > 1e-6 * depth
             way = np.where(moved, last - first, 1.0)
             along = (ending.shape.integral(last) - ending.shape.integral(first)) / way

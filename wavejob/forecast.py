@@ -85,9 +85,7 @@ def _disk(plan: Plan, frames: Schedule | None) -> int:
     rows = _count(plan.recorded) * (1 + len(job.columns))
     fields = 1 + (_count(plan.every(job.keys.snapshots.every)) if job.keys.snapshots else 0)
     densities = sum(
-        _count(plan.every(o.every) if o.every else plan.recorded)
-        for o in job.observables
-        if isinstance(o, Density)
+        _count(plan.every(o.every) if o.every else plan.recorded) for o in job.observables if isinstance(o, Density)
     )
     stored = points * FIELD_BYTES * (fields + densities / 2)
     film = FRAME_BYTES_ON_DISK * _count(frames) if frames else 0

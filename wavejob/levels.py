@@ -61,9 +61,7 @@ def lowest(axis: Axis, mass: float, potential: Potential, count: int) -> Levels:
         states = _carried(coarse, axis, states)
     energies, residuals, states = _sharpened(axis, mass, values, states, count)
     if np.any(residuals > np.maximum(CONVERGED * (energies - values.min()), 10 * _floor(axis, mass, values))):
-        raise LevelsError(
-            "the levels do not converge on this grid", "give other points or a smoother potential"
-        )
+        raise LevelsError("the levels do not converge on this grid", "give other points or a smoother potential")
     return Levels(energies, residuals, _signed(states) / math.sqrt(axis.spacing))
 
 
@@ -125,9 +123,7 @@ def _carried(coarse: Axis, axis: Axis, states: Array) -> Array:
     return np.asarray(fft.irfft(amplitudes, axis.points))
 
 
-def _sharpened(
-    axis: Axis, mass: float, values: Array, states: Array, count: int
-) -> tuple[Array, Array, Array]:
+def _sharpened(axis: Axis, mass: float, values: Array, states: Array, count: int) -> tuple[Array, Array, Array]:
     """Energies, residuals and states (rows of length 1) of the lowest `count` levels near the given ones."""
     floor, block, search, best = _floor(axis, mass, values), len(states), states, np.inf
     for _ in range(ITERATIONS):

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 
@@ -76,6 +77,11 @@ def _cause(job: Job) -> tuple[Key, str]:
     return ("evolve", "until"), "end it earlier, or ask for less accuracy"
 
 
+def shortest_spacing(job: Job) -> float:
+    """The shortest time between two frames, stored fields or densities that the job asks for; infinity without any."""
+    return min((every for _, every in _spacings(job)), default=math.inf)
+
+
 def _spacings(job: Job) -> Iterator[tuple[Key, float]]:
     """The times between two frames, stored fields and densities that the job asks for, and their keys."""
     if not isinstance(job.keys.film, str) and job.keys.film.every is not None:
@@ -129,9 +135,7 @@ def _kept(
     )
     if frames is not None:
         count, kept = _count(frames), min(points, FRAME_POINTS)
-        yield Need(
-            count * kept * FRAME_BYTES, f"{count} frames of the film", ("film", "every"), "take fewer frames"
-        )
+        yield Need(count * kept * FRAME_BYTES, f"{count} frames of the film", ("film", "every"), "take fewer frames")
     if job.keys.snapshots is not None:
         count = _count(_every(job.keys.snapshots.every, step, recorded.last))
         what = f"{count} stored fields of {points} points"

@@ -204,16 +204,12 @@ def read_units(document: Merged, value: dict[str, Any], problems: list[Problem])
         try:
             Units.from_file(part)
         except QuantityError as error:
-            wrong.append(
-                problem_at(document, key, error.message, error.fix, key=error.message.startswith("`units`"))
-            )
+            wrong.append(problem_at(document, key, error.message, error.fix, key=error.message.startswith("`units`")))
     problems += wrong
     return Units.from_file({"length": "nm", "time": "fs", "energy": "meV"} if wrong else written)
 
 
-def read_names(
-    document: Merged, value: dict[str, Any], units: Units, problems: list[Problem]
-) -> dict[str, Named]:
+def read_names(document: Merged, value: dict[str, Any], units: Units, problems: list[Problem]) -> dict[str, Named]:
     """The quantities of `let`; later ones may use earlier ones."""
     names: dict[str, Named] = {}
     written = value.get("let")
@@ -253,13 +249,18 @@ def _particle(document: Merged, keys: JobKeys, units: Units, problems: list[Prob
     """The particle in scaled units; natural and atomic units have one of mass 1 and charge 1 or -1."""
     written = keys.particle
     if isinstance(written, ParticleKeys):
-        return Particle(written.mass, written.charge)
+        mass, charge = written.mass, written.charge
+        if mass is None and units.system == "file":
+            if "mass" not in document.value["particle"]:  # else it was refused already
+                problem = problem_at(document, ("particle",), "`mass` is missing", "add it, or name a particle")
+                problems.append(replace(problem, key="particle.mass"))
+            return None
+        unless_given = 1.0 if units.system == "natural" else 0.0
+        return Particle(1.0 if mass is None else mass, unless_given if charge is None else charge)
     if written is None and units.system in ("natural", "atomic"):
         return Particle(1.0, 1.0)
     if written is None:
-        problem = problem_at(
-            document, (), "`particle` is missing", "add `particle: electron` or {mass:, charge:}"
-        )
+        problem = problem_at(document, (), "`particle` is missing", "add `particle: electron` or {mass:, charge:}")
         problems.append(replace(problem, key="particle"))
         return None
     try:

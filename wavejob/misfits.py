@@ -135,8 +135,7 @@ def _packet(job: Job, packet: Packet, where: Key) -> Iterator[Problem]:
         needs = f"{job.write(extent[0], 'length')} to {job.write(extent[1], 'length')}"
         yield job.problem(
             where,
-            f"the packet needs room from {needs} (6 sigma on both sides), "
-            f"the grid reaches from {span(job, axis)}",
+            f"the packet needs room from {needs} (6 sigma on both sides), the grid reaches from {span(job, axis)}",
             "move the packet, narrow it, or extend the grid",
         )
     k = packet.widest_wavenumber(job.particle.mass)
@@ -176,9 +175,7 @@ def _spaced(job: Job, every: float | None, key: Key) -> Iterator[Problem]:
     """A problem where the time between two is longer than the run."""
     duration = job.evolve.until - job.evolve.start
     if every is not None and every > duration * (1 + 1e-9):
-        yield job.problem(
-            key, f"`{key[-1]}` is longer than the run ({job.write(duration, 'time')})", "shorten it"
-        )
+        yield job.problem(key, f"`{key[-1]}` is longer than the run ({job.write(duration, 'time')})", "shorten it")
 
 
 def _evolution(job: Job) -> Iterator[Problem]:
@@ -279,9 +276,7 @@ def _unknown(name: str, what: str, known: list[str]) -> tuple[str, str]:
         return said, "there are: " + ", ".join(f"`{k}`" for k in begun)
     if near or not known:
         return said, f"did you mean `{near}`?" if near else "add an observable"
-    return said, "there are: " + ", ".join(f"`{k}`" for k in known[:12]) + (
-        ", ..." if len(known) > 12 else ""
-    )
+    return said, "there are: " + ", ".join(f"`{k}`" for k in known[:12]) + (", ..." if len(known) > 12 else "")
 
 
 def _value(job: Job, path: Key, value: object, column: Column) -> Iterator[Problem]:

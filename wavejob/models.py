@@ -256,12 +256,11 @@ Flag = Annotated[
 def _name(value: Any) -> str:
     if isinstance(value, str) and NAME.fullmatch(value):
         return value
-    raise refuse(
-        f"{shown(value)} is no name", "use a letter, then letters, digits, `_` or `-`, at most 41 characters"
-    )
+    raise refuse(f"{shown(value)} is no name", "use a letter, then letters, digits, `_` or `-`, at most 41 characters")
 
 
 Name = Annotated[str, BeforeValidator(_name), WithJsonSchema({"type": "string", "pattern": f"^{NAME.pattern}$"})]
+
 
 def one_of(
     value: Any, table: Mapping[str, Any], what: str, beside: tuple[str, ...] = (), words: tuple[str, ...] = ()

@@ -169,9 +169,7 @@ class Motion:
             if not going.any():
                 return result
             moving, times = moving[going], times[going]
-        raise RunError(
-            f"a classical trajectory met {MOST_EVENTS} edges in one step", "write `classical: none`"
-        )
+        raise RunError(f"a classical trajectory met {MOST_EVENTS} edges in one step", "write `classical: none`")
 
     def _glide(self, now: Trajectories, t: Array, tau: Array) -> tuple[Trajectories, list[Array]]:
         """Motion under the smooth force from `t` for the times `tau`, and the positions after each drift."""

@@ -57,9 +57,7 @@ def _moving(term: Term, axis: Axis, mass: float) -> Part:
     def sampled(t: float) -> tuple[Array, Array]:
         return breaks.moved(term.shift(t)).scaled(term.strength(t)).resolved(axis, mass).sampled(axis)
 
-    return Part(
-        "position", lambda t: sampled(t)[0][None, None], lambda t: (sampled(t)[1][None, None],), moves=True
-    )
+    return Part("position", lambda t: sampled(t)[0][None, None], lambda t: (sampled(t)[1][None, None],), moves=True)
 
 
 def _pulsing(term: Term, axis: Axis, mass: float, fixed: Breaks) -> list[Part]:

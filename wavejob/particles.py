@@ -65,17 +65,13 @@ def particle(name: str) -> Particle:
     if name in PARTICLES:
         return PARTICLES[name]
     near = _near(name)
-    fix = (
-        f"did you mean `{near}`?" if near else "write electron, proton, neutron, muon, an isotope, or a mass"
-    )
+    fix = f"did you mean `{near}`?" if near else "write electron, proton, neutron, muon, an isotope, or a mass"
     raise QuantityError(f"no particle called `{name[:40]}` is known here", fix)
 
 
 def _near(name: str) -> str:
     """The particle that was probably meant: rb87 and 87Rb are Rb-87."""
-    isotope = re.fullmatch(
-        r"([a-z]{1,2})[-_ ]?([0-9]{1,3})|([0-9]{1,3})[-_ ]?([a-z]{1,2})", name, re.IGNORECASE
-    )
+    isotope = re.fullmatch(r"([a-z]{1,2})[-_ ]?([0-9]{1,3})|([0-9]{1,3})[-_ ]?([a-z]{1,2})", name, re.IGNORECASE)
     if isotope:
         symbol, mass_number = isotope[1] or isotope[4], isotope[2] or isotope[3]
         name = f"{symbol.capitalize()}-{mass_number}"

@@ -14,7 +14,7 @@ from .evolve.step_choice import choose_step, largest_step
 from .grid import Axis
 from .hamiltonian import Hamiltonian
 from .job import Job
-from .limits import refuse_grid, refuse_run, refuse_spacings, refuse_steps
+from .limits import refuse_grid, refuse_run, refuse_spacings, refuse_steps, shortest_spacing
 from .misfit_terms import too_fine
 from .observables.base import Bench
 from .on_grid import on_grid
@@ -155,6 +155,9 @@ def _step(job: Job, hamiltonian: Hamiltonian, psi: Array) -> tuple[Splitting, fl
         said = f"errors of {min(choice.error, 1.0):.1g} are left even with a step of {job.write(choice.step, 'time')}"
         fix = "make the potential or its changes in time gentler, or write a `step` to go on all the same"
         raise JobFileError([job.problem(("evolve", "accuracy"), said, fix)])
+    shortest = shortest_spacing(job)
+    if shortest < choice.step:
+        return choice.splitting, shortest, "no longer than the time between two frames, stored fields or densities"
     return choice.splitting, choice.step, choice.reason
 
 

@@ -101,11 +101,7 @@ def open_run(folder: str | Path) -> Run:
     """The finished run in `folder`. Raises JobFileError where there is none."""
     folder = Path(folder)
     if not (folder / "manifest.json").is_file():
-        there = (
-            "it is unfinished: run its job again"
-            if (folder / ".job").is_file()
-            else "name a folder below `runs/`"
-        )
+        there = "it is unfinished: run its job again" if (folder / ".job").is_file() else "name a folder below `runs/`"
         raise JobFileError([Problem("holds no finished run", there, place=Place(str(folder)))])
     return Run(folder)
 
@@ -120,7 +116,5 @@ def _table(path: Path) -> Table:
         header, *rows = csv.reader(file)
     names = [cell.partition(" [")[0] for cell in header]
     units = [cell.partition(" [")[2].removesuffix("]") for cell in header]
-    numbers = np.array([[float(cell) if cell else np.nan for cell in row] for row in rows]).reshape(
-        -1, len(names)
-    )
+    numbers = np.array([[float(cell) if cell else np.nan for cell in row] for row in rows]).reshape(-1, len(names))
     return Table(dict(zip(names, numbers.T, strict=True)), dict(zip(names, units, strict=True)))

@@ -170,8 +170,8 @@ class EdgesKeys(Model):
 class ParticleKeys(Model):
     """The particle."""
 
-    mass: Mass = Field(description="effective mass")
-    charge: Charge = Field(0.0, description="0 if left out")
+    mass: Mass | None = Field(None, description="effective mass; 1 if left out in natural and atomic units")
+    charge: Charge | None = Field(None, description="0 if left out; 1 in natural units")
 
 
 def _particle_form(value: Any) -> Any:

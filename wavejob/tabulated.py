@@ -60,9 +60,7 @@ def read_columns(path: Path, written: str, wanted: int) -> Array:
         if len(known) < wanted:
             raise TableError(*_faulty(f"`{written}`, line {number}", cells[:wanted], wanted))
         if not np.all(np.isfinite(known)):
-            raise TableError(
-                f"`{written}`, line {number}: a value is not finite", "every value must be finite"
-            )
+            raise TableError(f"`{written}`, line {number}: a value is not finite", "every value must be finite")
         rows.append(known)
     if len(rows) < FEWEST_ROWS:
         said = f"`{written}` has {len(rows)} rows of numbers"

@@ -65,12 +65,16 @@ def timetable(job: Job, longest: float, shortest: float) -> tuple[float, int, in
         steps = record * math.ceil(least / record)
         return duration / steps, steps, record, 1
     wanted = min(max(int(shortest / longest), 1), SPARSEST)
-    best = min(
-        (rows * sample * math.ceil(least / (rows * sample)), -sample, rows)
-        for rows in range(ROWS - 50, ROWS + 51)
-        for sample in range(max(wanted * 3 // 5, 1), wanted + 1)
-        if rows * sample <= max(least, ROWS)
-    ) if wanted * (ROWS - 50) <= least else (ROWS * math.ceil(least / ROWS), 0, ROWS)
+    best = (
+        min(
+            (rows * sample * math.ceil(least / (rows * sample)), -sample, rows)
+            for rows in range(ROWS - 50, ROWS + 51)
+            for sample in range(max(wanted * 3 // 5, 1), wanted + 1)
+            if rows * sample <= max(least, ROWS)
+        )
+        if wanted * (ROWS - 50) <= least
+        else (ROWS * math.ceil(least / ROWS), 0, ROWS)
+    )
     steps, rows = best[0], best[2]
     record = steps // rows
     return duration / steps, steps, record, _divisor(record, wanted)
@@ -79,7 +83,7 @@ def timetable(job: Job, longest: float, shortest: float) -> tuple[float, int, in
 def _rows_apart(steps: int) -> int:
     """Steps between rows, a divisor of `steps` where one is near."""
     about = max(steps // ROWS, 1)
-    return next((d for d in range(about, max(about // 2, about - 10_000), -1) if steps % d == 0), about)
+    return next((d for d in range(about, max(about // 2, about - 10_000, 1) - 1, -1) if steps % d == 0), about)
 
 
 def _divisor(number: int, at_most: int) -> int:

@@ -72,9 +72,7 @@ def points(number: int, seed: int) -> tuple[Array, Array]:
     """Points of the unit square, two arrays (GROUPS, number), evenly spread in each group."""
     shifts = np.random.default_rng(seed).random((2, GROUPS, 1))
     steps = np.arange(1, number + 1)
-    first, second = (
-        (steps / PLASTIC**power + shift) % 1.0 for power, shift in zip((1, 2), shifts, strict=True)
-    )
+    first, second = ((steps / PLASTIC**power + shift) % 1.0 for power, shift in zip((1, 2), shifts, strict=True))
     tiny = 0.5 / number / GROUPS  # keeps away from the infinite ends of a normal distribution
     return np.clip(first, tiny, 1 - tiny), np.clip(second, tiny, 1 - tiny)
 
@@ -93,9 +91,7 @@ def function(x: Array, psi: Array) -> tuple[Array, Array, Array]:
     extent = max(float(x[high] - x[low]), 4 * spacing)
     number = math.ceil(FINEST * 2 * reach * extent / (2 * math.pi)) | 1
     if number > MOST:
-        raise WignerError(
-            f"the Wigner function would need {number} x {number} places, more than {MOST} x {MOST}"
-        )
+        raise WignerError(f"the Wigner function would need {number} x {number} places, more than {MOST} x {MOST}")
     number = max(number, 65)
     places = np.linspace(x[low], x[high], number)
     step = float(places[1] - places[0])

@@ -49,7 +49,7 @@ def tree(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
 
 
 @pytest.fixture
-def call(tree: Path, capsys: pytest.CaptureFixture[str]) -> Call:  # noqa: ARG001  (makes the folder)
+def call(tree: Path, capsys: pytest.CaptureFixture[str]) -> Call:
     """Calls `main` in this process, in the folder `tree`."""
 
     def called(*words: str | Path) -> Said:

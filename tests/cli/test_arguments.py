@@ -21,8 +21,7 @@ MISTAKES = [
     ("chek job.yml", "wavejob: no command `chek`; did you mean `check`?"),
     (
         "report",
-        "wavejob: `report` is not available yet; "
-        "there are: check, run, compare, prune, explain, schema, new, doctor",
+        "wavejob: `report` is not available yet; there are: check, run, compare, prune, explain, schema, new, doctor",
     ),
     ("check", "wavejob check: no job file given; name a job file or a folder of them"),
     ("check --memroy 3", "wavejob check: no option `--memroy`; did you mean `--memory`?"),
@@ -34,8 +33,7 @@ MISTAKES = [
     ),
     (
         "check --memory 3XB job.yml",
-        "wavejob check: --memory: `XB` is no unit of memory; "
-        "there are: B, kB, MB, GB, TB, KiB, MiB, GiB, TiB",
+        "wavejob check: --memory: `XB` is no unit of memory; there are: B, kB, MB, GB, TB, KiB, MiB, GiB, TiB",
     ),
     ("check --strict=yes job.yml", "wavejob check: `--strict` takes no value; write `--strict` alone"),
     ("check --format jsn job.yml", "wavejob check: --format: no `jsn`; did you mean `json`?"),
@@ -78,9 +76,7 @@ def test_help_lists_every_command(call: Call) -> None:
     assert [name for name in COMMANDS if f"\n  {name} " not in out] == []
 
 
-@pytest.mark.parametrize(
-    "line", ["--tree . check job.yml", "check --tree . job.yml", "check job.yml --tree=."]
-)
+@pytest.mark.parametrize("line", ["--tree . check job.yml", "check --tree . job.yml", "check job.yml --tree=."])
 def test_options_for_all_commands_stand_before_or_after(call: Call, line: str) -> None:
     assert call(*line.split()).code == 0
 
@@ -99,9 +95,7 @@ def test_sizes_are_read(text: str, count: int) -> None:
     assert read_size(text) == count
 
 
-@pytest.mark.parametrize(
-    "text", ["", "8", "-1 GB", "nan GB", "GB", "1e3 GB", "8 gigs", "0 B", "9999999999999 TB"]
-)
+@pytest.mark.parametrize("text", ["", "8", "-1 GB", "nan GB", "GB", "1e3 GB", "8 gigs", "0 B", "9999999999999 TB"])
 def test_what_is_no_size_is_refused(text: str) -> None:
     with pytest.raises(SizeError):
         read_size(text)

@@ -59,8 +59,7 @@ def test_json_has_the_promised_form(call: Call, tree: Path) -> None:
         ("jb.yml", "jb.yml: there is no such file or folder; did you mean `job.yml`?"),
         (
             "empty",
-            "empty: there are no job files in it; "
-            "they end in .yml or .yaml, and do not begin with `_` or `.`",
+            "empty: there are no job files in it; they end in .yml or .yaml, and do not begin with `_` or `.`",
         ),
     ],
 )

@@ -29,9 +29,7 @@ def test_json_tells_the_machine(call: Call, tree: Path) -> None:
     assert all(0 < seconds < 1 for seconds in machine["transform_pairs"].values())
 
 
-def test_a_cache_that_cannot_be_written_is_a_warning(
-    call: Call, tree: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_a_cache_that_cannot_be_written_is_a_warning(call: Call, tree: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setenv("WAVEJOB_CACHE", str(tree / "job.yml" / "cache"))
     found = call("doctor")
     assert found.code == 0

@@ -93,9 +93,7 @@ def test_the_urgent_job_runs_first_and_a_failure_stops_no_other(
     assert found.err.endswith("1 failed\n")
 
 
-def test_an_error_of_our_own_is_one_line_and_a_file(
-    call: Call, tree: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_an_error_of_our_own_is_one_line_and_a_file(call: Call, tree: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     def run_job(*_: object, **__: object) -> None:
         raise ZeroDivisionError("oh")
 
@@ -150,9 +148,7 @@ def test_two_trees_that_would_share_a_folder_are_refused(call: Call, tree: Path)
 
 
 def test_strict_counts_doubts(call: Call, tree: Path) -> None:
-    (tree / "job.yml").write_text(
-        JOB.replace("edges: {x: wrap}", "edges: {x: {absorb: 2}}"), encoding="utf-8"
-    )
+    (tree / "job.yml").write_text(JOB.replace("edges: {x: wrap}", "edges: {x: {absorb: 2}}"), encoding="utf-8")
     assert call("run", "job.yml", "-q").code == 0
     assert call("run", "job.yml", "-q", "--strict").code == 1
 
@@ -221,9 +217,7 @@ def test_other_error_bars_are_another_run(call: Call, tree: Path) -> None:
     assert len(list(tree.glob("runs/job/*"))) == 2
 
 
-def test_a_missing_encoder_is_missed_before_the_work(
-    call: Call, tree: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_a_missing_encoder_is_missed_before_the_work(call: Call, tree: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     (tree / "job.yml").write_text(JOB.replace("film: none", "film: {every: 1}"), encoding="utf-8")
     call("run", "job.yml", "-q", "--no-film")
     monkeypatch.setenv("IMAGEIO_FFMPEG_EXE", "/nowhere/ffmpeg")

@@ -25,9 +25,7 @@ def test_what_is_not_needed_is_not_loaded(environment: dict[str, str], words: li
     """Start-up time is theirs: pyfftw alone takes longer than all the rest together."""
     shown = "print(*sys.modules, file=sys.stderr)"
     script = f"import sys; from wavejob.cli import main; code = main({words}); {shown}; sys.exit(code)"
-    done = subprocess.run(
-        [sys.executable, "-c", script], capture_output=True, text=True, env=environment, check=True
-    )
+    done = subprocess.run([sys.executable, "-c", script], capture_output=True, text=True, env=environment, check=True)
     loaded = done.stderr.split()
     assert [name for name in loaded if name.split(".")[0] in LATE] == []
     parts = {name for name in loaded if name.startswith("scipy.") and name.count(".") == 1}
@@ -37,9 +35,7 @@ def test_what_is_not_needed_is_not_loaded(environment: dict[str, str], words: li
 def test_help_loads_no_numpy(environment: dict[str, str]) -> None:
     script = "import sys; from wavejob.cli import main; main(['--help']); sys.exit('numpy' in sys.modules)"
     assert (
-        subprocess.run(
-            [sys.executable, "-c", script], capture_output=True, env=environment, check=False
-        ).returncode
+        subprocess.run([sys.executable, "-c", script], capture_output=True, env=environment, check=False).returncode
         == 0
     )
 
@@ -124,11 +120,7 @@ def test_a_terminal_gets_a_bar_where_it_can_draw_one(
 ) -> None:
     """NO_COLOR takes colour away and nothing else (no-color.org); a dumb terminal gets plain lines."""
     (tree / "job.yml").write_text(LONG.replace("until: 2e5", "until: 400"), encoding="utf-8")
-    settings = (
-        environment
-        | {"TERM": terminal, "COLUMNS": "80", "LINES": "24"}
-        | ({} if colour else {"NO_COLOR": "1"})
-    )
+    settings = environment | {"TERM": terminal, "COLUMNS": "80", "LINES": "24"} | ({} if colour else {"NO_COLOR": "1"})
     master, slave = pty.openpty()
     with subprocess.Popen(
         [sys.executable, "-m", "wavejob", "run", "job.yml"], stdout=slave, stderr=slave, env=settings

@@ -96,9 +96,7 @@ def test_a_run_that_is_finished_does_nothing():
 def test_non_finite_values_stop_the_run():
     part = Part("position", lambda _: np.where(np.abs(X) < 1, np.inf, 0.0))
     with np.errstate(invalid="ignore"):
-        broken = plan(
-            Hamiltonian(Grid((AXIS,)), (1.0,), (part,)), SPLITTINGS["strang"], 0.1, np.exp(-(X**2)) + 0j
-        )
+        broken = plan(Hamiltonian(Grid((AXIS,)), (1.0,), (part,)), SPLITTINGS["strang"], 0.1, np.exp(-(X**2)) + 0j)
         with pytest.raises(RunError, match=r"no longer finite at step 4 \(time 0\.4\)"):
             evolve(broken, steps=8, outputs=[Watcher(Schedule(4, 8))])
 
@@ -114,7 +112,5 @@ print(hashlib.sha256(made.psi.tobytes()).hexdigest())
 
 def test_reproducible_gives_the_same_bits_in_fresh_processes():
     """Measured plans differ from process to process at rounding level; estimated ones do not."""
-    runs = [
-        subprocess.run([sys.executable, "-c", BITS], capture_output=True, text=True, check=True) for _ in "ab"
-    ]
+    runs = [subprocess.run([sys.executable, "-c", BITS], capture_output=True, text=True, check=True) for _ in "ab"]
     assert runs[0].stdout == runs[1].stdout != ""

@@ -85,9 +85,7 @@ def driven() -> Part:
 
 def pulled() -> Part:
     """A uniform force: linear, which has a short cut of its own."""
-    return Part(
-        "position", lambda _: 0.3 * X, lambda _: (np.full_like(X, 0.3),), in_time=lambda t: np.cos(3 * t)
-    )
+    return Part("position", lambda _: 0.3 * X, lambda _: (np.full_like(X, 0.3),), in_time=lambda t: np.cos(3 * t))
 
 
 def moving() -> Part:
@@ -122,9 +120,7 @@ CASES = {
 def end(case: str, splitting: Splitting, steps: int) -> np.ndarray:
     parts, layers = CASES[case]
     psi0 = np.exp(-((X + 4) ** 2) / 4 + 1.5j * X)
-    stepper = plan(
-        Hamiltonian(Grid((AXIS,)), (1.0,), parts, layers), splitting, 4.0 / steps, psi0, reproducible=True
-    )
+    stepper = plan(Hamiltonian(Grid((AXIS,)), (1.0,), parts, layers), splitting, 4.0 / steps, psi0, reproducible=True)
     evolve(stepper, steps=steps)
     return stepper.psi.copy()
 

@@ -41,8 +41,9 @@ def foil() -> dict[str, float]:
 
 def transport() -> dict[str, float]:
     """The trap moved by 10 um in 18 ms; the run ends 4 ms later."""
+
     def acceleration(t: float, x: float) -> float:
-        return -TRAP**2 * (x - 10e-6 * smooth_ramp(t / 18e-3))
+        return -(TRAP**2) * (x - 10e-6 * smooth_ramp(t / 18e-3))
 
     x, v = newton(acceleration, 0.0, 0.0, 22e-3, 1e-4)
     return {"delivered.final": coherent_overlap(x - 10e-6, v, RB87, TRAP)}
@@ -50,7 +51,7 @@ def transport() -> dict[str, float]:
 
 def disturbed(path: object, stop: float) -> dict[str, float]:
     """Mean position (um) and share of the ground state at `stop` of a trap that follows path(t), in SI."""
-    x, v = newton(lambda t, x: -TRAP**2 * (x - path(t)), 0.0, 0.0, stop, 1e-4)  # type: ignore[operator]
+    x, v = newton(lambda t, x: -(TRAP**2) * (x - path(t)), 0.0, 0.0, stop, 1e-4)  # type: ignore[operator]
     return {"position.x.final": x * 1e6, "ground.final": coherent_overlap(x, v, RB87, TRAP)}
 
 
@@ -77,6 +78,7 @@ def floor() -> dict[str, float]:
 
 def squeeze() -> dict[str, float]:
     """A second beam of 300 Hz comes on over 1 ms, on top of 100 Hz; after 6 ms."""
+
     def stiffness(t: float) -> float:
         return RB87 * (TRAP**2 + (2 * np.pi * 300) ** 2 * smooth_ramp((t - 1e-3) / 1e-3))
 
@@ -123,9 +125,9 @@ def band(q: np.ndarray, depth: float) -> np.ndarray:
     """Lowest band at quasi-momenta q (units of pi / period), depth and energy in recoils (Mathieu, DLMF 28)."""
     n = np.arange(-15, 16)
     off = np.full(len(n) - 1, -depth / 4)
-    return np.array([
-        np.linalg.eigvalsh(np.diag((p + 2 * n) ** 2 + depth / 2) + np.diag(off, 1) + np.diag(off, -1))[0] for p in q
-    ])
+    return np.array(
+        [np.linalg.eigvalsh(np.diag((p + 2 * n) ** 2 + depth / 2) + np.diag(off, 1) + np.diag(off, -1))[0] for p in q]
+    )
 
 
 SLOPE = 0.788e-12 * EV / 1e-6  # N

@@ -62,9 +62,7 @@ def bouncer(scale: float, rate: float, count: int, x: Array) -> Levels:
     return Levels(x, x[1] - x[0], states, -rate * zeros)
 
 
-def sinc_grid(
-    potential: Callable[[Array], Array], inertia: float, low: float, high: float, points: int
-) -> Levels:
+def sinc_grid(potential: Callable[[Array], Array], inertia: float, low: float, high: float, points: int) -> Levels:
     """All levels by diagonalising the Hamiltonian on a sinc grid (Colbert and Miller, J. Chem. Phys. 96
     (1992) 1982, from memory); `inertia` is hbar / 2 m and `potential` is V / hbar.
     """

@@ -26,7 +26,12 @@ def newton(
 ) -> tuple[float, float]:
     """Mean position and velocity at `stop` from x, v at 0."""
     found = solve_ivp(
-        lambda t, y: [y[1], acceleration(t, y[0])], (0, stop), [x, v], method="DOP853", rtol=1e-11, atol=1e-30,
+        lambda t, y: [y[1], acceleration(t, y[0])],
+        (0, stop),
+        [x, v],
+        method="DOP853",
+        rtol=1e-11,
+        atol=1e-30,
         max_step=longest,
     )
     return float(found.y[0, -1]), float(found.y[1, -1])
@@ -40,7 +45,12 @@ def breathing(stiffness: Function, mass: float, sigma: float, stop: float, longe
     """
     found = solve_ivp(
         lambda t, y: [y[1], -stiffness(t) / mass * y[0], y[3], -stiffness(t) / mass * y[2]],
-        (0, stop), [1.0, 0.0, 0.0, 1.0], method="DOP853", rtol=1e-11, atol=1e-30, max_step=longest,
+        (0, stop),
+        [1.0, 0.0, 0.0, 1.0],
+        method="DOP853",
+        rtol=1e-11,
+        atol=1e-30,
+        max_step=longest,
     )
     u, v = found.y[0, -1], found.y[2, -1]
     return float(np.hypot(sigma * u, HBAR / (2 * mass * sigma) * v))

@@ -119,9 +119,7 @@ def test_a_resolution_that_the_run_is_too_short_for_is_refused() -> None:
 
 
 def test_a_potential_that_changes_in_time_has_no_levels() -> None:
-    text = HARMONIC.replace(
-        "omega: 1}", "omega: 1}, in_time: {sine: {offset: 1, amplitude: 0.1, frequency: 1}}"
-    )
+    text = HARMONIC.replace("omega: 1}", "omega: 1}, in_time: {sine: {offset: 1, amplitude: 0.1, frequency: 1}}")
     with pytest.raises(JobFileError, match="changes in time"):
         make_plan(parse(text))
 

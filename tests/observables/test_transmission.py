@@ -30,9 +30,7 @@ observables:
   - transmission: {name: near, x: 1.5, energies: {from: 0.3, to: 1.7, points: 57}}
 """
 BARRIER = SHARP.replace("POTENTIAL", "barrier: {from: 0, to: 2, height: 1}")
-STEP = SHARP.replace("POTENTIAL", "step: {at: 0, height: 0.3}").replace(
-    "from: 0.3, to: 1.7", "from: 0.4, to: 1.8"
-)
+STEP = SHARP.replace("POTENTIAL", "step: {at: 0, height: 0.3}").replace("from: 0.3, to: 1.7", "from: 0.4, to: 1.8")
 
 SMOOTH = """
 units: natural

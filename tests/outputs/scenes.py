@@ -42,9 +42,7 @@ def double_barrier(frames=120, title=TITLE, until=1480.0):
     depth = np.clip(np.abs(x) - 340, 0, None) / 60
     psi = gaussian(x, -150, 20, np.sqrt(2 * mass * 70.4) / HBAR)
     times = np.linspace(0, until, frames)
-    field = propagate(
-        x, lambda _x, _t: v, psi, mass, HBAR, times, max(1, round(5 * until / frames)), 60 * depth**3
-    )
+    field = propagate(x, lambda _x, _t: v, psi, mass, HBAR, times, max(1, round(5 * until / frames)), 60 * depth**3)
     density = np.abs(field) ** 2
     dx = x[1] - x[0]
     speed = np.sqrt(2 * 70.4 / mass)

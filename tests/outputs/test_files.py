@@ -123,7 +123,7 @@ def test_a_full_disk_is_explained() -> None:
 def test_errors_while_syncing_are_explained(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch, number: int, words: str
 ) -> None:
-    def refuse(handle: int) -> None:  # noqa: ARG001 as os.fsync has it
+    def refuse(handle: int) -> None:
         raise OSError(number, os.strerror(number))
 
     monkeypatch.setattr(os, "fsync", refuse)

@@ -165,9 +165,7 @@ def test_the_carpet_grows_with_time():
     assert np.unique(early[now + 2 : rect.bottom - 2, inner, :3].reshape(-1, 3), axis=0).shape[0] == 1
 
 
-@pytest.mark.parametrize(
-    ("name", "logarithmic"), [("double barrier", True), ("morse", False), ("free", False)]
-)
+@pytest.mark.parametrize(("name", "logarithmic"), [("double barrier", True), ("morse", False), ("free", False)])
 def test_the_carpet_is_logarithmic_where_something_weak_must_be_seen(name, logarithmic):
     film = Film(scene(name), (1280, 720))
     assert film.chosen.carpet.logarithmic is logarithmic

@@ -62,9 +62,7 @@ def test_manifest_tells_the_run(tmp_path: Path, units: Any, monkeypatch: pytest.
     text = (tmp_path / "manifest.json").read_text()
     found = json.loads(text)
     assert "secret" not in text
-    told = {
-        name: found[name] for name in ("format", "job", "fingerprint", "started", "ended", "steps", "order")
-    }
+    told = {name: found[name] for name in ("format", "job", "fingerprint", "started", "ended", "steps", "order")}
     assert told == {
         "format": 1,
         "job": "stack/nominal",
@@ -116,9 +114,7 @@ def test_changed_and_new_files_make_it_dirty(tree: Path, name: str) -> None:
     assert manifest.revision(tree) == {"revision": _git(tree, "rev-parse", "HEAD"), "dirty": True}
 
 
-def test_another_trees_settings_do_not_lead_astray(
-    tree: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_another_trees_settings_do_not_lead_astray(tree: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     commit = _git(tree, "rev-parse", "HEAD")
     monkeypatch.setenv("GIT_DIR", str(tmp_path / "elsewhere"))
     found = manifest.revision(tree)

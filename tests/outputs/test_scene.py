@@ -72,9 +72,7 @@ def test_shapes_that_disagree_are_refused(changes, message):
         small(**changes)
 
 
-@pytest.mark.parametrize(
-    "title", ["$\\frac{1}{0", "a\nb\tc\x00d\u202ee", "\ud800 half", "量子 ψ 🐈 ع", "%s {}"]
-)
+@pytest.mark.parametrize("title", ["$\\frac{1}{0", "a\nb\tc\x00d\u202ee", "\ud800 half", "量子 ψ 🐈 ع", "%s {}"])
 def test_any_text_of_a_user_is_drawn_as_it_stands(title):
     """No formula is read, nothing warns, control characters are gone."""
     with warnings.catch_warnings():
@@ -89,9 +87,7 @@ def test_any_text_of_a_user_is_drawn_as_it_stands(title):
 
 def test_the_users_own_matplotlib_settings_change_nothing():
     plain = Film(scene("free"), (640, 360)).frame(5).copy()
-    with matplotlib.rc_context(
-        {"font.size": 30, "lines.linestyle": ":", "text.color": "red", "hatch.color": "red"}
-    ):
+    with matplotlib.rc_context({"font.size": 30, "lines.linestyle": ":", "text.color": "red", "hatch.color": "red"}):
         same = Film(scene("free"), (640, 360)).frame(5)
         np.testing.assert_array_equal(same, plain)
         assert matplotlib.rcParams["font.size"] == 30

@@ -164,9 +164,7 @@ def test_results_json_is_as_the_contract_shows(tmp_path: Path, units: Any) -> No
 
 
 def test_all_figures_of_a_result_are_in_the_files_units(tmp_path: Path, units: Any) -> None:
-    result = Result(
-        "energy.final", 2.0, "energy", 3.0, "", 0.5, error_status="estimated", error_parts={"step": 0.25}
-    )
+    result = Result("energy.final", 2.0, "energy", 3.0, "", 0.5, error_status="estimated", error_parts={"step": 0.25})
     found = _written(tmp_path / "r.json", [result], units)["results"]["energy.final"]
     assert found["unit"] == "meV"
     figures = (found["value"], found["scale"], found["error"], found["error_parts"]["step"])

@@ -24,10 +24,7 @@ def _value(text: str, **values: object) -> object:
 
 
 # From the contract of job files, word for word.
-CONTRACT = (
-    "where sin cos tan arcsin arccos arctan arctan2 "
-    "sinh cosh tanh exp log sqrt abs sign minimum maximum hypot"
-)
+CONTRACT = "where sin cos tan arcsin arccos arctan arctan2 sinh cosh tanh exp log sqrt abs sign minimum maximum hypot"
 
 
 def test_the_functions_are_those_of_the_contract() -> None:
@@ -313,8 +310,6 @@ def test_slopes_of_random_formulas(text: str, x: float, y: float) -> None:
     functions = {name: getattr(np, name) for name in ANALYTIC_FUNCTIONS.split()}
     with np.errstate(all="ignore"):
         at = np.complex128(complex(x, 1e-30))
-        expected = (
-            np.imag(eval(text, {"__builtins__": {}}, functions | {"x": at, "y": np.float64(y)})) / 1e-30
-        )
+        expected = np.imag(eval(text, {"__builtins__": {}}, functions | {"x": at, "y": np.float64(y)})) / 1e-30
     if np.isfinite(slope) and np.isfinite(expected) and abs(value) < 1e100:
         assert slope == pytest.approx(expected, rel=1e-7, abs=1e-12)

@@ -125,9 +125,7 @@ def test_units_are_worth_what_they_are_in_si(text: str, dimension: str, worth: f
     assert LAB.from_si(worth, dimension) == pytest.approx(LAB.read(text, dimension), rel=1e-11)
 
 
-@pytest.mark.parametrize(
-    "text", ["180 deg", "3.141592653589793 rad", "3141.592653589793 mrad", 3.141592653589793]
-)
+@pytest.mark.parametrize("text", ["180 deg", "3.141592653589793 rad", "3141.592653589793 mrad", 3.141592653589793])
 def test_angles(text: str | float) -> None:
     assert LAB.read(text, "angle") == pytest.approx(math.pi, rel=1e-15)
 
@@ -157,9 +155,7 @@ def test_an_electron_is_the_same_in_all_systems() -> None:
 def test_bare_numbers_in_file_units() -> None:
     assert STATED.read(5, "length") == 5.0
     assert STATED.read("5", "time") == 5.0
-    assert (
-        STATED.read(2.5, "energy") == STATED.read("2.5 peV", "energy") == STATED.read("2.5e-12 eV", "energy")
-    )
+    assert STATED.read(2.5, "energy") == STATED.read("2.5 peV", "energy") == STATED.read("2.5e-12 eV", "energy")
     assert STATED.read(2, "stiffness") == STATED.read("2 peV/um^2", "stiffness")
     assert STATED.read("3e-3", "momentum") == STATED.read("0.003 hbar/um", "momentum")
     assert STATED.read("1", "frequency") == pytest.approx(STATED.read("1 kHz", "frequency"), rel=1e-15)
@@ -296,9 +292,7 @@ def test_named_quantities_find_their_kind() -> None:
 def test_named_energies_may_be_wave_numbers_of_light_or_temperatures() -> None:
     names = {"line": LAB.read_named("2143.2 cm^-1"), "bath": LAB.read_named("20 uK")}
     assert names["line"].dimension == "wavenumber"
-    assert LAB.read("0.5*line", "energy", names) == pytest.approx(
-        LAB.read("1071.6 cm^-1", "energy"), rel=1e-15
-    )
+    assert LAB.read("0.5*line", "energy", names) == pytest.approx(LAB.read("1071.6 cm^-1", "energy"), rel=1e-15)
     assert LAB.read("bath/2", "energy", names) == pytest.approx(LAB.read("10 uK", "energy"), rel=1e-15)
     assert LAB.read_named("2143.2 cm^-1 + 1 meV").dimension == "energy"
     assert SPECTRAL.read_named("2143.2 cm^-1") == Named(SPECTRAL.read("2143.2 cm^-1", "energy"), "energy")
@@ -308,8 +302,7 @@ def test_natural_units_have_no_units() -> None:
     assert NATURAL.read(0.5, "mass") == NATURAL.read("0.5", "electric_field") == 0.5
     assert all(NATURAL.label(d) == "" and NATURAL.scale(d) == 1.0 for d in DIMENSIONS)
     assert (
-        _refused("5 nm", "length", NATURAL)
-        == "`5 nm` has a unit, and natural units have none; write the bare number"
+        _refused("5 nm", "length", NATURAL) == "`5 nm` has a unit, and natural units have none; write the bare number"
     )
     with pytest.raises(QuantityError):
         NATURAL.from_si(1.0, "length")
@@ -378,9 +371,7 @@ def test_numbers_of_numpy_are_written_like_others() -> None:
 
 def test_whole_arrays_are_printed() -> None:
     values = np.array([0.0, 1.0, 2.0])
-    np.testing.assert_allclose(
-        LAB.to_file(values, "energy") * si.e / 1000, values * si.hbar / 1e-15, rtol=1e-12
-    )
+    np.testing.assert_allclose(LAB.to_file(values, "energy") * si.e / 1000, values * si.hbar / 1e-15, rtol=1e-12)
 
 
 @settings(max_examples=200, deadline=None)

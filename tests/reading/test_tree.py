@@ -285,8 +285,7 @@ def test_an_empty_folder_is_adopted(root: Path, left: str | None) -> None:
     [
         (
             "data",
-            "data: holds other files, so runs are not written there; "
-            "choose a new or an empty folder with --runs DIR",
+            "data: holds other files, so runs are not written there; choose a new or an empty folder with --runs DIR",
         ),
         ("b.yml", "b.yml: is no folder, but runs need one; choose one with --runs DIR"),
         (

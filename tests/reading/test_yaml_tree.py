@@ -292,9 +292,7 @@ def test_a_file_that_may_not_be_read(tmp_path: Path, monkeypatch: pytest.MonkeyP
 
 def test_other_readers_of_yaml_in_the_process_are_left_alone() -> None:
     code = "import yaml; import wavejob.reading.yaml_tree; print(yaml.safe_load('[1e-3, on, 017]'))"
-    done = subprocess.run(
-        [sys.executable, "-c", code], capture_output=True, text=True, check=True, cwd=Path.cwd()
-    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True, cwd=Path.cwd())
     assert done.stdout == "['1e-3', True, 15]\n"
 
 

@@ -28,9 +28,12 @@ expect: [{result: beyond.final, above: 0}]
 film: none
 """
 SMOOTH = JOB.replace("barrier: {from: 0, to: 2, height: 1}", "sech2: {at: 0, width: 1, height: 1}")
-ABSORBING = JOB.replace("film: none", "edges: {x: {absorb: 40}}\nfilm: none").replace("inside", "crossing").replace(
-    "from: 2, to: 150", "x: 20, toward: +x"
-).replace("beyond.final", "beyond.total")
+ABSORBING = (
+    JOB.replace("film: none", "edges: {x: {absorb: 40}}\nfilm: none")
+    .replace("inside", "crossing")
+    .replace("from: 2, to: 150", "x: 20, toward: +x")
+    .replace("beyond.final", "beyond.total")
+)
 
 
 def exact() -> float:
@@ -108,7 +111,9 @@ def main() -> None:
     points, steps, power, by_hand = tuned_script(error)
     print("transmitted probability from physics and `accuracy: 1e-4` (wanted: at most a fifth of the script's time)")
     print(f"  wavejob  {seconds:8.2f} s   error {error:.1e}, bar {result.error:.1e}, {record.plan.axis.points} points")
-    print(f"  script   {by_hand:8.2f} s   for that error: {points} points, {steps} steps (order {power:.2f} in spacing)")
+    print(
+        f"  script   {by_hand:8.2f} s   for that error: {points} points, {steps} steps (order {power:.2f} in spacing)"
+    )
     print(f"  script / wavejob {by_hand / seconds:.1f}")
 
 

@@ -30,9 +30,7 @@ class FullDraw:
         self.film = film = Film(scene, (1280, 720))
         film.frame(0)
         with plain_matplotlib():
-            self.images = [
-                (rect, self._image(rect)) for rect in (film.layout.carpet, film.packets[0].panel.rect)
-            ]
+            self.images = [(rect, self._image(rect)) for rect in (film.layout.carpet, film.packets[0].panel.rect)]
         for artist in film.sheet.figure.findobj():
             artist.set_animated(False)
 
@@ -43,9 +41,7 @@ class FullDraw:
         axes = sheet.figure.add_axes(tuple(place))
         axes.set_axis_off()
         axes.set_zorder(-1)
-        return axes.imshow(
-            np.zeros((rect.height, rect.width, 3), np.uint8), aspect="auto", interpolation="nearest"
-        )
+        return axes.imshow(np.zeros((rect.height, rect.width, 3), np.uint8), aspect="auto", interpolation="nearest")
 
     def frame(self, number: int) -> None:
         pixels = self.film.frame(number)

@@ -79,9 +79,7 @@ class Parser(ArgumentParser):
         if strange:
             word = strange[0].partition("=")[0]
             if not word.startswith("-"):
-                raise UsageError(
-                    self.prog, f"does not know what to do with `{word}`", f"see `{self.prog} --help`"
-                )
+                raise UsageError(self.prog, f"does not know what to do with `{word}`", f"see `{self.prog} --help`")
             near = nearest(word, self._option_string_actions) if word.startswith("--") else None
             fix = f"did you mean `{near}`?" if near else f"see `{self.prog} --help`"
             raise UsageError(self.prog, f"no option `{word}`", fix)
@@ -106,9 +104,7 @@ def read(words: list[str]) -> Chosen | str:
             return f"wavejob {__version__}"
         if options.help:
             return overview()
-        raise UsageError(
-            "wavejob", "no command given", f"there are: {', '.join(COMMANDS)}; see `wavejob --help`"
-        )
+        raise UsageError("wavejob", "no command given", f"there are: {', '.join(COMMANDS)}; see `wavejob --help`")
     name, rest = words[at], words[:at] + words[at + 1 :]
     if name in LATER:
         raise UsageError("wavejob", f"`{name}` is not available yet", f"there are: {', '.join(COMMANDS)}")
@@ -157,36 +153,24 @@ def add_everywhere(parser: ArgumentParser) -> None:
     """The options that every command takes."""
     group = parser.add_argument_group("everywhere")
     group.add_argument("-q", "--quiet", action="store_true", help="say nothing but errors")
-    group.add_argument(
-        "-v", "--verbose", action="store_true", help="say more, with tracebacks of internal errors"
-    )
-    group.add_argument(
-        "--tree", type=Path, metavar="DIR", help="the job tree, instead of the nearest folder with .git"
-    )
+    group.add_argument("-v", "--verbose", action="store_true", help="say more, with tracebacks of internal errors")
+    group.add_argument("--tree", type=Path, metavar="DIR", help="the job tree, instead of the nearest folder with .git")
     group.add_argument("--version", action="store_true", help="print the version")
     group.add_argument("-h", "--help", action="store_true", help="print this")
 
 
 def add_paths(parser: ArgumentParser) -> None:
-    parser.add_argument(
-        "paths", nargs="*", metavar="PATH", help="a job file, or a folder that stands for all below it"
-    )
+    parser.add_argument("paths", nargs="*", metavar="PATH", help="a job file, or a folder that stands for all below it")
 
 
 def add_reading(parser: ArgumentParser) -> None:
     """What all commands take that read jobs."""
-    parser.add_argument(
-        "--memory", type=_size, metavar="SIZE", help="refuse jobs that need more, such as `8 GB`"
-    )
+    parser.add_argument("--memory", type=_size, metavar="SIZE", help="refuse jobs that need more, such as `8 GB`")
     parser.add_argument(
         "--limit", type=_duration, metavar="TIME", help="refuse jobs forecast to take longer, such as `2h`"
     )
-    parser.add_argument(
-        "--trust-paths", action="store_true", help="let files name others outside the job tree"
-    )
-    parser.add_argument(
-        "--strict", action="store_true", help="exit with 1 for a warning or a doubtful verdict too"
-    )
+    parser.add_argument("--trust-paths", action="store_true", help="let files name others outside the job tree")
+    parser.add_argument("--strict", action="store_true", help="exit with 1 for a warning or a doubtful verdict too")
     add_format(parser)
 
 

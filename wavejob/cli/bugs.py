@@ -25,11 +25,7 @@ def report_trace(error: str, trace: str, *, verbose: bool, doing: str = "") -> N
         terminal.say(f"{trace}{said}; please report it with the lines above")
         return
     kept = _kept(trace)
-    advice = (
-        f"please report it with `{kept}`"
-        if kept
-        else "run again with -v for the details, and please report it"
-    )
+    advice = f"please report it with `{kept}`" if kept else "run again with -v for the details, and please report it"
     terminal.say(f"{said}; {advice}")
 
 

@@ -95,9 +95,7 @@ def block(one: Ready) -> str:
     ]
     for ending in plan.endings:
         depth, sent_back = job.write(ending.shape.depth, "length"), ending.shape.reflected
-        lines.insert(
-            -2, (f"x.{ending.side}", f"absorbs over {depth}, predicted to send back {sent_back:.1e}")
-        )
+        lines.insert(-2, (f"x.{ending.side}", f"absorbs over {depth}, predicted to send back {sent_back:.1e}"))
     title = f"{job.id}: {job.title}" if job.title != job.id else job.id
     return "\n".join([title, *(paragraph(text, f"  {name:<10}", " " * 12) for name, text in lines), ""])
 

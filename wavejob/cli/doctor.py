@@ -90,9 +90,7 @@ def doubts(found: dict[str, Any]) -> list[Problem]:
         )
     if found["encoder"] is None:
         problems.append(
-            Problem(
-                "no video encoder was found; films need one", "pip install imageio-ffmpeg", severity="warning"
-            )
+            Problem("no video encoder was found; films need one", "pip install imageio-ffmpeg", severity="warning")
         )
     if str(found["wait_policy"]).lower() == "active":
         problems.append(
@@ -108,9 +106,7 @@ def doubts(found: dict[str, Any]) -> list[Problem]:
 def _lines(found: dict[str, Any]) -> list[tuple[str, str]]:
     cache, cores, installed = found["cache"], found["cores"], found["cores_installed"]
     packages = ", ".join(f"{name} {version or 'missing'}" for name, version in found["packages"].items())
-    pairs = ", ".join(
-        f"{points} points {1e6 * seconds:.3g} us" for points, seconds in found["transform_pairs"].items()
-    )
+    pairs = ", ".join(f"{points} points {1e6 * seconds:.3g} us" for points, seconds in found["transform_pairs"].items())
     return [
         ("wavejob", f"{found['version']}, numerics {found['numerics']}"),
         ("python", f"{found['python']} on {found['platform']}"),

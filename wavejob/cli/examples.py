@@ -59,9 +59,7 @@ def of_model(model: type[BaseModel], showing: str = "") -> dict[str, Any]:
 def _is_whole(model: type[BaseModel], values: dict[str, Any]) -> bool:
     """Whether `values` can be read; a file that they name need not be there."""
     try:
-        model.model_validate(
-            values, context=Reader(Units.from_file({"length": "nm", "time": "fs", "energy": "meV"}))
-        )
+        model.model_validate(values, context=Reader(Units.from_file({"length": "nm", "time": "fs", "energy": "meV"})))
     except ValidationError as error:
         return all(detail["loc"][-1:] in (("file",), ("path",)) for detail in error.errors())
     return True

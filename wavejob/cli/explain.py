@@ -43,9 +43,7 @@ BASE_UNITS = {
 
 
 def add_arguments(parser: ArgumentParser) -> None:
-    parser.add_argument(
-        "word", nargs="*", metavar="WORD", help="such as `points`, `grid.x.points`, `crossing`, `meV`"
-    )
+    parser.add_argument("word", nargs="*", metavar="WORD", help="such as `points`, `grid.x.points`, `crossing`, `meV`")
 
 
 def run(options: Namespace) -> int:
@@ -113,9 +111,7 @@ def overview() -> str:
     lines.append(paragraph(", ".join(checks()), f"{'checks':<17}", " " * 17))
     lines.append(paragraph(", ".join(topics()), f"{'pages':<17}", " " * 17))
     lines.append("")
-    lines.append(
-        "`wavejob explain WORD` tells more: `wavejob explain evolve`, `... grid.x.points`, `... units`."
-    )
+    lines.append("`wavejob explain WORD` tells more: `wavejob explain evolve`, `... grid.x.points`, `... units`.")
     return "\n".join(lines)
 
 
@@ -200,11 +196,7 @@ def _all_figures() -> list[tuple[str, str]]:
 
 
 def _figures(word: str) -> list[str]:
-    return [
-        paragraph(f"a result: {meaning}", f"{name}: ", "  ")
-        for name, meaning in _all_figures()
-        if name == word
-    ]
+    return [paragraph(f"a result: {meaning}", f"{name}: ", "  ") for name, meaning in _all_figures() if name == word]
 
 
 def _unit(word: str) -> str:

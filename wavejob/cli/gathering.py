@@ -32,9 +32,7 @@ class Gathered:
 def gather(options: Namespace) -> Gathered:
     """Reads every job of `options.paths`. Raises UsageError where no path is given."""
     if not options.paths:
-        raise UsageError(
-            f"wavejob {options.command}", "no job file given", "name a job file or a folder of them"
-        )
+        raise UsageError(f"wavejob {options.command}", "no job file given", "name a job file or a folder of them")
     found = Gathered()
     seen: set[Path] = set()
     for path in options.paths:

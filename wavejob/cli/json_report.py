@@ -37,9 +37,7 @@ def job_entry(
     variant: Mapping[str, str] | None = None,
 ) -> dict[str, Any]:
     weighed = (
-        {"seconds": round(forecast.seconds, 1), "memory": forecast.memory, "disk": forecast.disk}
-        if forecast
-        else None
+        {"seconds": round(forecast.seconds, 1), "memory": forecast.memory, "disk": forecast.disk} if forecast else None
     )
     return {
         "job": job,

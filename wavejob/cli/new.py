@@ -23,9 +23,7 @@ def run(options: Namespace) -> int:
     if path is None:
         raise UsageError("wavejob new", "no file name given", "write `wavejob new first.yml`")
     if path.suffix not in ENDINGS:
-        raise _refusal(
-            path, "is no name of a job file", f"end it in .yml, as in `{path.name or 'first'}.yml`"
-        )
+        raise _refusal(path, "is no name of a job file", f"end it in .yml, as in `{path.name or 'first'}.yml`")
     try:
         with path.open("x", encoding="utf-8", newline="\n") as file:
             file.write(template())
@@ -40,8 +38,7 @@ def run(options: Namespace) -> int:
     if not options.quiet:
         name = shown(path)
         terminal.say(
-            f"{name} is written. Next:\n"
-            f"  wavejob check {name}\n  wavejob run {name}\n  wavejob explain potential"
+            f"{name} is written. Next:\n  wavejob check {name}\n  wavejob run {name}\n  wavejob explain potential"
         )
     return 0
 

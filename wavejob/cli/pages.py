@@ -46,7 +46,5 @@ def _fitted(kind: str, block: list[str]) -> list[str]:
         return [paragraph(joined)]
     if kind == "row":
         rows = [[cell.strip() for cell in line.strip("|").split(" | ")] for line in block]
-        return columns(
-            [(first, "; ".join(rest)) for first, *rest in rows if not re.fullmatch("-+:?", first)], ""
-        )
+        return columns([(first, "; ".join(rest)) for first, *rest in rows if not re.fullmatch("-+:?", first)], "")
     return block

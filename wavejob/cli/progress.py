@@ -109,9 +109,7 @@ class Bar:
         if stage != self.stage or done < self.bars.tasks[-1].completed:
             if self.task is not None:
                 self.bars.remove_task(self.task)
-            name = (
-                self.job.id if len(self.job.id) <= LONGEST_NAME else "..." + self.job.id[3 - LONGEST_NAME :]
-            )
+            name = self.job.id if len(self.job.id) <= LONGEST_NAME else "..." + self.job.id[3 - LONGEST_NAME :]
             self.task, self.stage = self.bars.add_task(name, total=total, stage=stage), stage
         self.bars.update(self.task, completed=done, total=total)
 

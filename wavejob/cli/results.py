@@ -38,10 +38,7 @@ def _rows(rows: Sequence[tuple[str, str, str]]) -> list[str]:
     names = max((len(name) for name, _, _ in rows), default=0)
     values = max((len(value) for _, value, _ in rows), default=0)
     rest = " " * (names + values + 6)
-    return [
-        paragraph(said, f"  {name:<{names}}  {value:<{values}}  ", rest).rstrip()
-        for name, value, said in rows
-    ]
+    return [paragraph(said, f"  {name:<{names}}  {value:<{values}}  ", rest).rstrip() for name, value, said in rows]
 
 
 def _value(entry: dict[str, Any]) -> str:

@@ -9,9 +9,7 @@ from typing import Any
 from ..settings import JobKeys
 from . import terminal
 
-DIALECT = (
-    "http://json-schema.org/draft-07/schema#"  # what editors of YAML read; newer readers take it as well
-)
+DIALECT = "http://json-schema.org/draft-07/schema#"  # what editors of YAML read; newer readers take it as well
 NAME = "urn:wavejob:job-file:1"
 
 
@@ -47,6 +45,4 @@ def _plain(node: Any, *, names: bool = False) -> Any:
     if not isinstance(node, dict):
         return node
     kept = {k: v for k, v in node.items() if names or not (k == "title" or (k == "default" and v is None))}
-    return {
-        key: _plain(value, names=key in ("properties", "$defs") and not names) for key, value in kept.items()
-    }
+    return {key: _plain(value, names=key in ("properties", "$defs") and not names) for key, value in kept.items()}

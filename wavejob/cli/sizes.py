@@ -24,9 +24,7 @@ def read_size(text: str) -> int:
         raise SizeError(f"`{text}` is no size; {WANTED}")
     number, unit = found.groups()
     spelt = {name.lower(): worth for name, worth in UNITS.items()}
-    spelt |= {
-        name[0].lower(): worth for name, worth in UNITS.items() if name.endswith("B") and len(name) == 2
-    }
+    spelt |= {name[0].lower(): worth for name, worth in UNITS.items() if name.endswith("B") and len(name) == 2}
     if not unit:
         raise SizeError(f"`{text}` has no unit; {WANTED}")
     if unit.lower() not in spelt:

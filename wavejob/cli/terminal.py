@@ -89,9 +89,7 @@ class _ToStandardError(logging.Handler):
 def logged(options: Namespace) -> Iterator[None]:
     """While the block lasts, warnings of the package (with -v everything) go to standard error."""
     logger, handler = logging.getLogger(LOGGER), _ToStandardError()
-    handler.setLevel(
-        logging.DEBUG if options.verbose else logging.ERROR if options.quiet else logging.WARNING
-    )
+    handler.setLevel(logging.DEBUG if options.verbose else logging.ERROR if options.quiet else logging.WARNING)
     level, passes_on = logger.level, logger.propagate
     logger.addHandler(handler)
     logger.setLevel(logging.DEBUG if options.verbose else logging.WARNING)

@@ -33,6 +33,4 @@ def count_of(schedule: Schedule) -> int:
 def columns(rows: Sequence[tuple[str, str]], indent: str) -> list[str]:
     """Rows of a name and a text, the texts below each other."""
     wide = min(max((len(name) for name, _ in rows), default=0), 32)
-    return [
-        paragraph(text, f"{indent}{name:<{wide}}  ", " " * (len(indent) + wide + 2)) for name, text in rows
-    ]
+    return [paragraph(text, f"{indent}{name:<{wide}}  ", " " * (len(indent) + wide + 2)) for name, text in rows]

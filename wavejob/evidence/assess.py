@@ -73,7 +73,9 @@ class _Box:
     def added(self, record: Record, differences: list[Difference], parts: ErrorBarsKeys) -> Record:
         """`record` with bars from `differences` and from the edges."""
         barred = with_bars(record, [*differences, *self.measured], recording=parts.record)
-        return edges.with_part(barred, self.predicted) if self.predicted else barred
+        if not self.predicted:
+            return barred
+        return edges.with_part(barred, self.predicted, absorbed_only=bool(self.measured))
 
 
 def _staged(progress: Tell | None, stage: str) -> Tell | None:
@@ -119,7 +121,7 @@ def _refined(
     plan, wanted = barred.plan, barred.plan.job.accuracy
     free_step, free_points = free(plan)
     spent, first = 0.0, _cost(plan)
-    for _ in range(MOST_LEVELS):
+    for level in range(MOST_LEVELS):
         step, points = free_step and _too_large(barred, "step"), free_points and _too_large(barred, "grid")
         if not (step or points):
             break
@@ -140,7 +142,8 @@ def _refined(
         differences = [Difference(name, run, barred, factor), *kept]
         before, barred = barred, box.added(run, differences, parts)
         notes.append(_note(Companion(before.plan, 1 / better.step, 1 / better.points, "the run before"), factor))
-        if _excess(barred, name) > max(1.0, _excess(before, name) / STALLED):
+        # The first finer run shows the whole error of the one before, a coarser companion only a part: no comparison.
+        if level > 0 and _excess(barred, name) > max(1.0, _excess(before, name) / STALLED):
             notes.append("a finer plan does not lower the bars: they do not converge")
             barred = replace(barred, results=tuple(_stalled(r, name, wanted) for r in barred.results))
             break
@@ -167,7 +170,7 @@ def _box(
     if parts.box == "no":
         return _Box()
     predicted = edges.returned(record)
-    if parts.box == "auto" and predicted <= record.plan.job.accuracy.first * EDGE_SHARE:
+    if parts.box == "auto" and predicted <= _least(record) * EDGE_SHARE:
         if predicted > TRACE:
             notes.append(f"what the edges send back changes probabilities by about {predicted:.1e}, as predicted")
         return _Box(predicted=predicted)
@@ -177,7 +180,14 @@ def _box(
         return _Box(predicted=predicted)
     notes.append(_note(companion, FINER))
     wider = simulate(companion.plan, tell, alone=False)
-    return _Box((Difference("box", cheapest, wider, FINER, edges.of_what_is_left(record)),))
+    return _Box((Difference("box", cheapest, wider, FINER, edges.of_what_is_left(record)),), predicted)
+
+
+def _least(record: Record) -> float:
+    """The smallest error, over its scale, that is wanted of a probability: `relative` asks for less of a small one."""
+    wanted = record.plan.job.accuracy
+    limits = [wanted.limit(result) for result in counted(record) if result.dimension == "number"]
+    return min(limits, default=wanted.first)
 
 
 def _too_large(record: Record, part: str) -> bool:

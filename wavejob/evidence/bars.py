@@ -15,10 +15,11 @@ from ..simulate import Record
 Array = np.ndarray
 
 SMOOTH = 1.0  # times the difference to a coarser companion; by trial on the catalogue in tests/truth
-SHARP = 2.0  # the same where the potential has sharp edges: errors then shrink less regularly
+SHARP = 3.5  # the same where the potential has sharp edges: errors then shrink less regularly
 FINER = 1.5  # times the difference to a finer companion, which is itself not free of error
-KIN = 0.1  # of the largest difference over value of all probabilities, below which none counts: one of them may pass
-# through zero where two errors cancel, while those of its kin do not
+KIN = 0.3  # of the largest difference over value of all probabilities, below which none counts: one of them may pass
+# through zero where two errors cancel, while those of its kin do not. The same for mean values, over their scales
+MEANS = ("position", "momentum", "width", "energy")
 TRACE = 1e-3
 HOPELESS = 0.5  # of the scale: a difference beyond this is no error bar
 LEFT = 0.5  # probability on the grid at the end, below which mean values of the rest do not count
@@ -67,7 +68,9 @@ def weight(record: Record, *, coarser: bool = True) -> float:
 def with_bars(record: Record, differences: Sequence[Difference], *, recording: bool = True) -> Record:
     """`record` with the error of every result, column and curve: the sum of all parts."""
     floor = record.norm_drift + 1e-15
-    shared = {d.part: 0.0 if d.skips else _largest_share(record, d) for d in differences}
+    shared = {
+        d.part: (0.0, 0.0) if d.skips else (_largest_share(record, d), _largest_mean(record, d)) for d in differences
+    }
     series = floor * np.maximum(np.abs(record.series), _scales(record))
     return replace(
         record,
@@ -117,23 +120,43 @@ def _is_probability(result: Result) -> bool:
     return result.dimension == "number" and result.name.partition(".")[2] not in ("drift", "position", "momentum")
 
 
+def _is_mean(result: Result) -> bool:
+    return result.dimension != "number" and result.name.split(".")[0] in MEANS
+
+
 def _largest_share(record: Record, difference: Difference) -> float:
     """The largest difference over value of all probabilities that are no mere trace."""
     shares = [
         (difference.of(r.name) or 0.0) / abs(r.value)
         for r in record.results
-        if r.value is not None and _is_probability(r) and abs(r.value) > TRACE
+        if r.value is not None and _is_probability(r) and abs(r.value) > TRACE and not _of_the_rest(r)
     ]
     return max(shares, default=0.0)
 
 
+def _of_the_rest(result: Result) -> bool:
+    """What is left on the grid is no kin of what left it: its error may be large beside its value."""
+    return result.name.startswith("norm.") or result.name.endswith(".undecided")
+
+
+def _largest_mean(record: Record, difference: Difference) -> float:
+    """The largest difference over scale of all mean values."""
+    shares = [(difference.of(r.name) or 0.0) / r.scale for r in record.results if _is_mean(r) and r.scale]
+    return max(shares, default=0.0)
+
+
 def _barred(
-    record: Record, result: Result, differences: Sequence[Difference], shared: dict[str, float], recording: bool
+    record: Record,
+    result: Result,
+    differences: Sequence[Difference],
+    shared: dict[str, tuple[float, float]],
+    recording: bool,
 ) -> Result:
     if result.value is None:
         return result
     found = {d.part: d.of(result.name) for d in differences}
-    least = {d.part: KIN * shared[d.part] * abs(result.value) * _is_probability(result) for d in differences}
+    probable, mean = abs(result.value) * _is_probability(result), (result.scale or 0.0) * _is_mean(result)
+    least = {part: KIN * (of_values * probable + of_scales * mean) for part, (of_values, of_scales) in shared.items()}
     parts = {part: max(value, least[part]) for part, value in found.items() if value is not None}
     if len(parts) < len(found):
         return replace(result, error_parts={}, error_status="not_converging", note="a companion run has no such value")

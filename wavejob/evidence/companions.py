@@ -39,9 +39,11 @@ def coarser(plan: Plan, *, step: bool = True, points: bool = True, until: int | 
     `until` is the number of steps that the run has made: the companion ends at the same time.
     """
     rows = plan.record // 2 if step and plan.record > 1 else plan.record
+    whole = plan.steps if until is None else until
+    fits = whole * rows % plan.record == 0  # else no step makes both the rows and the end whole
     grid = fast_size_below(int(plan.axis.points * COARSER_POINTS)) if points else plan.axis.points
     reach = float(np.max(np.abs(wave_numbers(plan.axis, plan.psi)[0])))
-    if (step and plan.record == 1) or (points and reach > HOLDS * math.pi * grid / plan.axis.length):
+    if (step and (plan.record == 1 or not fits)) or (points and reach > HOLDS * math.pi * grid / plan.axis.length):
         return finer(plan, step=2.0 if step else 1.0, points=2**0.5 if points else 1.0, until=until)
     return _changed(plan, rows, grid, until, "coarser")
 
@@ -96,8 +98,10 @@ def larger(plan: Plan, until: int | None = None) -> Companion | None:
 
 
 def _changed(plan: Plan, record: int, points: int, until: int | None, reason: str) -> Companion:
-    """The plan with `record` steps between the same recorded times, on `points` points."""
+    """The plan with at least `record` steps between the same recorded times, on `points` points."""
     whole = plan.steps if until is None else until
+    if whole * record % plan.record:  # the last row does not stand at a whole number of rows
+        record = plan.record * math.ceil(record / plan.record)
     ratio = plan.record / record
     steps = round(whole / ratio)
     axis = replace(plan.axis, points=points)

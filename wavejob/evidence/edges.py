@@ -31,16 +31,20 @@ def _left_late(record: Record) -> float:
     return float(np.interp(late, times, record.frames.norm))
 
 
-def with_part(record: Record, change: float) -> Record:
-    """The record with a part "box" of `change` times the scale in all errors that know one."""
-    untouched = of_what_is_left(record)
+def with_part(record: Record, change: float, *, absorbed_only: bool = False) -> Record:
+    """The record with a part "box" of `change` times the scale in all errors that know one.
+
+    With `absorbed_only` just what the layers took: a run on a larger grid says nothing about that.
+    """
+    taken = {result.name for result in record.results if result.name.startswith("absorbed.")}
+    touched = taken if absorbed_only else {r.name for r in record.results} - (of_what_is_left(record) - taken)
     results = tuple(
         result
-        if result.error is None or result.name in untouched or result.scale is None
+        if result.error is None or result.name not in touched or result.scale is None
         else replace(
             result,
             error=result.error + change * result.scale,
-            error_parts={**result.error_parts, "box": change * result.scale},
+            error_parts={**result.error_parts, "box": result.error_parts.get("box", 0.0) + change * result.scale},
         )
         for result in record.results
     )

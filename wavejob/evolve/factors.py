@@ -40,9 +40,7 @@ class Factor:
 
     table: Array  # complex, broadcasting against psi
 
-    def __init__(
-        self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float
-    ) -> None:
+    def __init__(self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float) -> None:
         self._hamiltonian, self._share, self._squeeze, self._psi = hamiltonian, share, squeeze, psi
         self._timed = [part for part in hamiltonian.parts if part.depends_on_time]
         self._moves = any(part.moves for part in self._timed)
@@ -101,9 +99,7 @@ class Factor:
 class StaticFactor(Factor):
     """Nothing depends on time."""
 
-    def __init__(
-        self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float
-    ) -> None:
+    def __init__(self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float) -> None:
         super().__init__(hamiltonian, share, squeeze, psi, start)
         values, slopes = _totals(hamiltonian, squeeze, start)
         energy = values.fixed
@@ -143,9 +139,7 @@ class SeparableFactor(Factor):
 class PhaseFactor(Factor):
     """Anything else without coupled channels: the potential is summed and its phase taken anew."""
 
-    def __init__(
-        self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float
-    ) -> None:
+    def __init__(self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float) -> None:
         super().__init__(hamiltonian, share, squeeze, psi, start)
         self._values, self._slopes = _totals(hamiltonian, squeeze, start)
         self._stiffen(self._values.fixed)
@@ -171,9 +165,7 @@ class PhaseFactor(Factor):
 class MatrixFactor(Factor):
     """Coupled channels: `table` holds a matrix for each point, (runs, channels, channels, *grid)."""
 
-    def __init__(
-        self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float
-    ) -> None:
+    def __init__(self, hamiltonian: Hamiltonian, share: float, squeeze: float, psi: Array, start: float) -> None:
         super().__init__(hamiltonian, share, squeeze, psi, start)
         parts = [part for part in hamiltonian.parts if part.couples]
         channels = psi.shape[1]

@@ -64,8 +64,7 @@ SPLITTINGS = {
             order=4,
             kicks=(Kick(1 / 6, 0), Kick(2 / 3, 1 / 2, gradient=1 / 48), Kick(1 / 6, 1)),
             drifts=(1 / 2, 1 / 2),
-            source="S. A. Chin, Phys. Lett. A 226 (1997) 344; "
-            "with V(t): Chin & Chen, J. Chem. Phys. 117 (2002) 1409",
+            source="S. A. Chin, Phys. Lett. A 226 (1997) 344; with V(t): Chin & Chen, J. Chem. Phys. 117 (2002) 1409",
         ),
     )
 }

@@ -204,9 +204,7 @@ class _Steps:
         at = t + kick.at * self.step
         energy = self.hamiltonian.potential(at)[0, 0]
         if kick.gradient:
-            slopes = [
-                part.factor(at) * part.gradient(at)[0][0, 0] for part in self.hamiltonian.parts if part.gradient
-            ]
+            slopes = [part.factor(at) * part.gradient(at)[0][0, 0] for part in self.hamiltonian.parts if part.gradient]
             energy = energy - kick.gradient * self.step**2 * sum(slopes) ** 2 / self.hamiltonian.masses[0]
         factor = np.exp(-1j * self.step * kick.weight * energy)
         return np.concatenate([factor, factor[::-1]]) if self.walls else factor

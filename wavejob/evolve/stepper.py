@@ -72,10 +72,7 @@ class Stepper:
         forward, backward = self._transforms.forward, self._transforms.backward
         multiply, add = np.multiply, np.add
         rows, closing = (
-            [
-                (row.drift, [(t.amplitude, t.squared, t.seen) for t in row.kick.tallies], row.kick.table)
-                for row in step
-            ]
+            [(row.drift, [(t.amplitude, t.squared, t.seen) for t in row.kick.tallies], row.kick.table) for row in step]
             for step in (self._rows, self._closing)
         )
         for drift, layers, kick in chain(chain.from_iterable(repeat(rows, count - 1)), closing):

@@ -57,9 +57,7 @@ class Settings:
     @property
     def round_trip(self) -> float:
         """What forward and backward together multiply by."""
-        return float(
-            np.prod([axis.points * (2 if axis.transform == "sine" else 1) for axis in self.grid.axes])
-        )
+        return float(np.prod([axis.points * (2 if axis.transform == "sine" else 1) for axis in self.grid.axes]))
 
     def axes(self, kind: Transform) -> tuple[int, ...]:
         """Array axes that use transform `kind`."""

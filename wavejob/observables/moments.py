@@ -319,9 +319,7 @@ class Ehrenfest(Observable):
 
     def figures(self, outline: Outline) -> tuple[Column, ...]:
         return (
-            Column(
-                "ehrenfest.position", meaning="largest abs(<x> - <x>_0 - integral of <p>/m) over the initial width"
-            ),
+            Column("ehrenfest.position", meaning="largest abs(<x> - <x>_0 - integral of <p>/m) over the initial width"),
             Column(
                 "ehrenfest.momentum",
                 meaning="largest abs(<p> - <p>_0 - integral of <F>) over the initial momentum width",

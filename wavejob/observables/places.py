@@ -96,16 +96,22 @@ def region_figures(name: str, series: Series) -> dict[str, float | None]:
 
 
 def summit(times: Array, values: Array) -> tuple[float, float]:
-    """The largest value and its time: the top of the parabola through the three largest rows."""
+    """The largest value and its time: the top of the polynomial through the largest row and two on each side.
+
+    Where there is one row only on a side, through three.
+    """
     i = int(np.argmax(values))
-    if not 0 < i < len(values) - 1:
+    reach = min(i, len(values) - 1 - i, 2)
+    if reach == 0:
         return float(values[i]), float(times[i])
-    parabola = np.polynomial.Polynomial.fit(times[i - 1 : i + 2], values[i - 1 : i + 2], 2)
-    curvature = parabola.deriv(2)(times[i])
-    if curvature >= 0:
-        return float(values[i]), float(times[i])
-    when = float(np.clip(times[i] - parabola.deriv()(times[i]) / curvature, times[i - 1], times[i + 1]))
-    return max(float(parabola(when)), float(values[i])), when
+    near = slice(i - reach, i + reach + 1)
+    curve = np.polynomial.Polynomial.fit(times[near], values[near], 2 * reach)
+    level = curve.deriv().roots()
+    level = level.real[(np.abs(level.imag) < 1e-9) & (level.real >= times[i - 1]) & (level.real <= times[i + 1])]
+    places = np.append(level, times[i])
+    heights = curve(places)
+    top = int(np.argmax(heights))
+    return max(float(heights[top]), float(values[i])), float(places[top])
 
 
 class Crossing(Observable):
@@ -199,7 +205,7 @@ class CrossingMeter(Meter):
         times, flux = self.flux.thinned(1)
         if positive_part(times, -flux) > ONE_WAY:
             return []  # things go to and fro here: there is no before and after
-        coming, beyond, write = self._coming(), 1 - self.first_inside, self.bench.units.write
+        coming, beyond, write = self._coming(), 1 - self.first_inside, self.bench.units.rounded
         late = write(2 * times[-1] - times[0], "time")
         behind = write(self.bench.axis.low if self.forward < 0 else self.bench.axis.high, "length")
         return [

@@ -101,8 +101,7 @@ class TransmissionMeter(Meter):
             T=transmitted / in_flux,
             R=-forward * _flux(returning, mass) / in_flux,
             phase=np.angle(at_detector[0] / free),
-            phase_time=(at_detector[2] / at_detector[0]).real
-            - forward * (self.places[0] - came.centre) / velocity,
+            phase_time=(at_detector[2] / at_detector[0]).real - forward * (self.places[0] - came.centre) / velocity,
             returned=np.abs(back) * np.sqrt(out / mass / in_flux),
             again=np.abs(returning[0] + returning[1] / (1j * forward * k)) / 2 / np.abs(free),
         )
@@ -116,9 +115,7 @@ class TransmissionMeter(Meter):
             Column("T", "number", "transmitted over incident flux"),
             Column("R", "number", f"reflected over incident flux, at {self._shown(self.places[1])}"),
             Column("phase", "angle", "phase at the detector against the packet without potential"),
-            Column(
-                "phase_time", "time", "hbar d(phase)/d(energy): delay against the packet without potential"
-            ),
+            Column("phase_time", "time", "hbar d(phase)/d(energy): delay against the packet without potential"),
             Column("weight", "number", "density of the packet's wave number, over its largest value"),
         )
         rows = np.stack([self.energies, flow.T, flow.R, phase, flow.phase_time, weight], axis=1)
@@ -131,9 +128,7 @@ class TransmissionMeter(Meter):
         """Energies close enough to see every peak that the run is long enough to show."""
         low, high = float(self.energies[0]), float(self.energies[-1])
         needed = PER_RESOLUTION * (high - low) * (self.ended - self.bench.start) / (2 * np.pi)
-        return np.linspace(
-            low, high, int(np.clip(needed, len(self.energies), max(FINEST, len(self.energies))))
-        )
+        return np.linspace(low, high, int(np.clip(needed, len(self.energies), max(FINEST, len(self.energies)))))
 
     def peaks(self, stride: int = 1) -> list[Peak]:
         return find_peaks(lambda e: self.flow(e, stride=stride)[0].T, self._scan(), self.asked.peaks)
@@ -178,9 +173,7 @@ class TransmissionMeter(Meter):
             if peak.width is not None:
                 change = abs(near.width - peak.width) if near.width is not None else peak.width
                 errors[width] = {"run length": change}
-                errors[lifetime] = {
-                    "run length": change / peak.width / max(peak.width - change, peak.width / 10)
-                }
+                errors[lifetime] = {"run length": change / peak.width / max(peak.width - change, peak.width / 10)}
         return errors
 
     def _completed(self, peak: Peak) -> Peak:
@@ -202,9 +195,7 @@ class TransmissionMeter(Meter):
         change = np.fmax(np.abs(late.T - flow.T), np.abs(late.R - flow.R))
         largest = float(np.nanmax(change[heavy], initial=0.0))
         held = np.isfinite(flow.T)
-        apart = (
-            float(np.average(np.abs(1 - flow.R - flow.T)[held], weights=weight[held])) if held.any() else 0.0
-        )
+        apart = float(np.average(np.abs(1 - flow.R - flow.T)[held], weights=weight[held])) if held.any() else 0.0
         advice = f"set `evolve.until` to at least {self.bench.units.rounded(self._until(largest), 'time')}"
         name = self.asked.name
         return [

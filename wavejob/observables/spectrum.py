@@ -39,9 +39,7 @@ class Spectrum(Observable):
     """
 
     name: Name = Field("spectrum", description="name in the outputs")
-    lines: Annotated[int, Field(ge=1, le=400)] = Field(
-        1, description="how many lines are listed, from the lowest on"
-    )
+    lines: Annotated[int, Field(ge=1, le=400)] = Field(1, description="how many lines are listed, from the lowest on")
     weight_above: Lightest = Field(1e-3, description="probability from which on a line is listed")
     resolution: PositiveEnergy | None = Field(
         None, description="lines this far apart must be told apart: a run that is too short is refused"
@@ -124,9 +122,7 @@ class SpectrumMeter(Meter):
 
     def _lines(self, stride: int = 1) -> Lines:
         signal = self._signal(stride)
-        reach = self.sigma / math.sqrt(
-            self.asked.weight_above
-        )  # no line of this weight is farther (Chebyshev)
+        reach = self.sigma / math.sqrt(self.asked.weight_above)  # no line of this weight is farther (Chebyshev)
         margin = resolution(signal.duration)
         low = max(self.bottom, self.mean - reach) - margin
         high = min(self.mean + reach + margin, low + 0.98 * 2 * np.pi / signal.spacing)
@@ -148,9 +144,7 @@ class SpectrumMeter(Meter):
     def notes(self) -> dict[str, str]:
         count, name = len(self.found.energies), self.asked.name
         said = f"the packet holds only {count} lines of weight above {self.asked.weight_above:g}"
-        return {
-            f"{name}.{kind}[{i}]": said for i in range(count, self.asked.lines) for kind in ("line", "weight")
-        }
+        return {f"{name}.{kind}[{i}]": said for i in range(count, self.asked.lines) for kind in ("line", "weight")}
 
     def own_errors(self) -> dict[str, dict[str, float]]:
         """What the shape of each line allows it to be beside one line."""

@@ -71,9 +71,7 @@ class Transmission(Observable):
             for i in range(self.peaks)
             for column in (
                 Column(f"{self.name}.peak[{i}].energy", "energy", f"energy of the top of peak {i} of T"),
-                Column(
-                    f"{self.name}.peak[{i}].width", "energy", f"full width of peak {i} at half its height"
-                ),
+                Column(f"{self.name}.peak[{i}].width", "energy", f"full width of peak {i} at half its height"),
                 Column(f"{self.name}.peak[{i}].lifetime", "time", f"hbar over the width of peak {i}"),
             )
         )
@@ -88,9 +86,7 @@ class Transmission(Observable):
 
     def unfit(self, bench: Bench, psi: Array) -> tuple[str, str, str] | None:
         if bench.hamiltonian.depends_on_time:
-            said = (
-                "the potential changes in time: energy is not conserved, and a flux belongs to no one energy"
-            )
+            said = "the potential changes in time: energy is not conserved, and a flux belongs to no one energy"
             return "energies", said, "drop `in_time`, `path` and t, or use `crossing`"
         approach = Approach(bench, psi, self.x)
         return (

@@ -75,15 +75,11 @@ def side_tick(
     mark = sheet.line([x, x + outward], [y, y], QUIET, 1, moving=moving)
     align = "left" if right else "right"
     place = x + outward + (3 if right else -3)
-    words = sheet.text(
-        place, y, label, font, align=align, upright="center_baseline", colour=QUIET, moving=moving
-    )
+    words = sheet.text(place, y, label, font, align=align, upright="center_baseline", colour=QUIET, moving=moving)
     return [mark, words]
 
 
-def side_name(
-    sheet: Sheet, panel: Panel, said: str, font: float, *, room: float, right: bool = False
-) -> None:
+def side_name(sheet: Sheet, panel: Panel, said: str, font: float, *, room: float, right: bool = False) -> None:
     rect = panel.rect
     pixels = sheet.shrink(said, font, rect.height, SMALLEST_LABEL)
     x = rect.right + room + 1.4 * font if right else rect.left - room - 0.7 * font

@@ -17,9 +17,7 @@ from .sheet import Panel, Sheet
 Array = np.ndarray
 
 
-def paint_carpet(
-    sheet: Sheet, scene: Scene, panel: Panel, scale: CarpetScale, fine: float, pixels: Array
-) -> None:
+def paint_carpet(sheet: Sheet, scene: Scene, panel: Panel, scale: CarpetScale, fine: float, pixels: Array) -> None:
     """Density, detectors and classical path of all times, into `pixels` of the sheet (height, width, 4)."""
     rect = panel.rect
     columns = Columns(scene.x, panel.x_low, panel.x_high, rect.width).mean(scene.density)
@@ -40,9 +38,7 @@ def paint_curves(sheet: Sheet, times: Array, panel: Panel, chosen: Choices, fine
         sheet.paint(sheet.line(x, panel.down(times), colour, 1.8 * fine, dash=dash, moving=True))
 
 
-def draw_time_axes(
-    sheet: Sheet, scene: Scene, carpet: Panel, chances: Panel | None, font: float, room: float
-) -> None:
+def draw_time_axes(sheet: Sheet, scene: Scene, carpet: Panel, chances: Panel | None, font: float, room: float) -> None:
     """x, time and probability around carpet and curves; `room` is that of the numbers on the left."""
     bottom_axis(sheet, carpet, font, "x", scene.length_label)
     side_axis(sheet, carpet, font, "time", scene.time_label, room=room)
@@ -56,15 +52,12 @@ def draw_time_axes(
 class Now:
     """The line at the present time through carpet and probabilities, and a mark on each curve."""
 
-    def __init__(
-        self, sheet: Sheet, carpet: Panel, chances: Panel | None, chosen: Choices, fine: float
-    ) -> None:
+    def __init__(self, sheet: Sheet, carpet: Panel, chances: Panel | None, chosen: Choices, fine: float) -> None:
         self.sheet, self.chances = sheet, chances
         rects = [carpet.rect] if chances is None else [carpet.rect, chances.rect]
         self.lines = [sheet.line([r.left, r.right], [r.top] * 2, INK, 1, moving=True) for r in rects]
         self.drawn = [
-            np.asarray(values) * 10.0**power
-            for (_, values), power in zip(chosen.curves, chosen.powers, strict=True)
+            np.asarray(values) * 10.0**power for (_, values), power in zip(chosen.curves, chosen.powers, strict=True)
         ]
         self.marks: list[Line2D] = [
             sheet.line([], [], colour, 7 * fine, marker=marker, moving=True)

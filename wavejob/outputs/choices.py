@@ -214,29 +214,21 @@ def largest_of(values: Array) -> float:
     return float(np.max(np.abs(values[np.isfinite(values)]), initial=0.0))
 
 
-def close_up(
-    scene: Scene, view: tuple[float, float], energies: tuple[float, float]
-) -> tuple[float, float] | None:
+def close_up(scene: Scene, view: tuple[float, float], energies: tuple[float, float]) -> tuple[float, float] | None:
     """The neighbourhood of a structure that is a hairline in the view; None where there is no such structure.
 
     It is the narrowest stretch that holds nearly all changes of the potential beyond an even slope.
     A single step, or the wall of a well, is none: there the potential does not come back.
     """
     edges = np.linspace(*view, 1601)
-    change = np.max(
-        [_changes(*scene.potential_at(f), edges, energies) for f in _some_frames(scene, 12)], axis=0
-    )
+    change = np.max([_changes(*scene.potential_at(f), edges, energies) for f in _some_frames(scene, 12)], axis=0)
     excess = np.maximum(change - 3 * np.median(change), 0)
     if excess.sum() < 0.1 * (energies[1] - energies[0]):
         return None
     first, last = _narrowest(excess, 0.96)
     width = float(edges[last + 1] - edges[first])
     whole = view[1] - view[0]
-    if (
-        last == first
-        or width > HAIRLINE * whole
-        or not _comes_back(scene, energies, edges[first], edges[last + 1])
-    ):
+    if last == first or width > HAIRLINE * whole or not _comes_back(scene, energies, edges[first], edges[last + 1]):
         return None
     middle = float(edges[first] + edges[last + 1]) / 2
     reach = max((0.5 + CLOSE_UP_MARGIN) * width, 8 * float(scene.x[1] - scene.x[0]))

@@ -39,9 +39,7 @@ def video_encoder() -> str:
     return encoder
 
 
-def write_mp4(
-    path: Path, frame: Frame, frames: int, *, size: tuple[int, int], fps: float, progress: Progress
-) -> None:
+def write_mp4(path: Path, frame: Frame, frames: int, *, size: tuple[int, int], fps: float, progress: Progress) -> None:
     """H.264 in yuv420p with its index at the start. Raises RunError where it can't be encoded or written."""
     encoder = video_encoder()
     raw = ["-f", "rawvideo", "-pix_fmt", "rgba", "-s", f"{size[0]}x{size[1]}", "-r", str(fps), "-i", "-"]
@@ -58,9 +56,7 @@ def write_mp4(
             _find_cause(temporary)
             said.seek(0)
             last = said.read().decode(errors="replace").strip().rpartition("\n")[2]
-            raise RunError(
-                f"could not write `{path}`: the video encoder stopped ({last or 'no reason given'})", CURE
-            )
+            raise RunError(f"could not write `{path}`: the video encoder stopped ({last or 'no reason given'})", CURE)
 
 
 def _started(command: list[str], said: IO[bytes]) -> Popen[bytes]:

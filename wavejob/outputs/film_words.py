@@ -26,9 +26,7 @@ def time_numbers(times: Array) -> Numbers:
         return numbers_for(float(np.abs(times).max()), 0.0)
     step = float(np.diff(times).min())
     numbers = numbers_for(float(np.abs(times).max()), step)
-    if numbers.decimals is None or np.allclose(
-        times, np.round(times, numbers.decimals), rtol=0, atol=1e-6 * step
-    ):
+    if numbers.decimals is None or np.allclose(times, np.round(times, numbers.decimals), rtol=0, atol=1e-6 * step):
         return numbers
     return numbers_for(float(np.abs(times).max()), step / 10)
 
@@ -62,9 +60,7 @@ Stretch = tuple[float, float] | None
 
 def place_names(scene: Scene, panel: Panel, *, within: Stretch = None, beyond: Stretch = None) -> list[Name]:
     """Names of walls and regions in view: those `within` a stretch, or not wholly in one left out."""
-    names = [
-        Name("wall", panel.across(x), POTENTIAL) for x in scene.walls if panel.shows(x) and within is None
-    ]
+    names = [Name("wall", panel.across(x), POTENTIAL) for x in scene.walls if panel.shows(x) and within is None]
     for name, low, high in scene.regions:
         wanted = _inside(low, high, within) if within else not (beyond and _inside(low, high, beyond))
         low, high = max(low, panel.x_low), min(high, panel.x_high)
@@ -98,18 +94,12 @@ def key_items(
     items: list[Wordings] = []
     if phases is not None:
         start, end = Words(f"{MINUS}180\u00b0"), Words("180\u00b0")
-        items.append(
-            ((Words(f"phase{where}"), start, Ramp(phases), end), (Words("phase"), start, Ramp(phases), end))
-        )
+        items.append(((Words(f"phase{where}"), start, Ramp(phases), end), (Words("phase"), start, Ramp(phases), end)))
     items.append(carpet_item(scene, chosen.carpet))
-    items += [
-        ((Stroke(DETECTOR), Words(name.words, soft=True)),) for name in homeless if name.colour == DETECTOR
-    ]
+    items += [((Stroke(DETECTOR), Words(name.words, soft=True)),) for name in homeless if name.colour == DETECTOR]
     if scene.classical_path is not None:
         stroke = Stroke(PATH)
-        items.append(
-            ((stroke, Words("F = m a from the same mean start")), (stroke, Words("F = m a, same start")))
-        )
+        items.append(((stroke, Words("F = m a from the same mean start")), (stroke, Words("F = m a, same start"))))
     said = [energy_text(scene, chosen, frame) for frame in range(scene.frames)]
     now = Words(said[-1]) if last else Words(said[0], widest=max(said, key=len))
     items.append(((Stroke(ENERGY, (0, (4, 2))), Words("mean energy", soft=True), now),))
@@ -147,9 +137,7 @@ def readout_items(chosen: Choices, frame: int | None = None) -> list[Wordings]:
     The value is that of `frame`; without one it changes from frame to frame.
     """
     items: list[Wordings] = []
-    for (label, values), power, (colour, dash, marker) in zip(
-        chosen.curves, chosen.powers, CURVES, strict=False
-    ):
+    for (label, values), power, (colour, dash, marker) in zip(chosen.curves, chosen.powers, CURVES, strict=False):
         number = value_numbers(values)
         said = [number(float(v)) for v in values]
         now = Words(said[0], widest=max(said, key=len)) if frame is None else Words(said[frame])

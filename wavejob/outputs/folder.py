@@ -92,9 +92,7 @@ class RunFolder:
         owner = document(note)
         if not self._is_mine(owner):
             whose = f"job `{owner.get('job')}`" if owner else "something else"
-            raise RunError(
-                f"`{self.path}` belongs to {whose}", "rename one of the jobs, or choose --runs DIR"
-            )
+            raise RunError(f"`{self.path}` belongs to {whose}", "rename one of the jobs, or choose --runs DIR")
 
     def _clear(self, keep: Collection[str]) -> None:
         """Removes this run's files, the manifest first: cut short, the folder counts as unfinished.

@@ -70,9 +70,7 @@ class Placed:
 
 def rows_needed(sheet: Sheet, items: Sequence[Wordings], font: float, width: int) -> int:
     """How many rows the items take in that width."""
-    places = _flow(
-        [item_width(sheet, _fitting(sheet, item, font, width), font) for item in items], font, width
-    )
+    places = _flow([item_width(sheet, _fitting(sheet, item, font, width), font) for item in items], font, width)
     return max((row for row, _ in places), default=-1) + 1
 
 
@@ -119,17 +117,13 @@ def _flow(widths: Sequence[float], font: float, width: int) -> list[tuple[int, f
 
 def _width(sheet: Sheet, piece: Piece, font: float) -> float:
     if isinstance(piece, Words):
-        return max(
-            sheet.measure(piece.text, font), sheet.measure(piece.widest, font) if piece.widest else 0.0
-        )
+        return max(sheet.measure(piece.text, font), sheet.measure(piece.widest, font) if piece.widest else 0.0)
     if isinstance(piece, Ramp):
         return (RAMP if piece.long else SMALL_RAMP) * font
     return SAMPLE * font
 
 
-def _draw_item(
-    sheet: Sheet, item: Item, font: float, x: float, middle: float, too_wide: float
-) -> Text | None:
+def _draw_item(sheet: Sheet, item: Item, font: float, x: float, middle: float, too_wide: float) -> Text | None:
     """Draws the pieces side by side, `middle` being the pixel row of their middle; the changing text."""
     moving = None
     for piece in item:
@@ -149,13 +143,9 @@ def _draw_item(
 def _draw_sample(sheet: Sheet, piece: Ramp | Stroke | Hatch, box: Rect) -> None:
     middle = (box.top + box.bottom) / 2
     if isinstance(piece, Stroke):
-        sheet.line(
-            [box.left, box.right], [middle, middle], piece.colour, 0.16 * box.height + 0.6, dash=piece.dash
-        )
+        sheet.line([box.left, box.right], [middle, middle], piece.colour, 0.16 * box.height + 0.6, dash=piece.dash)
         if piece.marker:
-            sheet.line(
-                [(box.left + box.right) / 2], [middle], piece.colour, 0.7 * box.height, marker=piece.marker
-            )
+            sheet.line([(box.left + box.right) / 2], [middle], piece.colour, 0.7 * box.height, marker=piece.marker)
     elif isinstance(piece, Hatch):
         sheet.rectangle(box, piece.colour, hatch=piece.hatch)
     else:

@@ -54,16 +54,10 @@ def _free_spot(
     lefts = [name.x + GAP, name.x - GAP - width] if name.beside else [name.x - width / 2]
     for row, spots in enumerate(taken):
         line_passes = not name.beside or all(
-            right <= name.x - 1.5 or left >= name.x + 1.5
-            for lower in taken[: row + 1]
-            for left, right in lower
+            right <= name.x - 1.5 or left >= name.x + 1.5 for lower in taken[: row + 1] for left, right in lower
         )
         for left in lefts:
             inside = span[0] <= left and left + width <= span[1]
-            if (
-                inside
-                and line_passes
-                and all(right <= left or start >= left + width for start, right in spots)
-            ):
+            if inside and line_passes and all(right <= left or start >= left + width for start, right in spots):
                 return row, left
     return None

@@ -78,9 +78,7 @@ class Overview:
             sheet.text(LEFT, first + number * 1.2 * size, words, size, bold=True)
         said = sheet.fit(scene.subtitle, FONT, RIGHT - LEFT - 2 * FONT)
         sheet.text(LEFT, 42 + 1.9 * FONT, said, FONT, colour=QUIET)
-        sheet.text(
-            RIGHT, 42, sheet.fit(film_words.run_line(scene), 18, RIGHT_WIDTH, bold=True), 18, bold=True
-        )
+        sheet.text(RIGHT, 42, sheet.fit(film_words.run_line(scene), 18, RIGHT_WIDTH, bold=True), 18, bold=True)
 
     def _draw_stage(self) -> None:
         sheet, scene, chosen = self.sheet, self.scene, self.chosen

@@ -135,14 +135,10 @@ def draw_places(sheet: Sheet, scene: Scene, panel: Panel, fine: float) -> None:
 
 def _columns_of(panel: Panel, low: float, high: float) -> tuple[int, int]:
     left, right = np.clip(panel.across(np.array([low, high])), panel.rect.left, panel.rect.right).round()
-    return int(left), max(int(right), int(left) + 1) if panel.x_low <= high and low <= panel.x_high else int(
-        left
-    )
+    return int(left), max(int(right), int(left) + 1) if panel.x_low <= high and low <= panel.x_high else int(left)
 
 
-def draw_detectors(
-    sheet: Sheet, scene: Scene, panel: Panel, fine: float, *, edged: bool = False
-) -> list[Artist]:
+def draw_detectors(sheet: Sheet, scene: Scene, panel: Panel, fine: float, *, edged: bool = False) -> list[Artist]:
     """Detector planes of a panel, to be painted; `edged` ones stand out from a dark carpet."""
     rect = panel.rect
     lines: list[Artist] = []
@@ -150,8 +146,6 @@ def draw_detectors(
         styles = [(PAPER, 3.6), (DETECTOR, 1.8)] if edged else [(DETECTOR, 1.3)]
         for colour, width in styles:
             lines.append(
-                sheet.line(
-                    [place, place], [rect.top, rect.bottom], colour, width * fine, within=rect, moving=True
-                )
+                sheet.line([place, place], [rect.top, rect.bottom], colour, width * fine, within=rect, moving=True)
             )
     return lines

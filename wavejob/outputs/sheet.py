@@ -73,9 +73,7 @@ class Panel:
 @contextmanager
 def plain_matplotlib() -> Iterator[None]:
     """matplotlib as it comes, whatever the user's own settings; letters the font lacks are no warning."""
-    defaults = {
-        k: v for k, v in matplotlib.rcParamsDefault.items() if not k.startswith(("backend", "interactive"))
-    }
+    defaults = {k: v for k, v in matplotlib.rcParamsDefault.items() if not k.startswith(("backend", "interactive"))}
     with warnings.catch_warnings(), matplotlib.rc_context(defaults):
         warnings.filterwarnings("ignore", message="Glyph .* missing from")
         warnings.filterwarnings("ignore", message="Matplotlib currently does not support")

@@ -34,9 +34,7 @@ def draw_stage_axes(
     spine(sheet, panel)
     beside = [density] if below is None else [density, side_ticks(below, font)]
     left_room = max(numbers_room(sheet, shown, font) for shown in beside)
-    side_name(
-        sheet, panel, axis_label("density", per(scene.length_label), density.power), font, room=left_room
-    )
+    side_name(sheet, panel, axis_label("density", per(scene.length_label), density.power), font, room=left_room)
     right_room = numbers_room(sheet, side_ticks(panel, font), font)
     side_axis(sheet, panel, font, "potential", scene.energy_label, room=right_room, right=True)
     sheet.line([rect.left, rect.right], [rect.bottom, rect.bottom], QUIET, 1)
@@ -68,9 +66,7 @@ class DensityAxis:
         self.moves = bool(np.ptp(packet.base) > 0)
         base = packet.base[0]
         rows = zip(self.steps, shown.labels, strict=True)
-        self.marks = [
-            side_tick(sheet, packet.panel, base - s, label, font, moving=self.moves) for s, label in rows
-        ]
+        self.marks = [side_tick(sheet, packet.panel, base - s, label, font, moving=self.moves) for s, label in rows]
         if not self.moves:
             self._show(0)
 

@@ -43,13 +43,9 @@ def stage(record: Record) -> Scene:
         layers=_layers(plan, length),
         walls=(plan.axis.low * length, plan.axis.high * length) if plan.axis.transform == "sine" else (),
         detectors=tuple(
-            (o.name, o.x * length, "+" if o.toward == "+x" else "-")
-            for o in job.observables
-            if isinstance(o, Crossing)
+            (o.name, o.x * length, "+" if o.toward == "+x" else "-") for o in job.observables if isinstance(o, Crossing)
         ),
-        regions=tuple(
-            (o.name, o.start * length, o.stop * length) for o in job.observables if isinstance(o, Inside)
-        ),
+        regions=tuple((o.name, o.start * length, o.stop * length) for o in job.observables if isinstance(o, Inside)),
         probabilities=_probabilities(record, times),
         classical_path=_classical(record, times),
         view=None,
@@ -106,10 +102,7 @@ def drawn_potential(plan: Plan, times: Array) -> tuple[Array, Array]:
     rows_x, rows_v = [], []
     for t in when:
         edges = [
-            p
-            for term in landscape.terms
-            if term.shape.breaks
-            for p in term.shape.breaks.positions + term.shift(t)
+            p for term in landscape.terms if term.shape.breaks for p in term.shape.breaks.positions + term.shift(t)
         ]
         places = np.array([p for p in edges if axis.low < p < axis.high])
         x = np.sort(np.concatenate([even, places - tiny, places + tiny]))

@@ -149,9 +149,7 @@ def heading(name: str, unit: str) -> str:
     return f"{name} [{unit}]" if unit else name
 
 
-def _write_table(
-    path: Path, columns: Sequence[Column], rows: Array, units: Units, errors: Mapping[str, Array]
-) -> None:
+def _write_table(path: Path, columns: Sequence[Column], rows: Array, units: Units, errors: Mapping[str, Array]) -> None:
     header: list[str] = []
     table: list[list[float]] = []
     for column, values in zip(columns, rows.T, strict=True):

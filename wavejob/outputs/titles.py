@@ -6,9 +6,7 @@ from .sheet import Sheet
 from .wording import clean
 
 
-def broken_into_lines(
-    sheet: Sheet, words: str, sizes: tuple[float, float], width: float
-) -> tuple[list[str], float]:
+def broken_into_lines(sheet: Sheet, words: str, sizes: tuple[float, float], width: float) -> tuple[list[str], float]:
     """A bold title whole on one line or two, as large as `sizes` (largest, smallest) allow.
 
     Two lines are preferred to one below four fifths of the largest size. Only a title that does not fit

@@ -10,9 +10,7 @@ import numpy as np
 
 Array = np.ndarray
 
-SUPERSCRIPTS = str.maketrans(
-    "-0123456789", "\u207b\u2070\u00b9\u00b2\u00b3\u2074\u2075\u2076\u2077\u2078\u2079"
-)
+SUPERSCRIPTS = str.maketrans("-0123456789", "\u207b\u2070\u00b9\u00b2\u00b3\u2074\u2075\u2076\u2077\u2078\u2079")
 MINUS = "\u2212"
 MOST_DECIMALS = 12  # of a tick: told apart on the finest axis there is
 

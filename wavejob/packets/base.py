@@ -70,6 +70,4 @@ def normalised(psi: Array, axis: Axis) -> Array:
 
 def waves(x: Array, at: float, sigma: float, k: float) -> Array:
     """A Gaussian packet with standard deviation `sigma` of |psi|^2 and mean wave number `k`."""
-    return np.asarray(
-        (2 * np.pi * sigma**2) ** -0.25 * np.exp(-(((x - at) / (2 * sigma)) ** 2) + 1j * k * (x - at))
-    )
+    return np.asarray((2 * np.pi * sigma**2) ** -0.25 * np.exp(-(((x - at) / (2 * sigma)) ** 2) + 1j * k * (x - at)))

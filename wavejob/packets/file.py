@@ -65,9 +65,7 @@ def _final_state(path: Path, written: str) -> tuple[Array, Array, str]:
     try:
         with h5py.File(path, "r") as file:
             x, psi = file["x"], file["psi"]
-            fits = (
-                x.ndim == 1 and psi.ndim in (2, 3) and psi.shape[-2:] == (x.size, 2) and x.size >= FEWEST_ROWS
-            )
+            fits = x.ndim == 1 and psi.ndim in (2, 3) and psi.shape[-2:] == (x.size, 2) and x.size >= FEWEST_ROWS
             last = np.asarray((psi[-1] if psi.ndim == 3 else psi) if fits else [[0.0, 0.0]], dtype=float)
             unit = x.attrs.get("units", "")
             places = np.asarray(x, dtype=float)
@@ -76,9 +74,7 @@ def _final_state(path: Path, written: str) -> tuple[Array, Array, str]:
             f"`{written}` is no fields file with `psi` on an axis `x`", "name the fields.nc of a finished run"
         ) from None
     if not fits:
-        raise refuse(
-            f"`{written}` does not hold a field on one axis", "name the fields.nc of a run with one axis"
-        )
+        raise refuse(f"`{written}` does not hold a field on one axis", "name the fields.nc of a run with one axis")
     return places, last[:, 0] + 1j * last[:, 1], unit.decode() if isinstance(unit, bytes) else str(unit)
 
 

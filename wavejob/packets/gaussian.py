@@ -26,9 +26,7 @@ from ..potentials.base import Toward, sign
 from .base import Array, Packet, PacketError, Surroundings, normalised, waves
 
 LEAST_LEFT = 1e-10  # of the probabilities of a sum's packets, below which they are said to cancel
-ROOM = (
-    6.0  # standard deviations a packet needs on both sides, in place and in wave number: 2e-9 is left outside
-)
+ROOM = 6.0  # standard deviations a packet needs on both sides, in place and in wave number: 2e-9 is left outside
 
 
 class GaussianPacket(Packet):
@@ -46,11 +44,7 @@ class GaussianPacket(Packet):
 
     @model_validator(mode="after")
     def _one_motion(self) -> GaussianPacket:
-        given = [
-            name
-            for name in ("energy", "wavenumber", "momentum", "velocity")
-            if getattr(self, name) is not None
-        ]
+        given = [name for name in ("energy", "wavenumber", "momentum", "velocity") if getattr(self, name) is not None]
         if len(given) > 1:
             listed = " and ".join(f"`{name}`" for name in given)
             raise refuse(f"{listed} each set the motion of the packet", "keep one of them", at=given[1])
@@ -86,9 +80,7 @@ def overlaps(packets: Sequence[GaussianPacket], mass: float) -> Array:
     # Phases are counted from the first packet of a pair, which keeps them small.
     middle = -narrow * apart / total
     phase = turning * middle + k * apart
-    size = np.sqrt(2 * np.sqrt(product) / total) * np.exp(
-        -product / total * apart**2 - turning**2 / (4 * total)
-    )
+    size = np.sqrt(2 * np.sqrt(product) / total) * np.exp(-product / total * apart**2 - turning**2 / (4 * total))
     return np.asarray(size * np.exp(1j * phase))
 
 
@@ -125,9 +117,7 @@ class SumPacket(Packet):
     def amplitudes(self) -> Array:
         """Complex amplitudes of the packets, the largest of modulus 1."""
         weights = np.array([part.weight for part in self.parts])
-        return np.asarray(
-            weights / np.abs(weights).max() * np.exp(1j * np.array([part.phase for part in self.parts]))
-        )
+        return np.asarray(weights / np.abs(weights).max() * np.exp(1j * np.array([part.phase for part in self.parts])))
 
     def field(self, axis: Axis, surroundings: Surroundings) -> Array:
         total = np.zeros(axis.points, complex)
@@ -140,9 +130,7 @@ class SumPacket(Packet):
         amplitudes = self.amplitudes
         norm = (amplitudes.conj() @ overlaps([part.gaussian for part in self.parts], mass) @ amplitudes).real
         if not norm > LEAST_LEFT * np.sum(np.abs(amplitudes) ** 2):
-            raise PacketError(
-                "the packets of the sum cancel each other", "change a weight, a phase or a packet"
-            )
+            raise PacketError("the packets of the sum cancel each other", "change a weight, a phase or a packet")
 
     def extent(self) -> tuple[float, float]:
         extents = [part.gaussian.extent() for part in self.parts]

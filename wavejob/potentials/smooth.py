@@ -227,6 +227,4 @@ class SoftCoulomb(Potential):
         def away(x: Array) -> Array:
             return np.asarray(np.hypot(x - self.at, self.softening))
 
-        return Shape(
-            lambda x, t: self.strength / away(x), lambda x, t: -self.strength * (x - self.at) / away(x) ** 3
-        )
+        return Shape(lambda x, t: self.strength / away(x), lambda x, t: -self.strength * (x - self.at) / away(x) ** 3)

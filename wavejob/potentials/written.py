@@ -20,9 +20,7 @@ Array = np.ndarray
 class Columns(Model):
     """Units of a table's columns."""
 
-    x: Annotated[str | None, unit_of("length")] = Field(
-        None, description="unit of the first column", examples=["nm"]
-    )
+    x: Annotated[str | None, unit_of("length")] = Field(None, description="unit of the first column", examples=["nm"])
     value: Annotated[str | None, unit_of("energy")] = Field(
         None, description="unit of the second column", examples=["meV"]
     )
@@ -94,4 +92,3 @@ class FormulaPotential(Potential):
             return np.broadcast_to(np.asarray(derivative) * energy / length, np.shape(x))
 
         return Shape(value, slope, moves="t" in formula.used)
-

@@ -50,9 +50,7 @@ class Dimension:
         """The same in base units: energy is mass length^2 / time^2, hbar is energy times time."""
         length, time, energy, hbar, charge = self.powers
         mass = energy + hbar
-        return Vector(
-            length + 2 * mass, mass, time - 2 * energy - hbar, charge, self.kelvin, self.angle, self.cycle
-        )
+        return Vector(length + 2 * mass, mass, time - 2 * energy - hbar, charge, self.kelvin, self.angle, self.cycle)
 
 
 DIMENSIONS = {
@@ -61,13 +59,9 @@ DIMENSIONS = {
     "length": Dimension("a length", "5 nm", Powers(length=1)),
     "time": Dimension("a time", "5 fs", Powers(time=1)),
     "energy": Dimension("an energy", "5 meV", Powers(energy=1), ("energy", "wavenumber", "temperature")),
-    "mass": Dimension(
-        "a mass", "0.067 electron_mass", Powers(length=-2, time=1, hbar=1), printed="electron_mass"
-    ),
+    "mass": Dimension("a mass", "0.067 electron_mass", Powers(length=-2, time=1, hbar=1), printed="electron_mass"),
     "charge": Dimension("a charge", "-1 e", Powers(charge=1), printed="e"),
-    "wavenumber": Dimension(
-        "a wave number", "0.5 1/nm", Powers(length=-1), ("wavenumber", "angular_wavenumber")
-    ),
+    "wavenumber": Dimension("a wave number", "0.5 1/nm", Powers(length=-1), ("wavenumber", "angular_wavenumber")),
     "angular_wavenumber": Dimension("a wave number", "0.5 rad/nm", Powers(length=-1), angle=1),
     "momentum": Dimension("a momentum", "0.5 hbar/nm", Powers(length=-1, hbar=1)),
     "velocity": Dimension("a velocity", "0.1 nm/fs", Powers(length=1, time=-1)),
@@ -77,9 +71,7 @@ DIMENSIONS = {
         "an angular frequency", "0.03 rad/fs", Powers(time=-1), ("angular_frequency", "rate"), angle=1
     ),
     "acceleration": Dimension("an acceleration", "9.81 m/s^2", Powers(length=1, time=-2)),
-    "electric_field": Dimension(
-        "an electric field", "2 V/um", Powers(length=-1, energy=1, charge=-1), printed="V/m"
-    ),
+    "electric_field": Dimension("an electric field", "2 V/um", Powers(length=-1, energy=1, charge=-1), printed="V/m"),
     "force": Dimension("a force", "1 meV/nm", Powers(length=-1, energy=1)),
     "slope": Dimension("an energy per length", "1 meV/nm", Powers(length=-1, energy=1), ("force",)),
     "stiffness": Dimension("an energy per squared length", "1 meV/nm^2", Powers(length=-2, energy=1)),

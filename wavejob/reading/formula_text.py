@@ -88,9 +88,7 @@ class _Token(NamedTuple):
 def read(text: str, names: frozenset[str]) -> tuple[Step, ...]:
     """The steps of the formula `text` over `names`. Raises FormulaError."""
     if len(text) > MAX_LENGTH:
-        raise FormulaError(
-            f"the formula is longer than {MAX_LENGTH} characters", "use a table instead", MAX_LENGTH
-        )
+        raise FormulaError(f"the formula is longer than {MAX_LENGTH} characters", "use a table instead", MAX_LENGTH)
     parser = _Parser(_tokens(text), names)
     if parser.next.kind == "end":
         raise FormulaError("the formula is empty", "write a number or an expression such as `2*x**2`")
@@ -107,9 +105,7 @@ def _tokens(text: str) -> list[_Token]:
         found = _TOKEN.match(text, column)
         if not found:
             sign = text[column]
-            shown = (
-                f"`{sign}`" if sign.isascii() and sign.isprintable() else f"the character U+{ord(sign):04X}"
-            )
+            shown = f"`{sign}`" if sign.isascii() and sign.isprintable() else f"the character U+{ord(sign):04X}"
             raise FormulaError(f"{shown} has no meaning in a formula", _ADVICE.get(sign, _CONTENT), column)
         if found.lastgroup != "space":
             tokens.append(_Token(str(found.lastgroup), found.group(), column))
@@ -146,9 +142,7 @@ class _Parser:
         token = self.next
         before = self.tokens[self.at - 1] if self.at else None
         if token.kind == "end":
-            return FormulaError(
-                "the formula ends too early", "complete it, or close its brackets", token.column
-            )
+            return FormulaError("the formula ends too early", "complete it, or close its brackets", token.column)
         if token.text == ",":
             fix = "write a decimal point, as in `1.5`; commas stand between the arguments of a function"
             return FormulaError("a comma may not stand here", fix, token.column)
@@ -264,9 +258,7 @@ class _Parser:
         wanted = len(FUNCTIONS[name].partials)
         if given != wanted:
             fix = f"give it {wanted}" + (": condition, value, other value" if name == "where" else "")
-            raise FormulaError(
-                f"`{name}` takes {wanted} argument{'s' * (wanted > 1)}, not {given}", fix, column
-            )
+            raise FormulaError(f"`{name}` takes {wanted} argument{'s' * (wanted > 1)}, not {given}", fix, column)
         self.push("apply", name, column)
 
     def near(self, name: str) -> str:

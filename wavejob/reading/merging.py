@@ -89,18 +89,14 @@ def read_with_bases(path: Path, shown: str, tree: JobTree, trust: bool = False) 
         if not isinstance(doc.value, dict):
             place = doc.place(())
             said = "a job file is a mapping of keys"
-            raise JobFileError(
-                [Problem(said, "see `wavejob new FILE`", place=place, source=doc.source(place))]
-            )
+            raise JobFileError([Problem(said, "see `wavejob new FILE`", place=place, source=doc.source(place))])
         if "based_on" not in doc.value:
             break
         at = doc.place(("based_on",))
         try:
             written = doc.value["based_on"]
             if not isinstance(written, str):
-                raise PathError(
-                    f"{nicely(written)} is no path", "write the path of one file, relative to this one"
-                )
+                raise PathError(f"{nicely(written)} is no path", "write the path of one file, relative to this one")
             base = tree.inside(written, here, trust=trust)
         except PathError as error:
             raise _at(doc, at, error.message, error.fix) from None
@@ -192,12 +188,7 @@ def _displaced(base: dict[str, Any], top: dict[str, Any], path: tuple[str, ...])
         return set() if kinds <= base.keys() else base.keys() - KINDS[path]
     for pattern, sets in ALTERNATIVES.items():
         if len(pattern) == len(path) and all(p in ("*", key) for p, key in zip(pattern, path, strict=True)):
-            return {
-                key
-                for keys in sets
-                if any(s & top.keys() for s in sets if s != keys)
-                for key in keys - top.keys()
-            }
+            return {key for keys in sets if any(s & top.keys() for s in sets if s != keys) for key in keys - top.keys()}
     return set()
 
 
@@ -207,9 +198,7 @@ def name_of(item: Any) -> str | None:
         return None
     if isinstance(item.get("name"), str):
         return str(item["name"])
-    inner = [
-        body["name"] for body in item.values() if isinstance(body, dict) and isinstance(body.get("name"), str)
-    ]
+    inner = [body["name"] for body in item.values() if isinstance(body, dict) and isinstance(body.get("name"), str)]
     return str(inner[0]) if inner else None
 
 

@@ -60,9 +60,7 @@ class Units:
         given = {kind: _base_unit(kind, unit) for kind, unit in (system or {}).items()}
         return cls("file", **(_PRINTED | given), stated=frozenset(given))
 
-    def read(
-        self, value: str | int | float, dimension: str, names: Mapping[str, Named] | None = None
-    ) -> float:
+    def read(self, value: str | int | float, dimension: str, names: Mapping[str, Named] | None = None) -> float:
         """The quantity `value` of a job file in inside units; it may use `names`. Raises QuantityError."""
         total = math.fsum(self._amount(term, dimension, names or {}) for term in terms(value))
         if not math.isfinite(total):
@@ -111,9 +109,7 @@ class Units:
         if kind.printed and (self.system == "file" or dimension != "electric_field"):
             return kind.printed
         if self.system == "atomic":  # whose unit of time has no name but hbar/hartree
-            powers = Powers(
-                powers.length, 0, powers.energy - powers.time, powers.hbar + powers.time, powers.charge
-            )
+            powers = Powers(powers.length, 0, powers.energy - powers.time, powers.hbar + powers.time, powers.charge)
         top = "K" if kind.kelvin else "rad" if kind.angle else ""
         return _spell(powers, self, top)
 
@@ -164,9 +160,7 @@ class Units:
     def _measured(self, term: Term, names: Mapping[str, Named]) -> Named:
         """A number with a unit, in inside units."""
         if self.system == "natural":
-            raise QuantityError(
-                f"`{term.text}` has a unit, and natural units have none", "write the bare number"
-            )
+            raise QuantityError(f"`{term.text}` has a unit, and natural units have none", "write the bare number")
         for word in unit_words(term.unit):
             if word not in unit_names():
                 raise _unknown_unit(word, term, names)

@@ -56,16 +56,12 @@ class Term:
 def terms(value: str | int | float) -> list[Term]:
     """The terms of which a quantity is the sum, all of them finite. Raises QuantityError."""
     if isinstance(value, bool):
-        raise QuantityError(
-            f"`{'yes' if value else 'no'}` is no quantity", "write a number and a unit, as in `5 nm`"
-        )
+        raise QuantityError(f"`{'yes' if value else 'no'}` is no quantity", "write a number and a unit, as in `5 nm`")
     if not isinstance(value, str):
         number = _finite(value, "the number" if isinstance(value, int) else str(value))
         return [Term(number, f"{number:.12g}")]
     if len(value) > MAX_LENGTH:
-        raise QuantityError(
-            f"the quantity is longer than {MAX_LENGTH} characters", "write a number and a unit"
-        )
+        raise QuantityError(f"the quantity is longer than {MAX_LENGTH} characters", "write a number and a unit")
     if re.search("[0-9]_[0-9]", value):
         raise QuantityError(f"`{value}` has a `_` between digits", "write the digits without it")
     return list(_read(value.strip()))
@@ -116,9 +112,7 @@ def _term(found: re.Match[str], sign: float) -> Term:
         raise QuantityError(f"`{text}` divides by zero", "divide by another number")
     unit = found["unit"] or ""
     if re.search(r"[\^*]-?[0-9]{2}", unit) or re.search(r"[\^*]-?0", unit):
-        raise QuantityError(
-            f"`{unit}` has a power that no unit has", "write a power from 1 to 9, or -1 to -9"
-        )
+        raise QuantityError(f"`{unit}` has a power that no unit has", "write a power from 1 to 9, or -1 to -9")
     if len(unit_words(unit)) > MAX_POWERS:
         raise QuantityError(f"`{unit}` is made of more than {MAX_POWERS} units", "simplify the unit")
     number = _finite(float(found["number"] or 1.0), found["number"] or "")
@@ -150,9 +144,7 @@ def _unreadable(text: str, at: int) -> QuantityError:
         said = f"{shown} holds the character `{strange}` (U+{ord(strange):04X})"
         return QuantityError(said, "write plain letters, the digits 0-9 and plain spaces")
     if re.search(r"[0-9],[0-9]", text):
-        return QuantityError(
-            f"{shown} has a comma", f"write a decimal point, as in `{text.replace(',', '.', 1)}`"
-        )
+        return QuantityError(f"{shown} has a comma", f"write a decimal point, as in `{text.replace(',', '.', 1)}`")
     if re.match(r"[+-]?\s*(inf|nan)", text, re.IGNORECASE):
         return QuantityError(f"{shown} is not a finite number", "write a finite number")
     if "a.u." in text:
@@ -161,9 +153,7 @@ def _unreadable(text: str, at: int) -> QuantityError:
     if re.match(r"\s*/\s*[A-Za-z]", text[at:]):
         return QuantityError(f"{shown} is a number divided by a unit or name", "write it as in `5 1/fs`")
     if at and re.match(r"\s*\*", text[at:]):
-        return QuantityError(
-            f"{shown} has a factor in the wrong place", "write the number first, as in `0.5*b2`"
-        )
+        return QuantityError(f"{shown} has a factor in the wrong place", "write the number first, as in `0.5*b2`")
     rest = text[at:].strip()[:20]
     where = f"from `{rest}` on" if rest and at else "to its end" if at else ""
     said = f"{shown} can't be read {where}".rstrip()

@@ -84,11 +84,7 @@ def _without(value: Any, paths: set[Key]) -> Any:
             below.setdefault(path[0], set()).add(path[1:])
     if isinstance(value, list):
         return [_without(item, below.get(i, set())) for i, item in enumerate(value)]
-    return {
-        key: _without(item, below.get(key, set()))
-        for key, item in value.items()
-        if () not in below.get(key, ())
-    }
+    return {key: _without(item, below.get(key, set())) for key, item in value.items() if () not in below.get(key, ())}
 
 
 def _problem(document: Merged, detail: Any, known: Callable[[Any], list[str]]) -> tuple[Problem, Key]:

@@ -160,9 +160,7 @@ class _Reader:
         """The value that begins with `event`; without a path it is read for its mistakes alone."""
         self.nodes += 1
         if self.nodes > MAX_NODES:
-            self._stop(
-                f"the file holds more than {MAX_NODES} values", "keep data in files of their own", event
-            )
+            self._stop(f"the file holds more than {MAX_NODES} values", "keep data in files of their own", event)
         if depth > MAX_DEPTH:
             self._stop(f"values are nested more than {MAX_DEPTH} deep", "close the brackets earlier", event)
         if path is not None:
@@ -213,9 +211,7 @@ class _Reader:
             event = next(events)
             entries[key] = self._node(event, events, inner, depth + 1)
             if inner is not None and entries[key] is None and event.start_mark.index == event.end_mark.index:
-                self.places[inner] = self._place(
-                    mark
-                )  # of a value left out, the parsers give different marks
+                self.places[inner] = self._place(mark)  # of a value left out, the parsers give different marks
         return entries
 
     def _key(self, event: Any, events: Iterator[Any], path: KeyPath | None, depth: int) -> str | None:
@@ -263,9 +259,7 @@ class _Reader:
         if _NOT_FINITE.fullmatch(text):
             self.add(f"`{text}` is not a finite number", "write a finite number", event.start_mark, path)
         elif _INTEGER.fullmatch(text) or _REAL.fullmatch(text):
-            self.add(
-                f"the number `{_short(text)}` is out of range", "write a smaller one", event.start_mark, path
-            )
+            self.add(f"the number `{_short(text)}` is out of range", "write a smaller one", event.start_mark, path)
         return text
 
     def _stop(self, message: str, fix: str, event: Any) -> NoReturn:
