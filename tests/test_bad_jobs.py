@@ -14,8 +14,9 @@ from pathlib import Path
 
 import pytest
 
+from wavejob.families import load_family
 from wavejob.kinds import NOT_YET
-from wavejob.loading import load, parse
+from wavejob.loading import parse
 from wavejob.plan import make_plan
 from wavejob.problems import JobFileError, Problem
 from wavejob.reading.tree import JobTree
@@ -40,7 +41,8 @@ def refusal(name: str) -> str:
     here = Path.cwd()
     os.chdir(FOLDER.parent)
     try:
-        make_plan(load(FOLDER / f"{name}.yml", JobTree(FOLDER)), memory=ALLOWED)
+        for job in load_family(FOLDER / f"{name}.yml", JobTree(FOLDER)).jobs:
+            make_plan(job, memory=ALLOWED)
     except JobFileError as error:
         return f"{error}\n"
     finally:

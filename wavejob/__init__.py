@@ -16,12 +16,14 @@ from typing import TYPE_CHECKING, Any
 from .version import __version__
 
 if TYPE_CHECKING:
-    from .api import load, open_run, run, simulate
+    from .api import load, load_family, open_run, run, run_family, simulate
     from .problems import JobFileError, RunError
 
-__all__ = ["JobFileError", "RunError", "__version__", "load", "open_run", "run", "simulate"]
+__all__ = [
+    "JobFileError", "RunError", "__version__", "load", "load_family", "open_run", "run", "run_family", "simulate",
+]  # fmt: skip
 
-_HOMES = {name: "api" for name in ("load", "open_run", "run", "simulate")}
+_HOMES = {name: "api" for name in ("load", "load_family", "open_run", "run", "run_family", "simulate")}
 _HOMES |= {name: "problems" for name in ("JobFileError", "RunError")}
 
 

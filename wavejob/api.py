@@ -5,6 +5,7 @@ from __future__ import annotations
 from pathlib import Path
 
 from .evidence.assess import assess
+from .families import Family, load_family
 from .job import Job
 from .loading import load
 from .plan import make_plan
@@ -12,8 +13,9 @@ from .reader import Run, open_run
 from .run import Finished, run_job
 from .simulate import Record
 from .simulate import simulate as simulate_plan
+from .variants import Sweep
 
-__all__ = ["Finished", "Record", "Run", "load", "open_run", "run", "simulate"]
+__all__ = ["Family", "Finished", "Record", "Run", "load", "load_family", "open_run", "run", "run_family", "simulate"]
 
 
 def simulate(job: Job, *, bars: bool = False) -> Record:
@@ -35,3 +37,17 @@ def run(
     """
     folder = job.tree.runs_folder(Path(runs) if runs is not None else None)
     return run_job(job, folder, again=again, bars=bars, film=film)
+
+
+def run_family(
+    family: Family, runs: str | Path | None = None, *, again: bool = False, bars: bool = True, film: bool = True
+) -> list[Finished]:
+    """Carries out every variant of a varied job as `run` does, then writes variants.csv and its pictures."""
+    folder = family.jobs[0].tree.runs_folder(Path(runs) if runs is not None else None)
+    finished = [run_job(job, folder, again=again, bars=bars, film=film) for job in family.jobs]
+    if family.is_varied:
+        sweep = Sweep(family, folder)
+        sweep.note_all()
+        sweep.write()
+        sweep.draw()
+    return finished

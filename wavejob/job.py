@@ -39,6 +39,19 @@ class Particle:
 
 
 @dataclass(frozen=True)
+class Varied:
+    """What one varied key is in a variant: its text, and where that is a quantity, its value in scaled units."""
+
+    key: str
+    text: str
+    value: float | None = None
+    dimension: str = "number"
+
+    def __str__(self) -> str:
+        return f"{self.key} = {self.text}"
+
+
+@dataclass(frozen=True)
 class Job:
     """A checked job. Lengths, times and energies are in scaled units (hbar = 1); `units` turns them back."""
 
@@ -50,10 +63,17 @@ class Job:
     units: Units
     particle: Particle
     tree: JobTree
+    variant: tuple[Varied, ...] = ()  # of a varied job: what sets this one apart
+    expected_at: tuple[int, ...] | None = None  # places in the file of the expectations kept; None: all are
 
     @property
     def title(self) -> str:
-        return self.keys.job or self.id
+        return ", ".join([self.keys.job or self.id, *map(str, self.variant)])
+
+    @property
+    def name(self) -> str:
+        """The id, and what sets a variant apart: `stack/scan (b2 = 2.9 nm)`."""
+        return f"{self.id} ({', '.join(map(str, self.variant))})" if self.variant else self.id
 
     @property
     def evolve(self) -> EvolveKeys:
@@ -124,6 +144,10 @@ class Job:
             return ()
         shared = (figure for o in self.measured for figure in o.classical_figures(self.outline))
         return (*(by_newton(figure) for figure in shared), *OWN_FIGURES)
+
+    def expectation(self, number: int) -> Key:
+        """Where an expectation stands in the file."""
+        return "expect", number if self.expected_at is None else self.expected_at[number]
 
     def problem(self, path: Key, message: str, fix: str = "", severity: str = "error") -> Problem:
         """A problem at a key of the job file."""

@@ -52,8 +52,6 @@ FAMILIES: dict[str, dict[str, type[Model]]] = {
 # Kinds and keys of the job-file format that this version reads but cannot carry out; `*` stands for any one.
 NOT_YET: tuple[tuple[str, ...], ...] = (
     ("channels",),
-    ("vary",),
-    ("vary_together",),
     ("derive",),
     ("average",),
     ("magnetic",),
@@ -76,5 +74,4 @@ NOT_YET: tuple[tuple[str, ...], ...] = (
     ("packet", "*", "axis"),
     ("observables", "*", "populations"),
     ("expect", "*", "equals_result"),
-    ("expect", "*", "when"),
 )

@@ -2,15 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from dataclasses import replace
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
-from .job import Job, Particle
+from .job import Job, Particle, Varied
 from .kinds import NOT_YET, OBSERVABLES
 from .misfits import misfits
-from .models import NAME, Choice, Item, Reader
+from .models import NAME, Choice, Item, Reader, dimension_at
 from .particles import particle as known_particle
 from .problems import JobFileError, Problem, shown
 from .reading.merging import Key, Merged, read_with_bases
@@ -18,6 +18,7 @@ from .reading.quantities import Named, QuantityError, Units, unit_names, unknown
 from .reading.tree import JobTree, find_tree
 from .reading.tree import shown as shown_path
 from .reading.validation import problem_at, read_as
+from .reading.walks import SECTIONS, Walked, Walks, written
 from .reading.yaml_tree import read_text
 from .settings import JobKeys, ParticleKeys
 
@@ -25,60 +26,116 @@ DEFAULT_OBSERVABLES = ("norm", "position", "energy")
 RESERVED_NAMES = frozenset({"x", "y", "z", "t", "pi", "start", "none"})
 
 
+@dataclass(frozen=True)
+class Source:
+    """A job file as it was read, before any job is made of it."""
+
+    document: Merged
+    path: Path
+    tree: JobTree
+    text: str
+    trust: bool = False
+
+    @classmethod
+    def of_file(cls, path: Path, tree: JobTree | None, trust: bool) -> Source:
+        """The file at `path`. Raises JobFileError."""
+        tree = tree or find_tree(path, None)
+        document = read_with_bases(path, shown_path(path), tree, trust)
+        return cls(document, path, tree, path.read_text(encoding="utf-8-sig"), trust)
+
+    @classmethod
+    def of_text(cls, text: str, folder: Path | None, name: str) -> Source:
+        """`text`, as if it stood in `folder`. Raises JobFileError."""
+        folder = (folder or Path.cwd()).resolve()
+        document = read_text(text, f"{name}.yml")
+        lines = {document.path: document.lines}
+        merged = Merged(document.value, dict(document.places), dict(document.key_places), lines)
+        return cls(merged, folder / f"{name}.yml", JobTree(folder), text)
+
+    def reader(self, units: Units, names: Mapping[str, Named]) -> Reader:
+        """What the values of this file are read with."""
+        home = self.path.resolve()
+        return Reader(units, names, open_path=lambda written: self.tree.inside(written, home, trust=self.trust))
+
+
 def load(path: str | Path, tree: JobTree | None = None, *, trust_paths: bool = False) -> Job:
-    """The job in the file at `path`. Raises JobFileError with every mistake found.
+    """The job in the file at `path`. Raises JobFileError with every mistake found, and for a varied job.
 
     `trust_paths` allows paths inside the file to leave the job tree.
     """
-    path = Path(path)
-    tree = tree or find_tree(path, None)
-    name = shown_path(path)
-    document = read_with_bases(path, name, tree, trust_paths)
-    return _checked(document, path, tree, trust_paths, path.read_text(encoding="utf-8-sig"))
+    return _one(Source.of_file(Path(path), tree, trust_paths))
 
 
 def parse(text: str, *, folder: Path | None = None, name: str = "job") -> Job:
     """The job in `text`; paths in it are relative to `folder`. Raises JobFileError."""
-    folder = (folder or Path.cwd()).resolve()
-    document = read_text(text, f"{name}.yml")
-    merged = Merged(document.value, dict(document.places), dict(document.key_places), {document.path: document.lines})
-    return _checked(merged, folder / f"{name}.yml", JobTree(folder), False, text)
+    return _one(Source.of_text(text, folder, name))
 
 
-def _checked(document: Merged, path: Path, tree: JobTree, trust: bool, text: str) -> Job:
-    value = document.value
-    if not isinstance(value, dict):
-        raise JobFileError([problem_at(document, (), "a job file is a mapping of keys", "see `wavejob new FILE`")])
-    format_ = value.get("format")
-    if isinstance(format_, int) and format_ > 1:
-        raise JobFileError(
-            [
-                problem_at(
-                    document,
-                    ("format",),
-                    f"format {format_} needs a newer wavejob",
-                    "this one reads format 1",
-                )
-            ]
-        )
+def _one(source: Source) -> Job:
+    if varied := sections(source.document):
+        said = "a varied job is many jobs"
+        raise JobFileError([problem_at(source.document, (varied[0],), said, "read it with `load_family`", key=True)])
+    return checked(source)
+
+
+def sections(document: Merged) -> list[str]:
+    """Those of `vary` and `vary_together` that a document has."""
+    return [name for name in SECTIONS if isinstance(document.value, dict) and name in document.value]
+
+
+def checked(source: Source, variant: Walks | None = None, index: int = 0) -> Job:
+    """The job of a document, or variant `index` of it. Raises JobFileError with every mistake found."""
+    document, path, tree = source.document, source.path, source.tree
+    if variant is not None:
+        document = variant.document(document, index)
+    value = mapping(document)
     later = list(_not_yet(value))
     problems = [problem_at(document, key, *_later(value, key), key=True) for key in later]
-    units = _units(document, value, problems)
-    names = _names(document, value, units, problems)
-    reader = Reader(units, names, open_path=lambda written: tree.inside(written, path.resolve(), trust=trust))
+    units = read_units(document, value, problems)
+    names = read_names(document, value, units, problems)
+    reader = source.reader(units, names)
     skip = [*later, *([("let",)] if _broken(value, names) else [])]
-    keys, mistakes = read_as(JobKeys, document, reader, _keys_of(reader), skip)
+    keys, mistakes = read_as(JobKeys, document, reader, keys_known(reader), skip)
     problems += [p for p in mistakes if not _echoes(p, value, names)]
     units_wrong = any(p.key.startswith("units") for p in problems)
     if keys is None or units_wrong or (particle := _particle(document, keys, units, problems)) is None:
         raise JobFileError(problems)
     if keys.observables is None:
         keys = keys.model_copy(update={"observables": _default_observables()})
-    job = Job(tree.job_id(path), path, text, document, keys, units, particle, tree)
+    varied = tuple(_setting(key, step, keys, units, names) for key, step in variant.steps(index)) if variant else ()
+    job = Job(tree.job_id(path), path, source.text, document, keys, units, particle, tree, varied)
     problems += misfits(job, [*later, *mistakes.values()])
     if problems:
         raise JobFileError(problems)
     return job
+
+
+def mapping(document: Merged) -> dict[str, Any]:
+    """The document's keys. Raises JobFileError where it has none, or is of a later format."""
+    value = document.value
+    if not isinstance(value, dict):
+        raise JobFileError([problem_at(document, (), "a job file is a mapping of keys", "see `wavejob new FILE`")])
+    format_ = value.get("format")
+    if isinstance(format_, int) and format_ > 1:
+        said = f"format {format_} needs a newer wavejob"
+        raise JobFileError([problem_at(document, ("format",), said, "this one reads format 1")])
+    return value
+
+
+def _setting(walked: Walked, step: int, keys: JobKeys, units: Units, names: Mapping[str, Named]) -> Varied:
+    """What a varied key is in this variant, as a quantity wherever it is one."""
+    value = walked.values[step]
+    text = written(value)
+    if isinstance(value, bool):
+        return Varied(walked.key, text)
+    named = names.get(str(walked.path[1])) if walked.path[0] == "let" else None
+    try:
+        known = named.dimension if named else dimension_at(keys, walked.path)
+        known = known or units.read_named(value, names).dimension
+        unit = "" if isinstance(value, str) else units.label(known)
+        return Varied(walked.key, f"{text} {unit}".rstrip(), units.read(value, known, names), known)
+    except QuantityError:  # a word, such as the name of a particle
+        return Varied(walked.key, text)
 
 
 def _echoes(problem: Problem, value: dict[str, Any], names: dict[str, Named]) -> bool:
@@ -92,7 +149,7 @@ def _broken(value: dict[str, Any], names: dict[str, Named]) -> list[str]:
     return [name for name in let if name not in names] if isinstance(let, dict) else ["let"] if let else []
 
 
-def _keys_of(reader: Reader) -> Any:
+def keys_known(reader: Reader) -> Any:
     def known(mapping: Any) -> list[str]:
         model = reader.read_as.get(id(mapping))
         return model.keys() if model is not None else []  # type: ignore[attr-defined]
@@ -135,7 +192,7 @@ def _matches(value: Any, pattern: tuple[str, ...], path: Key = ()) -> Iterator[K
                 yield (*path, key)
 
 
-def _units(document: Merged, value: dict[str, Any], problems: list[Problem]) -> Units:
+def read_units(document: Merged, value: dict[str, Any], problems: list[Problem]) -> Units:
     """The file's units; where they are wrong, some that let the rest be read."""
     written = value.get("units")
     if isinstance(written, dict):
@@ -152,7 +209,7 @@ def _units(document: Merged, value: dict[str, Any], problems: list[Problem]) -> 
     return Units.from_file({"length": "nm", "time": "fs", "energy": "meV"} if wrong else written)
 
 
-def _names(document: Merged, value: dict[str, Any], units: Units, problems: list[Problem]) -> dict[str, Named]:
+def read_names(document: Merged, value: dict[str, Any], units: Units, problems: list[Problem]) -> dict[str, Named]:
     """The quantities of `let`; later ones may use earlier ones."""
     names: dict[str, Named] = {}
     written = value.get("let")

@@ -6,11 +6,11 @@ Reading, messages, the JSON Schema, `wavejob explain`, resolved.yml and the refe
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from functools import cache
 from pathlib import Path
-from typing import Annotated, Any, ClassVar
+from typing import Annotated, Any, ClassVar, get_args
 
 from pydantic import (
     BaseModel,
@@ -23,6 +23,7 @@ from pydantic import (
     create_model,
     model_validator,
 )
+from pydantic.fields import FieldInfo
 from pydantic.functional_validators import BeforeValidator
 from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import PydanticCustomError, core_schema
@@ -158,6 +159,33 @@ def phrase(dimension: str) -> str:
 
 def example(dimension: str) -> str:
     return PHRASES[dimension][1]
+
+
+def quantity_of(info: FieldInfo) -> Quantity | None:
+    """The mark of a field that is read as a quantity."""
+    marks = [*info.metadata, *(m for arg in get_args(info.annotation) for m in getattr(arg, "__metadata__", ()))]
+    return next((mark for mark in marks if isinstance(mark, Quantity)), None)
+
+
+def dimension_at(model: BaseModel, path: Sequence[str | int]) -> str | None:
+    """The dimension of the quantity at a key path below `model`; None where none is found."""
+    node: Any = model
+    for place, step in enumerate(path):
+        if isinstance(node, BaseModel):
+            fields = {info.alias or name: (name, info) for name, info in type(node).model_fields.items()}
+            if step not in fields:
+                extra = (node.__pydantic_extra__ or {}).get(str(step))
+                return extra.dimension if isinstance(extra, Named) else None
+            name, info = fields[str(step)]
+            if place == len(path) - 1:
+                mark = quantity_of(info)
+                return mark.dimension if mark else None
+            node = getattr(node, name)
+        elif isinstance(node, list | dict):
+            node = node[step]  # type: ignore[index]
+        else:
+            return None
+    return None
 
 
 def unit_of(dimension: str) -> BeforeValidator:

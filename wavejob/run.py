@@ -97,7 +97,7 @@ def _carried_out(
         video_encoder()  # missed now, not when hours of work are to be shown
     folder.begin()
     with run_log(folder.path / "run.log"):
-        log.info("job %s, fingerprint %s", job.id, job.fingerprint)
+        log.info("job %s, fingerprint %s", job.name, job.fingerprint)
         for key, why in plan.notes.items():
             log.info("%s: %s", key, why)
         planned = time.perf_counter()
@@ -136,6 +136,7 @@ def _carried_out(
                 "pictures": drawn - written,
             },
             choices=pictures(job),
+            variant={one.key: one.text for one in job.variant},
             partial=tuple(what for what, made in ((BARS, bars or no_bars), (FILM, film or no_film)) if not made),
             warnings=(record.stopped,) if record.stopped else (),
         )
@@ -175,6 +176,7 @@ def write_numbers(folder: Path, record: Record) -> None:
         judgements=record.judgements,
         units=units,
         classical=record.classical,
+        variant={one.key: one.text for one in job.variant},
     )
 
 

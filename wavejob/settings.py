@@ -29,6 +29,7 @@ from .models import (
 from .packets.item import PACKETS
 from .potentials.item import POTENTIALS, TermItem
 from .problems import nearest, shown
+from .reading.walks import MOST_VARIANTS
 
 MAX_POINTS = 2**26
 
@@ -298,6 +299,13 @@ class SnapshotKeys(Model):
     every: Duration = Field(description="time between stored fields")
 
 
+WHEN_SCHEMA = {
+    "type": "object",
+    "additionalProperties": {"type": ["number", "string", "boolean"]},
+    "examples": [{"b2": "3 nm"}],
+}
+
+
 class ExpectKeys(Model):
     """A check on one result."""
 
@@ -308,6 +316,9 @@ class ExpectKeys(Model):
     above: Scalar | None = Field(None, description="lower bound")
     within: list[Scalar] | None = Field(None, description="[lowest, highest]", min_length=2, max_length=2)
     source: str | None = Field(None, description="where the value comes from")
+    when: Annotated[dict[str, Scalar], WithJsonSchema(WHEN_SCHEMA)] | None = Field(
+        None, description="judged only in the variants of a varied job with these values; left out: in every variant"
+    )
 
     @model_validator(mode="after")
     def _one(self) -> ExpectKeys:
@@ -369,6 +380,83 @@ else:
     ErrorBarsChoice = word_or(("none",), ErrorBarsKeys, "choice of error bars")
 
 
+def _varied(value: Any) -> Any:
+    """One entry of `vary`: a key with a list of values, or with a range of them."""
+    if not isinstance(value, dict) or len(value) != 1:
+        said = f"{shown(value)} is no entry" if not isinstance(value, dict) else f"an entry has {len(value)} keys"
+        raise refuse(said, "write one key and its values: `b2: {from: 2.8 nm, to: 3.2 nm, points: 11}`")
+    ((key, values),) = value.items()
+    wanted = "write a list of values, or {from: 2.8 nm, to: 3.2 nm, points: 11}"
+    if isinstance(values, list):
+        if not values:
+            raise refuse("the list has no items", wanted, at=key)
+        for one in values:
+            if not isinstance(one, bool | int | float | str):
+                raise refuse(f"{shown(one)} is no single value", "write numbers, quantities or words", at=key)
+        return value
+    if not isinstance(values, dict):
+        raise refuse(f"{shown(values)} is no choice of values", wanted, at=key)
+    parts = ("from", "to", "points")
+    for part in values:
+        if part not in parts:
+            near = nearest(part, parts)
+            raise refuse(f"unknown key {shown(part)}", f"did you mean `{near}`?" if near else wanted, at=key)
+    for part in parts:
+        if part not in values:
+            raise refuse(f"`{part}` is missing", "add it", at=key)
+    for end in ("from", "to"):
+        if isinstance(values[end], bool) or not isinstance(values[end], int | float | str):
+            raise refuse(f"`{end}` is {shown(values[end])}, no quantity", wanted, at=key)
+    points = values["points"]
+    if isinstance(points, bool) or not isinstance(points, int) or not 2 <= points <= MOST_VARIANTS:
+        raise refuse(f"`points` is {shown(points)}", f"write a whole number from 2 to {MOST_VARIANTS}", at=key)
+    return value
+
+
+_VALUE: dict[str, Any] = {"type": ["number", "string", "boolean"]}
+VARY_SCHEMA = {
+    "type": "object",
+    "minProperties": 1,
+    "maxProperties": 1,
+    "additionalProperties": {
+        "oneOf": [
+            {"type": "array", "minItems": 1, "items": _VALUE},
+            {
+                "type": "object",
+                "properties": {
+                    "from": {"type": ["number", "string"]},
+                    "to": {"type": ["number", "string"]},
+                    "points": {"type": "integer", "minimum": 2, "maximum": MOST_VARIANTS},
+                },
+                "required": ["from", "to", "points"],
+                "additionalProperties": False,
+            },
+        ]
+    },
+}
+VaryEntry = Annotated[Any, BeforeValidator(_varied), WithJsonSchema(VARY_SCHEMA)]
+_MASSES = {"particle.mass": ["0.063 electron_mass", "0.067 electron_mass"]}
+VARY: Any = Field(
+    default_factory=list,
+    description="one run for each value of a key or a name of `let`; several entries: every combination",
+    examples=[[_MASSES]],
+    max_length=20,
+)
+VARY_TOGETHER: Any = Field(
+    default_factory=list,
+    description="like `vary`, but its entries walk in step",
+    examples=[[_MASSES, {"particle.charge": ["-1 e", "-2 e"]}]],
+    max_length=50,
+)
+
+
+class VaryKeys(Model):
+    """What makes one job file many jobs."""
+
+    vary: list[VaryEntry] = VARY
+    vary_together: list[VaryEntry] = VARY_TOGETHER
+
+
 UNITS_SCHEMA = {
     "oneOf": [
         {"enum": ["natural", "atomic"]},
@@ -424,3 +512,5 @@ class JobKeys(Model):
     film: FilmChoice = Field(default_factory=FilmKeys, description="the animation; `none` to skip")
     snapshots: SnapshotKeys | None = Field(None, description="store the field; left out: the final state only")
     expect: list[ExpectKeys] = Field(default_factory=list, description="checks on the results", max_length=500)
+    vary: list[VaryEntry] = VARY
+    vary_together: list[VaryEntry] = VARY_TOGETHER

@@ -37,7 +37,11 @@ MISTAKES = [
     ),
     ("check --strict=yes job.yml", "wavejob check: `--strict` takes no value; write `--strict` alone"),
     ("check --format jsn job.yml", "wavejob check: --format: no `jsn`; did you mean `json`?"),
-    ("run --workers 4 job.yml", "wavejob run: `--workers` is not available yet; leave it out"),
+    (
+        "run --workers none job.yml",
+        "wavejob run: --workers: `none` is no number of workers; write a whole number from 1 to 1024",
+    ),
+    ("run --by 07:00 job.yml", "wavejob run: `--by` is not available yet; leave it out"),
     ("run --on dask:host job.yml", "wavejob run: `--on` is not available yet; leave it out"),
     (
         "schema job.yml",

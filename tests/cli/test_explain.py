@@ -8,8 +8,8 @@ from wavejob.cli.check_words import checks
 from wavejob.cli.dictionary import Entry, entries
 from wavejob.cli.examples import nested, written
 from wavejob.cli.explain import explanations
+from wavejob.families import parse_family
 from wavejob.kinds import FAMILIES
-from wavejob.loading import parse
 from wavejob.problems import JobFileError
 from wavejob.reading.yaml_tree import read_text
 from wavejob.settings import JobKeys
@@ -28,17 +28,18 @@ JOB = {
 
 @pytest.mark.parametrize("entry", KNOWN.values(), ids=lambda entry: entry.dotted)
 def test_every_example_is_read_as_a_job(entry: Entry) -> None:
-    """Put into an ordinary job. A file that an example names is not there, which is then the only mistake."""
+    """Put into an ordinary job. A file that an example names is not there, or nothing is varied: the only mistake."""
     example = written(entry, KNOWN)
     key = entry.path[0]
     assert list(read_text(example, "example.yml").value) == [key] == list(nested(entry, KNOWN))
     text = "\n".join({**JOB, key: example}.values())
     try:
-        parse(text)
+        parse_family(text)
     except JobFileError as error:
         missing = [problem.message for problem in error.problems]
-        assert missing in (["there is no file `table.csv`"], ["there is no file `_stack.yml`"])
-        assert {"table", "file", "based_on"} & set(entry.path)
+        known = ("there is no file `table.csv`", "there is no file `_stack.yml`", "nothing is varied in this job")
+        assert missing in [[one] for one in known]
+        assert {"table", "file", "based_on", "when"} & set(entry.path)
 
 
 @pytest.mark.parametrize("name", checks())

@@ -47,7 +47,7 @@ def test_failures_are_told_from_errors(call: Call, tree: Path, monkeypatch: pyte
         return through(job, *rest, **more)
 
     monkeypatch.setattr(RUN, "run_job", run_job)
-    assert call("run", ".", "-q", "--junit", "jobs.xml").code == 1
+    assert call("run", ".", "-q", "--junit", "jobs.xml", "--workers", "1").code == 1
     found = cases(tree / "jobs.xml")
     assert list(found) == ["broken", "bug", "job", "missed"]
     assert found["broken"] == ("error", "the disk is full; make room")
@@ -103,7 +103,7 @@ def test_a_batch_that_was_stopped_tells_what_it_did(
         return through(job, *rest, **more)
 
     monkeypatch.setattr(RUN, "run_job", run_job)
-    assert call("run", ".", "-q", "--junit", "jobs.xml").code in (130, 143)
+    assert call("run", ".", "-q", "--junit", "jobs.xml", "--workers", "1").code in (130, 143)
     assert cases(tree / "jobs.xml") == {
         "first": ("passed", ""), "second": ("skipped", "stopped"), "job": ("skipped", "not started"),
     }  # fmt: skip

@@ -82,7 +82,7 @@ def test_the_urgent_job_runs_first_and_a_failure_stops_no_other(
         return through(job, *rest, **more)
 
     monkeypatch.setattr(RUN, "run_job", run_job)
-    found = call("run", ".", "--format", "json")
+    found = call("run", ".", "--workers", "1", "--format", "json")
     assert begun == ["urgent", "another", "job"]
     assert found.code == 1
     jobs = json.loads(found.out)["jobs"]
@@ -122,7 +122,7 @@ def test_when_stopped_it_says_what_is_kept(
         return through(job, *rest, **more)
 
     monkeypatch.setattr(RUN, "run_job", run_job)
-    found = call("run", ".", "-q")
+    found = call("run", ".", "-q", "--workers", "1")
     assert found.code == code
     assert found.err == "stopped: 1 job of 2 finished and kept; job was cut short and starts anew next time\n"
     assert found.out.startswith("first\n")
@@ -225,3 +225,65 @@ def test_a_missing_encoder_is_missed_before_the_work(call: Call, tree: Path, mon
     assert found.code == 1
     assert "the video encoder `/nowhere/ffmpeg` is missing; `pip install imageio-ffmpeg`" in found.err
     assert next(tree.glob("runs/job/*/manifest.json")).is_file()  # what was there stands
+
+
+VARIED = JOB + "vary: [{packet.gaussian.wavenumber: [1, 2]}]\nexpect: [{result: through.total, above: 0}]\n"
+
+
+def test_variants_are_shown_side_by_side(call: Call, tree: Path) -> None:
+    (tree / "job.yml").write_text(VARIED, encoding="utf-8")
+    found = call("run", "job.yml", "--workers", "1")
+    lines = found.out.splitlines()
+    assert found.code == 0
+    assert lines[1].split() == ["packet.gaussian.wavenumber", "through.total", "verdict"]
+    assert [line.split()[0] for line in lines[2:4]] == ["1", "2"]
+    assert re.fullmatch(
+        r"  2 variants: 2 (trusted|doubtful), in runs/job: variants.csv, variants_through.total.png", lines[4]
+    )
+    assert "job (packet.gaussian.wavenumber = 2): done, " in found.err
+    assert (tree / "runs" / "job" / "variants.csv").is_file()
+    checked = call("check", "job.yml", "--format", "json")
+    assert [job["variant"] for job in json.loads(checked.out)["jobs"]] == [
+        {"packet.gaussian.wavenumber": "1"}, {"packet.gaussian.wavenumber": "2"},
+    ]  # fmt: skip
+
+
+def test_workers_do_the_same_as_one_process(call: Call, tree: Path) -> None:
+    """Values of variants that ran at once are, to the bit, those of variants that ran one after another."""
+    (tree / "job.yml").write_text(VARIED.replace("step:", "reproducible: yes, step:"), encoding="utf-8")
+    (tree / "other.yml").write_text(JOB, encoding="utf-8")
+    at_once = call("run", ".", "--workers", "2", "--runs", "a")
+    assert at_once.code == 0
+    assert call("run", ".", "--workers", "1", "--runs", "b", "-q").code == 0
+    tables = [(tree / name / "job" / "variants.csv").read_text(encoding="utf-8") for name in "ab"]
+    assert tables[0] == tables[1]
+    status = json.loads((tree / "a" / "status.json").read_text(encoding="utf-8"))
+    assert (status["state"], status["jobs"], status["done"]) == ("finished", 3, 3)
+    assert at_once.err.count(": done, ") == 3
+    again = call("run", ".", "--workers", "2", "--runs", "a")
+    assert again.err.count(": up to date, ") == 3
+
+
+def test_a_worker_that_fails_is_told_with_its_reason(call: Call, tree: Path) -> None:
+    (tree / "other.yml").write_text(JOB, encoding="utf-8")
+    assert call("run", "other.yml", "-q").code == 0
+    (folder,) = (tree / "runs" / "other").iterdir()
+    (folder / ".job").write_text('{"job": "another", "fingerprint": "0"}', encoding="utf-8")
+    (folder / "manifest.json").unlink()
+    found = call("run", ".", "--workers", "2")
+    assert found.code == 1
+    assert "other: `" in found.err
+    assert "belongs to job `another`" in found.err
+    assert found.out.startswith("job\n")
+    status = json.loads((tree / "runs" / "status.json").read_text(encoding="utf-8"))
+    assert [one["job"] for one in status["failed"]] == ["other"]
+
+
+def test_bad_files_are_skipped_where_that_is_asked_for(call: Call, tree: Path) -> None:
+    (tree / "bad.yml").write_text(JOB.replace("points", "pionts"), encoding="utf-8")
+    (tree / "far.yml").write_text(JOB.replace("wavenumber: 1", "wavenumber: 10.5"), encoding="utf-8")
+    found = call("run", ".", "--skip-bad")
+    assert found.code == 1
+    assert "unknown key `pionts`" in found.err
+    assert found.out.startswith("job\n")
+    assert [path.name for path in (tree / "runs").iterdir() if path.is_dir()] == ["job"]

@@ -48,7 +48,7 @@ def judged(job: Job, document: dict[str, Any]) -> list[Problem]:
         index = wanted.index(entry["result"])
         wanted[index] = ""  # the next of this name is another
         if entry["outcome"] != "met":
-            found.append(job.problem(("expect", index), f"{entry['outcome']}: {entry['text']}"))
+            found.append(job.problem(job.expectation(index), f"{entry['outcome']}: {entry['text']}"))
     return found + [
         about(job, check_failure(check), severity="warning") for check in document["checks"] if not check["passed"]
     ]

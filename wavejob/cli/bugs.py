@@ -14,8 +14,13 @@ from . import terminal
 def report(error: BaseException, *, verbose: bool, doing: str = "") -> None:
     """One line about a bug; its traceback goes to standard error with `verbose`, else into a file."""
     trace = "".join(traceback.format_exception(error))
+    report_trace(f"{type(error).__name__}: {_one_line(error)}", trace, verbose=verbose, doing=doing)
+
+
+def report_trace(error: str, trace: str, *, verbose: bool, doing: str = "") -> None:
+    """The same of an error that another process met: `error` is its name and text."""
     what = f"{doing}: " if doing else ""
-    said = f"{what}an error inside wavejob {__version__} ({type(error).__name__}: {_one_line(error)})"
+    said = f"{what}an error inside wavejob {__version__} ({error})"
     if verbose:
         terminal.say(f"{trace}{said}; please report it with the lines above")
         return

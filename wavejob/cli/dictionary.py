@@ -167,6 +167,10 @@ def _range(what: str, least: Any, most: Any) -> str:
 def _of_schema(schema: dict[str, Any]) -> str:
     if "oneOf" in schema:
         return " or ".join(_of_schema(one) for one in schema["oneOf"])
+    if schema.get("maxProperties") == 1:
+        return f"a key with {_of_schema(schema['additionalProperties'])}"
+    if schema.get("type") == "array":
+        return "a list of values"
     if "properties" in schema:
         return "{" + ", ".join(f"{key}:" for key in schema["properties"]) + "}"
     if "enum" in schema:

@@ -98,8 +98,8 @@ def _of_part(key: str, part: Any, found: list[Any]) -> Any:
 
 
 def _of_schema(key: str, schema: dict[str, Any]) -> Any:
-    if "enum" in schema:
-        return schema["enum"][0]
+    if "examples" in schema or "enum" in schema:
+        return (schema.get("examples") or schema["enum"])[0]
     if schema.get("type") in ("integer", "number"):
         return schema.get("minimum", 1)
     if schema.get("type") == "string":

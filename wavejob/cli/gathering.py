@@ -7,8 +7,8 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 
+from ..families import Family, load_family
 from ..job import Job
-from ..loading import load
 from ..problems import JobFileError, Place, Problem, in_order
 from ..reading.tree import JobTree, find_tree, shown
 from .arguments import UsageError
@@ -17,11 +17,16 @@ from .sizes import counted
 
 @dataclass
 class Gathered:
-    """Jobs that could be read, problems of those that could not; `files` counts both."""
+    """Job files that could be read, problems of those that could not; `files` counts both."""
 
-    jobs: list[Job] = field(default_factory=list)
+    families: list[Family] = field(default_factory=list)
     problems: list[Problem] = field(default_factory=list)
     files: int = 0
+
+    @property
+    def jobs(self) -> list[Job]:
+        """Every job, each variant of a varied file by itself."""
+        return [job for family in self.families for job in family.jobs]
 
 
 def gather(options: Namespace) -> Gathered:
@@ -52,7 +57,7 @@ def _read(files: Sequence[Path], tree: JobTree, trust: bool, found: Gathered) ->
     for file in files:
         found.files += 1
         try:
-            found.jobs.append(load(file, tree, trust_paths=trust))
+            found.families.append(load_family(file, tree, trust_paths=trust))
         except JobFileError as error:
             found.problems += error.problems
         except (OSError, UnicodeError) as error:
@@ -72,17 +77,17 @@ def _unreadable(path: Path, error: Exception) -> Problem:
     return Problem(f"can't be read: {said}", "check its name and permissions", place=Place(shown(path)))
 
 
-def doubled(jobs: Sequence[Job]) -> list[Problem]:
+def doubled(families: Sequence[Family]) -> list[Problem]:
     """Jobs of different trees that would share a folder once runs are kept in one place."""
-    first: dict[str, Job] = {}
+    first: dict[str, Family] = {}
     return [
         Problem(
-            f"has the same job id as `{shown(first[job.id].path)}`: `{job.id}`",
+            f"has the same job id as `{shown(first[family.id].source.path)}`: `{family.id}`",
             "name both below one tree with --tree DIR, or keep their runs apart",
-            place=Place(shown(job.path)),
+            place=Place(shown(family.source.path)),
         )
-        for job in jobs
-        if first.setdefault(job.id, job) is not job
+        for family in families
+        if first.setdefault(family.id, family) is not family
     ]
 
 

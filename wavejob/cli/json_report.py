@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
 from ..forecast import Forecast
@@ -34,12 +34,14 @@ def job_entry(
     folder: str | None = None,
     verdict: str | None = None,
     forecast: Forecast | None = None,
+    variant: Mapping[str, str] | None = None,
 ) -> dict[str, Any]:
     weighed = (
         {"seconds": round(forecast.seconds, 1), "memory": forecast.memory, "disk": forecast.disk} if forecast else None
     )
     return {
         "job": job,
+        **({"variant": dict(variant)} if variant else {}),
         "fingerprint": fingerprint,
         "folder": folder,
         "status": status,

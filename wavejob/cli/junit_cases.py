@@ -55,5 +55,5 @@ def refused_cases(problems: Iterable[Problem], jobs: Sequence[Job]) -> list[Case
     cases = [Case(path, path, error="\n".join(one.text() for one in found)) for path, found in by_file]
     files = {case.file for case in cases}
     return cases + [
-        Case(job.id, shown(job.path), skipped="nothing was started") for job in jobs if shown(job.path) not in files
+        Case(job.name, shown(job.path), skipped="nothing was started") for job in jobs if shown(job.path) not in files
     ]

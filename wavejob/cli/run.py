@@ -1,62 +1,38 @@
-"""Run job files, or all job files of folders, one after another; what is up to date is not computed again."""
+"""Run job files, or all job files of folders; what is up to date is not computed again."""
 
 from __future__ import annotations
 
 import time
-from argparse import ArgumentParser, Namespace
-from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from argparse import ArgumentParser, ArgumentTypeError, Namespace
+from collections.abc import Callable, Sequence
+from dataclasses import replace
 from datetime import UTC, datetime
 from pathlib import Path
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
-from ..forecast import Forecast
-from ..job import Job
-from ..outputs.folder import RunFolder
+from ..machine import cores
 from ..outputs.junit import Case, write_junit
-from ..plan import Plan
 from ..problems import JobFileError, Problem, RunError, in_order
 from ..reader import Run
 from ..reading.tree import shown
-from ..standing import stands
 from . import terminal
 from .annotations import about, annotate, judged
 from .arguments import add_not_yet, add_paths, add_reading
+from .batch import run_batch, status_of
 from .gathering import Gathered, doubled, gather, tally
-from .json_report import job_entry, show_json
+from .json_report import show_json
 from .junit_cases import assertions, check_target, refused_cases
-from .preparing import prepare
 from .progress import log_line, watched
 from .results import result_table
 from .sizes import counted, duration
+from .sweeps import write_sweep
+from .tasks import ENDED, Task, make_tasks
 
 if TYPE_CHECKING:
     from ..run import Finished
 
 
-@dataclass
-class Task:
-    """A job that is to be run, and how it ended. One that is up to date needs no plan."""
-
-    job: Job
-    runs: Path
-    plan: Plan | None = None
-    forecast: Forecast | None = None
-    status: str = "not started"
-    verdict: str | None = None
-    seconds: float = 0.0
-    error: str = ""  # why it could not be carried out
-
-    @property
-    def folder(self) -> RunFolder:
-        return RunFolder(self.runs, self.job.id, self.job.fingerprint)
-
-    @property
-    def entry(self) -> dict[str, Any]:
-        job, folder = self.job, shown(self.folder.path)
-        return job_entry(
-            job.id, job.fingerprint, self.status, folder=folder, verdict=self.verdict, forecast=self.forecast
-        )
+MOST_WORKERS = 1024
 
 
 def add_arguments(parser: ArgumentParser) -> None:
@@ -70,8 +46,18 @@ def add_arguments(parser: ArgumentParser) -> None:
     parser.add_argument(
         "--junit", type=Path, metavar="FILE", help="write what became of each job as JUnit XML, for code hosts"
     )
+    parser.add_argument(
+        "--workers", type=_workers, metavar="N", help="jobs carried out at once; as many as cores if left out"
+    )
+    parser.add_argument("--skip-bad", action="store_true", help="run the good job files beside others with mistakes")
     add_reading(parser)
-    add_not_yet(parser, "--workers", "--by", "--checkpoint", "--on")
+    add_not_yet(parser, "--by", "--checkpoint", "--on")
+
+
+def _workers(text: str) -> int:
+    if not text.isascii() or not text.isdigit() or not 1 <= int(text) <= MOST_WORKERS:
+        raise ArgumentTypeError(f"`{text}` is no number of workers; write a whole number from 1 to {MOST_WORKERS}")
+    return int(text)
 
 
 def run(options: Namespace) -> int:
@@ -79,59 +65,97 @@ def run(options: Namespace) -> int:
     started = datetime.now(UTC)
     found = gather(options)
     if options.runs:
-        found.problems += doubled(found.jobs)
-    tasks, warnings = _tasks(found, options)
-    if found.problems:
+        found.problems += doubled(found.families)
+    tasks, warnings = make_tasks(found, options)
+    if found.problems and not (options.skip_bad and tasks):
         if options.junit:
             write_junit(options.junit, refused_cases(found.problems, found.jobs), started)
         return _refused(found, options)
+    _say_first(found.problems, warnings, options)
+    problems = in_order(found.problems + warnings)
+    try:
+        _carry_out_all(tasks, options)
+    except KeyboardInterrupt as stop:
+        _told(tasks, problems, options, started)
+        raise type(stop)(_kept(tasks)) from None
+    _told(tasks, problems, options, started)
+    if len(tasks) > 1 and not options.quiet:
+        terminal.say(_summary(tasks))
+    code = _exit_code(tasks, strict=options.strict, warned=bool(warnings))
+    return 1 if found.problems else code
+
+
+def _say_first(mistakes: Sequence[Problem], warnings: Sequence[Problem], options: Namespace) -> None:
+    """Mistakes of files that are skipped, and doubts about the others."""
+    if options.format == "text":
+        for problem in mistakes:
+            terminal.say(problem.text())
     if not options.quiet:
         for warning in warnings:
             terminal.say(warning.text())
-    annotate(warnings, quiet=options.quiet)
+    annotate([*mistakes, *warnings], quiet=options.quiet)
+
+
+def _carry_out_all(tasks: list[Task], options: Namespace) -> None:
+    """One after another in this process, or in several; then the variants of each file side by side."""
+    families: dict[int, list[Task]] = {}
+    for task in tasks:
+        if task.family.is_varied:
+            families.setdefault(id(task.family), []).append(task)
+
+    def ended(task: Task) -> None:
+        if task.status != "failed":
+            annotate(judged(task.job, Run(task.folder.path).document), quiet=options.quiet)
+        variants = families.get(id(task.family))
+        if variants is None:
+            if options.format == "text" and task.status != "failed":
+                _show(task)
+        elif all(one.status in ENDED for one in variants):
+            write_sweep(families.pop(id(task.family)), show=options.format == "text")
+
+    workers = min(options.workers or cores(), len(tasks))
+    try:
+        if workers > 1:
+            run_batch(tasks, workers, options, ended)
+        else:
+            _one_by_one(tasks, options, ended)
+    finally:
+        for variants in families.values():  # of a batch that was stopped
+            write_sweep(variants, show=False)
+
+
+def _one_by_one(tasks: list[Task], options: Namespace, ended: Callable[[Task], None]) -> None:
+    """In this process; how far several jobs are is written to status.json."""
+    status = status_of(tasks, 1)
     try:
         for task in tasks:
+            if len(tasks) > 1:
+                status.start(task.name)
             _carry_out(task, options)
-    except KeyboardInterrupt as stop:
-        _told(tasks, warnings, options, started)
-        raise type(stop)(_kept(tasks)) from None
-    _told(tasks, warnings, options, started)
-    if len(tasks) > 1 and not options.quiet:
-        terminal.say(_summary(tasks))
-    return _exit_code(tasks, strict=options.strict, warned=bool(warnings))
+            if len(tasks) > 1 and task.status == "failed":
+                status.fail(task.name, task.error)
+            elif len(tasks) > 1:
+                status.end(task.name, task.took if task.status == "done" else None)
+            ended(task)
+    except KeyboardInterrupt:
+        if len(tasks) > 1:
+            status.running.clear()
+            status.write(stopped=True)
+        raise
 
 
-def _tasks(found: Gathered, options: Namespace) -> tuple[list[Task], list[Problem]]:
-    """What is to be run, the most urgent first, and doubts about it; mistakes are added to those found."""
-    tasks = [Task(job, options.runs or job.tree.root / "runs") for job in found.jobs]
-    by_job = {id(task.job): task for task in tasks}
-    bars, film = not options.quick, not options.no_film
-    fresh = [t.job for t in tasks if options.again or not stands(t.job, t.folder, bars=bars, film=film)]
-    ready, refused = prepare(fresh, options.memory, options.limit, bars=bars, film=film)
-    found.problems += refused
-    for one in ready:
-        task = by_job[id(one.job)]
-        task.plan, task.forecast = one.plan, one.forecast
-    if not found.problems:
-        try:
-            for tree in {task.job.tree for task in tasks}:
-                tree.runs_folder(options.runs)
-        except JobFileError as error:
-            found.problems += error.problems
-    warnings = in_order(warning for one in ready for warning in one.warnings)
-    return sorted(tasks, key=lambda task: -task.job.keys.priority), warnings
-
-
-def _told(tasks: list[Task], warnings: list[Problem], options: Namespace, started: datetime) -> None:
+def _told(tasks: list[Task], problems: list[Problem], options: Namespace, started: datetime) -> None:
     """What programs read of a batch that has ended."""
     if options.format == "json":
-        show_json("run", warnings, [task.entry for task in tasks])
+        show_json("run", problems, [task.entry for task in tasks])
     if options.junit:
-        write_junit(options.junit, [_case(task, strict=options.strict) for task in tasks], started)
+        skipped = refused_cases([p for p in problems if p.severity == "error"], [])
+        cases = [_case(task, strict=options.strict) for task in tasks]
+        write_junit(options.junit, [*skipped, *cases], started)
 
 
 def _case(task: Task, *, strict: bool) -> Case:
-    case = Case(task.job.id, shown(task.job.path), task.seconds, error=task.error)
+    case = Case(task.name, shown(task.job.path), task.took, error=task.error)
     if task.status in ("done", "up to date"):
         return replace(case, assertions=assertions(Run(task.folder.path).document, strict=strict))
     return case if task.error else replace(case, skipped=task.status)
@@ -154,7 +178,7 @@ def _carry_out(task: Task, options: Namespace) -> None:
     """Runs one job; its failure is told and noted, and does not stop the others."""
     begun = time.monotonic()
     if task.forecast and not options.quiet and not terminal.is_live():
-        log_line(f"{task.job.id}: started, about {duration(task.forecast.seconds)}")
+        log_line(f"{task.name}: started, about {duration(task.seconds)}")
     task.status = "stopped"  # unless it ends below
     try:
         finished = _run(task, options)
@@ -170,24 +194,20 @@ def _carry_out(task: Task, options: Namespace) -> None:
     except Exception as error:
         from .bugs import report
 
-        task.status, task.verdict = "failed", "failed"
-        task.error = f"an error inside wavejob ({type(error).__name__}: {error})"
-        report(error, verbose=options.verbose, doing=task.job.id)
+        task.end("failed", "failed", error=f"an error inside wavejob ({type(error).__name__}: {error})")
+        report(error, verbose=options.verbose, doing=task.name)
         return
     finally:
-        task.seconds = time.monotonic() - begun
-    task.status, task.verdict, task.plan = finished.status, finished.verdict, None
+        task.took = time.monotonic() - begun
+    task.end(finished.status, finished.verdict)
     if not options.quiet:
         _say_ended(task)
-    if options.format == "text":
-        _show(task)
-    annotate(judged(task.job, Run(task.folder.path).document), quiet=options.quiet)
 
 
 def _failed(task: Task, said: str, problems: Sequence[Problem] = ()) -> None:
     """Notes and tells why a job could not be carried out."""
-    task.status, task.verdict, task.error = "failed", "failed", said
-    terminal.say(f"{task.job.id}: {said}")
+    task.end("failed", "failed", error=said)
+    terminal.say(f"{task.name}: {said}")
     annotate(problems or [about(task.job, said)])
 
 
@@ -214,9 +234,9 @@ def _show(task: Task) -> None:
 
 
 def _say_ended(task: Task) -> None:
-    said = f"{task.job.id}: {task.status}, {task.verdict}"
+    said = f"{task.name}: {task.status}, {task.verdict}"
     if task.status == "done":
-        said += f", {duration(task.seconds)}"
+        said += f", {duration(task.took)}"
     if terminal.is_live():
         terminal.say(said)
     else:
@@ -229,7 +249,7 @@ def _kept(tasks: list[Task]) -> str:
     cut = next((task for task in tasks if task.status == "stopped"), None)
     said = f"stopped: {counted(kept, 'job')} of {len(tasks)} finished and kept"
     if cut is not None:
-        said += f"; {cut.job.id} was cut short and starts anew next time"
+        said += f"; {cut.name} was cut short and starts anew next time"
     return said
 
 

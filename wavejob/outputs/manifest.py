@@ -55,6 +55,7 @@ class Account:
     precision: str = "double"
     timings: Mapping[str, float] = field(default_factory=dict)
     choices: Mapping[str, Any] = field(default_factory=dict)  # kernel, threads, scheme and the like
+    variant: Mapping[str, str] = field(default_factory=dict)  # what is varied, and what it is here
     resumed_at: tuple[int, ...] = ()  # steps
     partial: tuple[str, ...] = ()  # what was left out: "film", "error_bars"
     warnings: tuple[str, ...] = ()
@@ -69,6 +70,7 @@ def write_manifest(folder: Path, account: Account, units: Units, tree: Path | No
         "numerics": NUMERICS,
         "job": account.job,
         "fingerprint": account.fingerprint,
+        **({"variant": dict(account.variant)} if account.variant else {}),
         "started": utc(account.started),
         "ended": utc(account.ended),
         "resumed_at": list(account.resumed_at),

@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 from pathlib import Path
-from typing import Any, get_args
+from typing import Any
 
 import yaml
 from pydantic import BaseModel
 
 from ..ensemble import trajectories
-from ..models import Item, Quantity
+from ..models import Item, Quantity, quantity_of
 from ..plan import Plan
 from ..reading.quantities import Named, Units
 from ..tabulated import TableFile
@@ -80,11 +80,7 @@ def as_written(model: BaseModel, units: Units) -> dict[str, Any]:
         value = getattr(model, name)
         if value is None or value == {} or value == []:
             continue
-        quantity = next((m for m in info.metadata if isinstance(m, Quantity)), None)
-        if quantity is None:  # Optional[...] keeps the mark one level down
-            marks = [m for arg in get_args(info.annotation) for m in getattr(arg, "__metadata__", ())]
-            quantity = next((m for m in marks if isinstance(m, Quantity)), None)
-        data[info.alias or name] = _plain(value, quantity, units)
+        data[info.alias or name] = _plain(value, quantity_of(info), units)
     for name, named in (model.__pydantic_extra__ or {}).items():
         data[name] = _plain(named, None, units)
     return data

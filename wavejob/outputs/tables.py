@@ -78,15 +78,20 @@ def write_results_json(
     judgements: Iterable[Judgement],
     units: Units,
     classical: Answer | Mapping[str, Any] | None = None,
+    variant: Mapping[str, str] | None = None,
 ) -> None:
-    """All figures of a run with what was judged about them; figures that can't be had are null."""
+    """All figures of a run with what was judged about them; figures that can't be had are null.
+
+    `variant` says, by key, what is varied and what it is in this run.
+    """
     by_name = {result.name: _result(result, units) for result in results}
     if len(by_name) < len(results):
         raise ValueError("two results have one name")
-    document = {
+    document: dict[str, Any] = {
         "format": FORMAT,
         "job": job,
         "fingerprint": fingerprint,
+        **({"variant": dict(variant)} if variant else {}),
         "verdict": verdict,
         "results": by_name,
         "checks": [_check(check) for check in checks],

@@ -171,7 +171,7 @@ def _over(base: _Node, top: _Node, path: tuple[str, ...] = ()) -> _Node:
             children[key] = _over(below[key], node, (*path, str(key))) if key in children else node
         return _joined(children, top, {**base.key_places, **top.key_places})
     if isinstance(base.value, list) and isinstance(top.value, list):
-        names, old = [_name_of(item) for item in top.value], [_name_of(item) for item in base.value]
+        names, old = [name_of(item) for item in top.value], [name_of(item) for item in base.value]
         if names and all(names) and any(old):
             items = dict(enumerate(base.children().values()))
             for name, node in zip(names, top.children().values(), strict=True):
@@ -192,7 +192,7 @@ def _displaced(base: dict[str, Any], top: dict[str, Any], path: tuple[str, ...])
     return set()
 
 
-def _name_of(item: Any) -> str | None:
+def name_of(item: Any) -> str | None:
     """The `name:` of a list item, beside its kind or among its parameters."""
     if not isinstance(item, dict):
         return None
