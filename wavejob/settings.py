@@ -170,7 +170,11 @@ class EdgesKeys(Model):
 class ParticleKeys(Model):
     """The particle."""
 
-    mass: Mass | None = Field(None, description="effective mass; 1 if left out in natural and atomic units")
+    mass: Mass | None = Field(
+        None,
+        description="effective mass; 1 if left out in natural and atomic units",
+        examples=["0.067 electron_mass"],
+    )
     charge: Charge | None = Field(None, description="0 if left out; 1 in natural units")
 
 
