@@ -17,12 +17,12 @@ TIGHT = 3e-3  # a bar wider than this would hide a wrong figure: dx^2 at sharp e
 
 SHARP = """
 units: natural
-grid: {x: {from: -240, to: 160, points: 2000}}
+grid: {x: {from: -240, to: 160, points: 2400}}
 potential:
   - POTENTIAL
 edges: {x: {absorb: 80}}
 packet: {gaussian: {at: -60, sigma: 3, wavenumber: 1.2}}
-evolve: {until: 600, step: 0.025}
+evolve: {until: 600, step: 0.016}
 film: none
 error_bars: {box: no}
 observables:
@@ -139,11 +139,11 @@ def test_bars_widen_where_the_packet_has_no_weight() -> None:
 RESONANCE = """
 units: {length: nm, time: fs, energy: meV}
 particle: {mass: 0.067 electron_mass}
-grid: {x: {from: -260, to: 200, points: 920}}
+grid: {x: {from: -260, to: 200, points: 1200}}
 potential: [{barrier: {from: 0, to: 3, height: 300}}, {barrier: {from: 8, to: 11, height: 300}}]
 edges: {x: {absorb: 100}}
 packet: {gaussian: {at: -40, sigma: 5, energy: 92 meV, toward: +x}}
-evolve: {until: 2400, step: 0.08}
+evolve: {until: 2400, step: 0.048}
 film: none
 error_bars: {box: no}
 observables:
