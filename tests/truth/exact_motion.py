@@ -46,13 +46,28 @@ class Layers:
 
     def __post_init__(self) -> None:
         away = 4.2 / self.sigma  # 8.4 standard deviations
-        object.__setattr__(self, "waves", np.arange(max(self.k - away, 2e-3), self.k + away, 3e-3))
+        low, high = max(self.k - away, 2e-3), self.k + away
+        threshold = float(np.sqrt(2 * max(self.heights[-1], 0.0)))  # where the states depend on the root of k
+        waves, weights = [], []
+        for start, stop in ((low, min(threshold, high)), (max(threshold, low), high)):
+            if start < stop:
+                u, share = nodes(0.0, 1.0, panel=0.04 / (stop - start))
+                toward = stop == threshold
+                root = 1 - u if toward else u
+                waves.append(stop - (stop - start) * root**2 if toward else start + (stop - start) * root**2)
+                weights.append(share * 2 * root * (stop - start))
+        object.__setattr__(self, "waves", np.concatenate(waves))
+        object.__setattr__(self, "shares", np.concatenate(weights))
 
     def psi(self, x: Array, t: float) -> Array:
         """psi(x, t), shape (places,)."""
         k = self.waves  # type: ignore[attr-defined]
-        weight = (2 * self.sigma**2 / np.pi) ** 0.25 * np.exp(
-            -((self.sigma * (k - self.k)) ** 2) - 1j * k * self.at - 0.5j * k**2 * t
+        weight = (
+            self.shares
+            * (2 * self.sigma**2 / np.pi) ** 0.25
+            * np.exp(  # type: ignore[attr-defined]
+                -((self.sigma * (k - self.k)) ** 2) - 1j * k * self.at - 0.5j * k**2 * t
+            )
         )
         total = np.zeros(len(x), complex)
         layer = np.searchsorted(self.edges, x)
@@ -61,7 +76,7 @@ class Layers:
             for part in np.array_split(here, max(len(here) // 300, 1)):
                 wave = np.exp(1j * np.outer(x[part], q))
                 total[part] = wave @ (forth * weight) + (np.exp(-1j * np.outer(x[part], q)) @ (back * weight))
-        return total * (k[1] - k[0]) / np.sqrt(2 * np.pi)
+        return total / np.sqrt(2 * np.pi)
 
     def _amplitudes(self, k: Array) -> list[tuple[Array, Array, Array]]:
         """Wave number and both amplitudes in each layer, matched in value and slope from the right."""

@@ -94,7 +94,7 @@ def _first(record: Record, parts: ErrorBarsKeys, tell: Tell | None, notes: list[
     if not (parts.step or parts.grid):
         return []
     companion = coarser(record.plan, step=parts.step, points=parts.grid, until=record.steps)
-    factor = weight(record, coarser=companion.coarser)
+    factor = weight(record, companion)
     notes.append(_note(companion, factor))
     name = "step and grid" if parts.step and parts.grid else "step" if parts.step else "grid"
     return [Difference(name, record, simulate(companion.plan, tell, alone=False), factor)]
@@ -135,13 +135,14 @@ def _refined(
         if spent > MOST_COST:
             notes.append(f"to reach {wanted} would cost more than {MOST_COST:g} times the first run: not tried")
             break
-        run = replace(simulate(better.plan, progress, alone=False), stopped=barred.stopped)
+        before, run = barred, replace(simulate(better.plan, progress, alone=False), stopped=barred.stopped)
         name = "step and grid" if step and points else "step" if step else "grid"
         kept = [] if step and points else [d for d in differences if d.part not in (name, "step and grid")]
-        factor = weight(run)
+        companion = Companion(before.plan, 1 / better.step, 1 / better.points, "the run before")
+        factor = weight(run, companion)
         differences = [Difference(name, run, barred, factor), *kept]
-        before, barred = barred, box.added(run, differences, parts)
-        notes.append(_note(Companion(before.plan, 1 / better.step, 1 / better.points, "the run before"), factor))
+        barred = box.added(run, differences, parts)
+        notes.append(_note(companion, factor))
         # The first finer run shows the whole error of the one before, a coarser companion only a part: no comparison.
         if level > 0 and _excess(barred, name) > max(1.0, _excess(before, name) / STALLED):
             notes.append("a finer plan does not lower the bars: they do not converge")

@@ -11,11 +11,13 @@ import numpy as np
 from ..checks import ROUNDING
 from ..results import Accuracy, Curve, Result
 from ..simulate import Record
+from .companions import COARSER_POINTS, COARSER_STEP, Companion
 
 Array = np.ndarray
 
 SMOOTH = 1.0  # times the difference to a coarser companion; by trial on the catalogue in tests/truth
-SHARP = 3.5  # the same where the potential has sharp edges: errors then shrink less regularly
+SHARP = 4.0  # the same where the potential has sharp edges: errors then shrink less regularly
+SURE = 2.0  # power of the spacing with which errors shrink at least, where a run is compared with a much coarser one
 FINER = 1.5  # times the difference to a finer companion, which is itself not free of error
 KIN = 0.3  # of the largest difference over value of all probabilities, below which none counts: one of them may pass
 # through zero where two errors cancel, while those of its kin do not. The same for mean values, over their scales
@@ -57,12 +59,23 @@ class Difference:
         return self.weight * _envelope(np.abs(mine - theirs)[:, None])[:, 0]
 
 
-def weight(record: Record, *, coarser: bool = True) -> float:
-    """By what the difference of `record` to its companion is multiplied."""
-    if not coarser:
+def weight(record: Record, companion: Companion) -> float:
+    """By what the difference of `record` to its companion is multiplied.
+
+    The factors are for the usual companion. One that is coarser still errs by more, and less of the difference
+    is the error of `record`: by as much as half the order of the splitting, and a spacing squared, make sure of.
+    """
+    if not companion.coarser:
         return FINER
     sharp = any(term.shape.breaks is not None for term in record.plan.job.landscape.terms)
-    return SHARP if sharp else SMOOTH
+    step = _share(companion.step, COARSER_STEP, record.plan.splitting.order / 2)
+    grid = _share(1 / companion.points, 1 / COARSER_POINTS, SURE)
+    return (SHARP if sharp else SMOOTH) * min(max(step, grid), 1.0)
+
+
+def _share(ratio: float, usual: float, power: float) -> float:
+    """The error over the difference for this ratio of steps or spacings, over the same for the usual ratio."""
+    return float((usual**power - 1) / (ratio**power - 1)) if ratio > 1 else 0.0
 
 
 def with_bars(record: Record, differences: Sequence[Difference], *, recording: bool = True) -> Record:
