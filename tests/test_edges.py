@@ -11,6 +11,9 @@ from wavejob.edges import LayerShape, Momenta, layer, recommended_depth, reflect
 from wavejob.evolve import SPLITTINGS, plan
 from wavejob.grid import Axis, Grid, Transform
 from wavejob.hamiltonian import Hamiltonian
+from wavejob.loading import parse
+from wavejob.plan import make_plan
+from wavejob.problems import JobFileError
 
 LIMIT = 1e-5
 
@@ -132,6 +135,22 @@ def test_layer_covers_whole_cells() -> None:
     momenta = Momenta.of_energies(0.5, 2.0, mass=1.0)
     assert tuned(10.3, 1.0, momenta, 0.5).depth == pytest.approx(10.0)
     assert tuned(10.0, 1.0, momenta, 0.1).depth == pytest.approx(10.0)
+
+
+def test_a_chosen_layer_leaves_the_packet_alone() -> None:
+    """Common practice: what starts inside a layer is lost, so that no figure of the run would be right."""
+    text = """
+units: natural
+grid: {x: {from: -45, to: 45}}
+edges: {x: {absorb: auto}}
+packet: {gaussian: {at: -18, sigma: 3, wavenumber: 2}}
+evolve: {until: 5, accuracy: 1e-4}
+observables: [norm]
+"""
+    with pytest.raises(JobFileError) as refused:
+        make_plan(parse(text))
+    assert "of the packet at the start" in refused.value.problems[0].message
+    make_plan(parse(text.replace("-45", "-70")))
 
 
 def left_over(axis: Axis, shape: LayerShape, k0: float, sigma: float, step: float, scheme: str) -> float:

@@ -20,6 +20,7 @@ Array = np.ndarray
 
 DEEPEST, SHALLOWEST = 1e-9, 1e-5  # limits of what a layer whose depth is chosen may send back
 LONGEST_LAYER = 0.4  # of the axis
+OVERLAP = 0.01  # of the accuracy wanted: probability that a layer whose depth is chosen may hold at the start
 
 
 @dataclass(frozen=True)
@@ -54,7 +55,7 @@ def absorbing_ends(job: Job, axis: Axis, psi: Array) -> tuple[Ending, ...]:
         end = getattr(job.keys.edges.x, side)
         if isinstance(end, Absorb):
             momenta = _arriving(job, axis, psi, side, end)
-            depth = end.absorb if isinstance(end.absorb, float) else _needed_depth(job, axis, momenta, side)
+            depth = end.absorb if isinstance(end.absorb, float) else _needed_depth(job, axis, psi, momenta, side)
             shape = tuned(depth, job.particle.mass, momenta, axis.spacing)
             found.append(Ending(side, shape, momenta, axis.spacing))
     return tuple(found)
@@ -70,7 +71,7 @@ def retuned(job: Job, axis: Axis, endings: tuple[Ending, ...]) -> tuple[Ending, 
     return tuple(found)
 
 
-def _needed_depth(job: Job, axis: Axis, momenta: Momenta, side: str) -> float:
+def _needed_depth(job: Job, axis: Axis, psi: Array, momenta: Momenta, side: str) -> float:
     """The depth that sends back so little that it changes probabilities by less than the accuracy wanted.
 
     A share R that comes back changes a probability by up to 2 sqrt(R) times the amplitude it meets, which is
@@ -85,6 +86,13 @@ def _needed_depth(job: Job, axis: Axis, momenta: Momenta, side: str) -> float:
             said = f"a layer at x.{side} that sends back less than {limit:.0e} needs {wanted}, too much of this grid"
         else:
             said = f"no layer at x.{side} absorbs waves as slow as some of this packet's"
+        raise JobFileError([job.problem(("edges", "x"), said, fix)])
+    away = axis.x - axis.low if side == "low" else axis.high - axis.x
+    inside = float(np.sum(np.abs(psi[away < depth]) ** 2) * axis.spacing)
+    if inside > OVERLAP * job.accuracy.first:
+        said = f"a layer at x.{side} that sends back less than {limit:.0e} needs {job.write(depth, 'length')} and "
+        said += f"would hold {inside:.1e} of the packet at the start"
+        fix = "extend the grid, start the packet farther away, or give `energies:` of what the layer must absorb"
         raise JobFileError([job.problem(("edges", "x"), said, fix)])
     return depth
 

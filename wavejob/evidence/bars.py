@@ -17,7 +17,7 @@ Array = np.ndarray
 
 SMOOTH = 1.0  # times the difference to a coarser companion; by trial on the catalogue in tests/truth
 SHARP = 4.0  # the same where the potential has sharp edges: errors then shrink less regularly
-SURE = 2.0  # power of the spacing with which errors shrink at least, where a run is compared with a much coarser one
+SURE = 1.0  # power of the spacing with which errors shrink at least, where a run is compared with a much coarser one
 FINER = 1.5  # times the difference to a finer companion, which is itself not free of error
 KIN = 0.3  # of the largest difference over value of all probabilities, below which none counts: one of them may pass
 # through zero where two errors cancel, while those of its kin do not. The same for mean values, over their scales
@@ -63,7 +63,7 @@ def weight(record: Record, companion: Companion) -> float:
     """By what the difference of `record` to its companion is multiplied.
 
     The factors are for the usual companion. One that is coarser still errs by more, and less of the difference
-    is the error of `record`: by as much as half the order of the splitting, and a spacing squared, make sure of.
+    is the error of `record`: by as much as half the order of the splitting, and the spacing, make sure of.
     """
     if not companion.coarser:
         return FINER

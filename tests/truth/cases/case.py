@@ -20,7 +20,10 @@ class Outside:
 
 @dataclass(frozen=True)
 class Case:
-    """`error` says how it falls with step and spacing; `source` is where the outside values come from."""
+    """`error` says how it falls with step and spacing; `source` is where the outside values come from.
+
+    `finest` is the smallest accuracy at which it is run: beyond, it takes minutes or needs a longer axis.
+    """
 
     name: str
     text: str
@@ -28,6 +31,7 @@ class Case:
     outside: Callable[[], list[Outside]]
     error: Literal["algebraic", "spectral"] = "algebraic"
     harsh: Harsh = ""
+    finest: float = 1e-5
 
     def job(self, accuracy: float) -> str:
         """The job file, for one accuracy."""

@@ -100,7 +100,7 @@ def absorbing(
 ) -> Case:
     """A packet of wave number 2 on a barrier of 2, until all is in the layers."""
     text = job(
-        (-45, 45),
+        (-65 if depth.startswith("auto") else -45, 45),
         gaussian(-18, 3, 2.0),
         65,
         ["norm", "crossing: {name: passed, x: 8, toward: +x}"],
@@ -108,7 +108,12 @@ def absorbing(
         edges=f"x: {{absorb: {depth}}}",
     )
     return Case(
-        name, text, LANDAU, through(share or (lambda k: f.barrier_transmission(k, 2.0, 1.0)), 3, 2.0), harsh=harsh
+        name,
+        text,
+        LANDAU,
+        through(share or (lambda k: f.barrier_transmission(k, 2.0, 1.0)), 3, 2.0),
+        harsh=harsh,
+        finest=1e-4,
     )
 
 
@@ -219,7 +224,7 @@ CASES = (
         BUETTIKER,
         dwelling,
     ),
-    absorbing("barrier, absorbing ends", "auto"),
+    absorbing("barrier, absorbing ends", "auto, energies: {from: 0.6, to: 4.5}"),
     absorbing("barrier, short layers of 6", "6", "short layer"),
     absorbing("barrier, short layers of 3", "3", "short layer"),
     absorbing(

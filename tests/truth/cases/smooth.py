@@ -94,7 +94,7 @@ def layered(name: str, depth: str, harsh: Harsh = "") -> Case:
         "sech2: {at: 0, width: 1, height: 2}",
         f"x: {{absorb: {depth}}}",
     )
-    return Case(name, text, LANDAU, in_layers, harsh=harsh)
+    return Case(name, text, LANDAU, in_layers, harsh=harsh, finest=1e-4 if depth.startswith("auto") else 1e-5)
 
 
 MORSE = Box(lambda x: 10 * (1 - np.exp(-x / 2)) ** 2, -2.2, 14, 1.0, 0.35, 0.0, 200)
@@ -190,7 +190,7 @@ CASES = (
     ),
     boxed("bouncing packet", "linear: {at: 0, slope: 1}", BOUNCER, 10, {"low": (0, 4)}, harsh="tight box"),
     boxed("lattice", "lattice: {at: 0, period: 2, depth: 1}", LATTICE, 10, {"right": (5, 60)}, edges="x: wrap"),
-    layered("sech2 barrier, absorbing ends", "auto"),
+    layered("sech2 barrier, absorbing ends", "auto, energies: {from: 0.6, to: 4.5}"),
     layered("sech2 barrier, short layers of 6", "6", "short layer"),
     layered("sech2 barrier, short layers of 4", "4", "short layer"),
     boxed(
