@@ -142,6 +142,7 @@ def test_a_chosen_layer_leaves_the_packet_alone() -> None:
     text = """
 units: natural
 grid: {x: {from: -45, to: 45}}
+potential: [{barrier: {from: 0, to: 1, height: 2}}]
 edges: {x: {absorb: auto}}
 packet: {gaussian: {at: -18, sigma: 3, wavenumber: 2}}
 evolve: {until: 5, accuracy: 1e-4}
@@ -150,7 +151,7 @@ observables: [norm]
     with pytest.raises(JobFileError) as refused:
         make_plan(parse(text))
     assert "of the packet at the start" in refused.value.problems[0].message
-    make_plan(parse(text.replace("-45", "-70")))
+    make_plan(parse(text.replace("-45", "-95")))
 
 
 def left_over(axis: Axis, shape: LayerShape, k0: float, sigma: float, step: float, scheme: str) -> float:

@@ -266,8 +266,9 @@ def write(found: Sequence[Vote], finer: Sequence[tuple[int, int, Vote]], folder:
     jobs, values = len({v.case for v in found}), len({(v.case, v.result) for v in found})
     harsh = share(v.harsh != "" for v in found)
     (folder / "summary.md").write_text(
-        f"# Error bars against the truth\n\n{values} outside values in {jobs} jobs, each at accuracies (a few slow ones not at the last) "
-        f"{', '.join(f'{a:g}' for a in ACCURACIES)}; {harsh:.0%} with short layers, tight boxes or early stops. "
+        f"# Error bars against the truth\n\n{values} outside values in {jobs} jobs, each at accuracies "
+        f"{', '.join(f'{a:g}' for a in ACCURACIES)} (a few slow ones not at the last); "
+        f"{harsh:.0%} with short layers, tight boxes or early stops. "
         f"{datetime.now(UTC):%Y-%m-%d}, `python -m tests.truth.catalogue --write tests/truth`; every value, with its "
         f"source, stands in `catalogue.csv`.\n\n{summary(found)}\n"
         f"Bars shrink as step and spacing do:\n\n{shrunk(finer)}\n",
