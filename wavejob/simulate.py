@@ -16,7 +16,7 @@ from .evolve.schedule import Schedule
 from .evolve.stepper import plan as plan_steps
 from .observables.base import Meter, Observable, Series
 from .observables.densities import Density, MomentumDensity
-from .plan import Plan
+from .plan import FRAMES, Plan
 from .problems import RunError
 from .recording import Frames, Rows, Sampler, Stored, Ticker, Watch
 from .results import Check, Column, Curve, Judgement, Result, Verdict
@@ -85,10 +85,13 @@ class Record:
         return next(r for r in self.results if r.name == name)
 
 
-def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, alone: bool = True) -> Record:
+def simulate(
+    plan: Plan, progress: Callable[[Progress], None] | None = None, *, alone: bool = True, pictures: bool = True
+) -> Record:
     """Carries out `plan`. Raises RunError for values that are not finite; KeyboardInterrupt passes through.
 
     With `alone` not set it is one of several runs of a job: all its steps are made, whatever `stop_when` says.
+    Without `pictures` its first and last frame alone are kept.
     """
     job, bench = plan.job, plan.bench
     stepper = plan_steps(
@@ -102,7 +105,8 @@ def simulate(plan: Plan, progress: Callable[[Progress], None] | None = None, *, 
     )
     meters = [observable.meter(bench) for observable in job.measured]
     rows, watch = Rows(plan.recorded, meters), Watch(plan.recorded, bench)
-    frames = Frames(plan.frames or plan.every((job.evolve.until - job.evolve.start) / 300), bench, _view(plan))
+    shown = plan.frames or plan.every((job.evolve.until - job.evolve.start) / FRAMES)
+    frames = Frames(shown if pictures else Schedule(plan.steps, plan.steps), bench, _view(plan))
     fields = _stored_fields(plan)
     densities = [_stored_density(plan, o) for o in job.measured if isinstance(o, Density)]
     outputs: list[Output] = [Sampler(plan.sampled, meters), rows, watch, frames]

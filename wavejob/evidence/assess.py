@@ -97,7 +97,7 @@ def _first(record: Record, parts: ErrorBarsKeys, tell: Tell | None, notes: list[
     factor = weight(record, companion)
     notes.append(_note(companion, factor))
     name = "step and grid" if parts.step and parts.grid else "step" if parts.step else "grid"
-    return [Difference(name, record, simulate(companion.plan, tell, alone=False), factor)]
+    return [Difference(name, record, simulate(companion.plan, tell, alone=False, pictures=False), factor)]
 
 
 def _apart(record: Record, differences: list[Difference], tell: Tell | None, notes: list[str]) -> list[Difference]:
@@ -105,7 +105,7 @@ def _apart(record: Record, differences: list[Difference], tell: Tell | None, not
     both = differences[0]
     companion = coarser(record.plan, points=False, until=record.steps)
     notes.append(_note(companion, both.weight))
-    between = simulate(companion.plan, tell, alone=False)
+    between = simulate(companion.plan, tell, alone=False, pictures=False)
     return [Difference("step", record, between, both.weight), Difference("grid", between, both.theirs, both.weight)]
 
 
@@ -180,7 +180,7 @@ def _box(
     if companion is None:
         return _Box(predicted=predicted)
     notes.append(_note(companion, FINER))
-    wider = simulate(companion.plan, tell, alone=False)
+    wider = simulate(companion.plan, tell, alone=False, pictures=False)
     return _Box((Difference("box", cheapest, wider, FINER, edges.of_what_is_left(record)),), predicted)
 
 
