@@ -95,5 +95,6 @@ CASES = (
         ),
         ESAKI,
         resonance,
+        finest=1e-4,
     ),
 )

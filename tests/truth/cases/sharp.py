@@ -25,6 +25,7 @@ def scattered(
     regions: dict[str, tuple[float, float]],
     harsh: Harsh = "",
     source: str = STATIONARY,
+    finest: float = 1e-5,
 ) -> Case:
     """Probabilities of regions at the end, exact for that time."""
 
@@ -38,7 +39,7 @@ def scattered(
         [inside(n, *region) for n, region in regions.items()],
         potential,
     )
-    return Case(name, text, source, outside, harsh=harsh)
+    return Case(name, text, source, outside, harsh=harsh, finest=finest)
 
 
 STEP = Layers((0.1,), (0.0, 1.0), -34, 4, 2.0)
@@ -199,6 +200,7 @@ CASES = (
         36,
         (-90, 90),
         {"right": (0.1, 90), "left": (-90, 0)},
+        finest=1e-3,
     ),
     scattered(
         "stairs",

@@ -87,7 +87,7 @@ def in_layers() -> list[Outside]:
 
 def layered(name: str, depth: str, harsh: Harsh = "") -> Case:
     text = job(
-        (-60, 60),
+        (-80 if depth.startswith("auto") else -60, 60),
         gaussian(-22, 3, 2.0),
         90,
         ["norm", "crossing: {name: passed, x: 10, toward: +x}"],
