@@ -12,7 +12,7 @@ from ..results import Accuracy, Check, Result
 from ..settings import ErrorBarsKeys
 from ..simulate import Progress, Record, judged, simulate
 from . import edges
-from .bars import FINER, KIN, Difference, counted, weight, with_bars, worst
+from .bars import FINER, Difference, counted, weight, with_bars, worst
 from .companions import Companion, coarser, finer, larger
 
 log = logging.getLogger(__name__)
@@ -75,8 +75,7 @@ class _Box:
         barred = with_bars(record, [*differences, *self.measured], recording=parts.record)
         if not self.predicted:
             return barred
-        # Measured on one grid it may be small by chance, and says nothing about what the layers took.
-        return edges.with_part(barred, self.predicted, self.predicted * (KIN if self.measured else 1.0))
+        return edges.with_part(barred, self.predicted, absorbed_only=bool(self.measured))
 
 
 def _staged(progress: Tell | None, stage: str) -> Tell | None:

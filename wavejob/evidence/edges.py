@@ -7,7 +7,6 @@ from dataclasses import replace
 
 import numpy as np
 
-from ..results import Result
 from ..simulate import Record
 
 LATE = 0.75  # of the run: what has come back by then meets what is left from then on
@@ -32,25 +31,20 @@ def _left_late(record: Record) -> float:
     return float(np.interp(late, times, record.frames.norm))
 
 
-def with_part(record: Record, absorbed: float, others: float) -> Record:
-    """The record with a part "box" in all errors that know one, over the scale.
+def with_part(record: Record, change: float, *, absorbed_only: bool = False) -> Record:
+    """The record with a part "box" of `change` times the scale in all errors that know one.
 
-    `absorbed` is for what the layers took, `others` for the rest but what speaks of what is left.
+    With `absorbed_only` just what the layers took: a run on a larger grid says nothing about that.
     """
     taken = {result.name for result in record.results if result.name.startswith("absorbed.")}
-    untouched = of_what_is_left(record)
-
-    def change(result: Result) -> float:
-        share = absorbed if result.name in taken else 0.0 if result.name in untouched else others
-        return share * (result.scale or 0.0)
-
+    touched = taken if absorbed_only else {r.name for r in record.results} - (of_what_is_left(record) - taken)
     results = tuple(
         result
-        if result.error is None or change(result) == 0
+        if result.error is None or result.name not in touched or result.scale is None
         else replace(
             result,
-            error=result.error + change(result),
-            error_parts={**result.error_parts, "box": result.error_parts.get("box", 0.0) + change(result)},
+            error=result.error + change * result.scale,
+            error_parts={**result.error_parts, "box": result.error_parts.get("box", 0.0) + change * result.scale},
         )
         for result in record.results
     )
