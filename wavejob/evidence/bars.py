@@ -16,7 +16,7 @@ from .companions import COARSER_POINTS, COARSER_STEP, Companion
 Array = np.ndarray
 
 SMOOTH = 1.0  # times the difference to a coarser companion; by trial on the catalogue in tests/truth
-SHARP = 4.0  # the same where the potential has sharp edges: errors then shrink less regularly
+SHARP = 2.0  # the same where the potential has sharp edges: errors then shrink less regularly
 SURE = 1.0  # power of the spacing with which errors shrink at least, where a run is compared with a much coarser one
 FINER = 1.5  # times the difference to a finer companion, which is itself not free of error
 KIN = 0.3  # of the largest difference over value of all probabilities, below which none counts: one of them may pass

@@ -37,7 +37,7 @@ def curve(
         potential,
         f"x: {{absorb: {depth}{', energies: {from: 0.3, to: 6}' if depth == 'auto' else ''}}}",
     )
-    return Case(name, text, source, outside, harsh=harsh)
+    return Case(name, text, source, outside, harsh=harsh, finest=1e-4)
 
 
 def resonance() -> list[Outside]:

@@ -225,6 +225,7 @@ CASES = (
         ),
         BUETTIKER,
         dwelling,
+        finest=1e-4,
     ),
     absorbing("barrier, absorbing ends", "auto, energies: {from: 0.6, to: 4.5}"),
     absorbing("barrier, short layers of 6", "6", "short layer"),

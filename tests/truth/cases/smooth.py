@@ -189,7 +189,7 @@ CASES = (
         edges="x: wrap",
     ),
     boxed("bouncing packet", "linear: {at: 0, slope: 1}", BOUNCER, 10, {"low": (0, 4)}, harsh="tight box"),
-    boxed("lattice", "lattice: {at: 0, period: 2, depth: 1}", LATTICE, 10, {"right": (5, 60)}, edges="x: wrap"),
+    boxed("lattice", "lattice: {at: 0, period: 2, depth: 1}", LATTICE, 6, {"right": (3, 60)}, edges="x: wrap"),
     layered("sech2 barrier, absorbing ends", "auto, energies: {from: 0.6, to: 4.5}"),
     layered("sech2 barrier, short layers of 6", "6", "short layer"),
     layered("sech2 barrier, short layers of 4", "4", "short layer"),
