@@ -40,7 +40,7 @@ WANTED = {"coverage": 0.98, "three bars": 0.995, "algebraic": 20.0, "spectral": 
 SHRINKING = (
     ("barrier, tunnelling, in the middle", "right.final", 600, 1200),
     ("step below its top, in the middle", "near.final", 400, 1000),
-    ("sech2 barrier, in the middle", "right.final", 240, 240),
+    ("sech2 barrier, in the middle", "right.final", 400, 960),
     ("Morse oscillator", "position.x.final", 60, 480),
     ("skew oscillator", "width.x.final", 64, 400),
 )

@@ -75,7 +75,7 @@ class _Box:
         barred = with_bars(record, [*differences, *self.measured], recording=parts.record)
         if not self.predicted:
             return barred
-        return edges.with_part(barred, self.predicted, absorbed_only=bool(self.measured))
+        return edges.with_part(barred, self.predicted, measured=bool(self.measured))
 
 
 def _staged(progress: Tell | None, stage: str) -> Tell | None:

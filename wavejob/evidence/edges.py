@@ -7,8 +7,10 @@ from dataclasses import replace
 
 import numpy as np
 
+from ..results import Result
 from ..simulate import Record
 
+UNSEEN = 0.5  # of the predicted change, over the value, that counts beside what a run measured
 LATE = 0.75  # of the run: what has come back by then meets what is left from then on
 
 
@@ -31,20 +33,29 @@ def _left_late(record: Record) -> float:
     return float(np.interp(late, times, record.frames.norm))
 
 
-def with_part(record: Record, change: float, *, absorbed_only: bool = False) -> Record:
+def with_part(record: Record, change: float, *, measured: bool = False) -> Record:
     """The record with a part "box" of `change` times the scale in all errors that know one.
 
-    With `absorbed_only` just what the layers took: a run on a larger grid says nothing about that.
+    Where a run on a larger grid has measured it, that says nothing about what the layers took. To other
+    probabilities a part of `change` is added in proportion: one such run may see little by chance.
     """
     taken = {result.name for result in record.results if result.name.startswith("absorbed.")}
-    touched = taken if absorbed_only else {r.name for r in record.results} - (of_what_is_left(record) - taken)
+    untouched = of_what_is_left(record) - taken
+
+    def part(result: Result) -> float:
+        if result.name in untouched or result.scale is None:
+            return 0.0
+        if not measured or result.name in taken:
+            return change * result.scale
+        return UNSEEN * change * abs(result.value or 0.0) if result.dimension == "number" else 0.0
+
     results = tuple(
         result
-        if result.error is None or result.name not in touched or result.scale is None
+        if result.error is None or part(result) == 0
         else replace(
             result,
-            error=result.error + change * result.scale,
-            error_parts={**result.error_parts, "box": result.error_parts.get("box", 0.0) + change * result.scale},
+            error=result.error + part(result),
+            error_parts={**result.error_parts, "box": result.error_parts.get("box", 0.0) + part(result)},
         )
         for result in record.results
     )
